@@ -1,0 +1,106 @@
+package geom
+
+// IsManhattan tells whether every edge of the closed outline is axis-parallel.
+func IsManhattan(outline []Point) bool { return false }
+
+// Cutter cuts outlines into rectangles; it keeps its scratch memory from call to call. The zero value is ready.
+type Cutter struct{}
+
+// Rectangles appends rectangles with disjoint interiors that cover exactly what outline fills; false if it is not Manhattan.
+func (c *Cutter) Rectangles(dst []Rect, outline []Point, fill Fill) ([]Rect, bool) { return dst, false }
+
+// Disjoint appends rectangles with disjoint interiors that cover exactly the union of rects.
+func (c *Cutter) Disjoint(dst, rects []Rect) []Rect { return dst }
+
+// Rectangles is Cutter.Rectangles with a Cutter of its own.
+func Rectangles(dst []Rect, outline []Point, fill Fill) ([]Rect, bool) { return dst, false }
+
+// PathEnd is GDSII PATHTYPE (0, 1, 2 or 4) with BGNEXTN and ENDEXTN of type 4.
+type PathEnd struct {
+	Type          uint8
+	Begin, Finish int64
+}
+
+// PathOutline appends the outline of a path (fill NonZero).
+func PathOutline(dst []Point, centre []Point, width int64, end PathEnd, grid int64) (outline []Point, rounded, ok bool) {
+	return dst, false, false
+}
+
+// Polygon is an any-angle figure cut into bands.
+type Polygon struct{}
+
+// Band is a part of a polygon.
+type Band struct {
+	Box Rect
+}
+
+// NewPolygon cuts an outline into bands.
+func NewPolygon(outline []Point, fill Fill) *Polygon { return &Polygon{} }
+
+// Bands of the polygon; read only.
+func (p *Polygon) Bands() []Band { return nil }
+
+// Box is the bounding box of the filled area.
+func (p *Polygon) Box() Rect { return Rect{} }
+
+// HasArea tells whether the polygon covers anything; exact.
+func (p *Polygon) HasArea() bool { return false }
+
+// Area is the filled area (float: crossings may have fractional places).
+func (p *Polygon) Area() float64 { return 0 }
+
+// BandRelation compares band i of p with band j of q as placed.
+func BandRelation(p *Polygon, i int, pp Placement, q *Polygon, j int, qp Placement, s int64) Relation {
+	return Far
+}
+
+// BandRectRelation compares band i of p as placed with a rectangle of the plane.
+func BandRectRelation(p *Polygon, i int, pp Placement, r Rect, s int64) Relation { return Far }
+
+// Placed is a polygon with its place.
+type Placed struct {
+	Polygon *Polygon
+	At      Placement
+}
+
+// Parts is a figure or shape: rectangles and placed polygons.
+type Parts struct {
+	Rects    []Rect
+	Polygons []Placed
+}
+
+// Closest gives points of a and b that come nearest, rounded to whole units, and the squared distance.
+func Closest(a, b Parts) (from, to Point, distanceSq float64) { return }
+
+// Area is an area in square units, exact: Hi * 2^64 + Lo.
+type Area struct{ Hi, Lo uint64 }
+
+// Float is the area as a float.
+func (a Area) Float() float64 { return 0 }
+
+// AreaScratch measures merged areas; it keeps its memory from call to call. The zero value is ready.
+type AreaScratch struct{}
+
+// UnionArea is the area that the rectangles cover together.
+func (s *AreaScratch) UnionArea(rects []Rect) Area { return Area{} }
+
+// UnionArea32 is UnionArea for the lean form; at most (2^32-1)^2.
+func (s *AreaScratch) UnionArea32(rects []Rect32) uint64 { return 0 }
+
+// UnionAreaPolygons is the area that rectangles and polygons cover together.
+func UnionAreaPolygons(parts Parts) float64 { return 0 }
+
+// Corner is a corner of a merged outline.
+type Corner struct {
+	At     Point
+	Convex bool
+}
+
+// Outline is the boundary of a union of rectangles: loop i is Corners[Start[i]:Start[i+1]], interior on the left.
+type Outline struct {
+	Corners []Corner
+	Start   []int32
+}
+
+// Merge gives the outline of the union of rectangles.
+func Merge(rects []Rect) Outline { return Outline{} }
