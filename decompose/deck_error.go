@@ -31,7 +31,7 @@ func (e *DeckError) Error() string {
 
 // closestWord gives the known word that a mistyped one was probably meant to be, or "" where none is near.
 func closestWord(word string, known []string) string {
-	best, least := "", 1+max(1, len(word)/4)
+	best, least := "", 1+max(1, len(word)/3)
 	for _, k := range known {
 		if d := editDistance(word, k); d < least {
 			best, least = k, d

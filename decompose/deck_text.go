@@ -103,6 +103,15 @@ func (t *TextTable) Known(keys ...string) {
 	}
 }
 
+// Unknown notes that a key names something that where does not have; known are the names that it has.
+func (t *TextTable) Unknown(key, name, where string, known []string) {
+	if near := closestWord(name, known); near != "" {
+		t.Fault(key, "%s has no %q; did you mean %q?", where, name, near)
+	} else {
+		t.Fault(key, "%s has no %q; it has %s", where, name, strings.Join(known, ", "))
+	}
+}
+
 // Need notes the first of these keys that the table does not have.
 func (t *TextTable) Need(keys ...string) {
 	for _, k := range keys {
