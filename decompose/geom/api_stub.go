@@ -1,20 +1,5 @@
 package geom
 
-// IsManhattan tells whether every edge of the closed outline is axis-parallel.
-func IsManhattan(outline []Point) bool { return false }
-
-// Cutter cuts outlines into rectangles; it keeps its scratch memory from call to call. The zero value is ready.
-type Cutter struct{}
-
-// Rectangles appends rectangles with disjoint interiors that cover exactly what outline fills; false if it is not Manhattan.
-func (c *Cutter) Rectangles(dst []Rect, outline []Point, fill Fill) ([]Rect, bool) { return dst, false }
-
-// Disjoint appends rectangles with disjoint interiors that cover exactly the union of rects.
-func (c *Cutter) Disjoint(dst, rects []Rect) []Rect { return dst }
-
-// Rectangles is Cutter.Rectangles with a Cutter of its own.
-func Rectangles(dst []Rect, outline []Point, fill Fill) ([]Rect, bool) { return dst, false }
-
 // PathEnd is GDSII PATHTYPE (0, 1, 2 or 4) with BGNEXTN and ENDEXTN of type 4.
 type PathEnd struct {
 	Type          uint8
@@ -71,21 +56,6 @@ type Parts struct {
 
 // Closest gives points of a and b that come nearest, rounded to whole units, and the squared distance.
 func Closest(a, b Parts) (from, to Point, distanceSq float64) { return }
-
-// Area is an area in square units, exact: Hi * 2^64 + Lo.
-type Area struct{ Hi, Lo uint64 }
-
-// Float is the area as a float.
-func (a Area) Float() float64 { return 0 }
-
-// AreaScratch measures merged areas; it keeps its memory from call to call. The zero value is ready.
-type AreaScratch struct{}
-
-// UnionArea is the area that the rectangles cover together.
-func (s *AreaScratch) UnionArea(rects []Rect) Area { return Area{} }
-
-// UnionArea32 is UnionArea for the lean form; at most (2^32-1)^2.
-func (s *AreaScratch) UnionArea32(rects []Rect32) uint64 { return 0 }
 
 // UnionAreaPolygons is the area that rectangles and polygons cover together.
 func UnionAreaPolygons(parts Parts) float64 { return 0 }
