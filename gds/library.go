@@ -31,6 +31,9 @@ type Library struct {
 	Labels     []Label
 	Missing    []string          // names of structures that are placed but not in the file
 	Boxes      map[LayerType]int // BOX elements seen on layers of interest, by layer and boxtype (for a warning)
+
+	headSum uint32 // CRC-32C of the bytes before the first structure
+	tailSum uint32 // and of those from ENDLIB on
 }
 
 // Structure is one BGNSTR to ENDSTR. Its figures are Library.Figures[FirstFigure:EndFigure], its references

@@ -1,0 +1,224 @@
+package gds
+
+import (
+	"encoding/binary"
+	"hash/crc32"
+	"io"
+)
+
+// This file cuts a stream into records, in the manner of bufio.Scanner. It knows the four bytes at the head of a record
+// and the end of a stream; the grammar is the matter of index.go.
+
+// bufferSize is the size of the read buffer; one of about a mebibyte reads fastest and stays in the cache.
+const bufferSize = 1 << 20
+
+// Record is one record of a stream.
+type Record struct {
+	Kind   Kind
+	Type   DataType
+	Offset int64  // of the first byte of the record's head
+	Data   []byte // without the head; valid until the next call of Scan
+}
+
+// Scanner reads a stream record by record. Any kind, data type and length that has an even number of bytes is let through;
+// the first fault ends the scan. The last record is ENDLIB; only zero bytes may follow.
+type Scanner struct {
+	r        io.Reader
+	buf      []byte
+	pos, end int   // buf[pos:end] is read and not yet scanned
+	base     int64 // offset of buf[0] in the stream
+	rec      Record
+	err      error
+	over     bool  // ENDLIB was scanned
+	fault    error // of the reader; io.EOF at its end
+
+	// For the index: the running CRC-32C of all bytes before buf[from], since the last cut. sums is false for others.
+	sums     bool
+	sum      uint32
+	from     int
+	progress func(bytes int64)
+}
+
+// NewScanner gives a scanner over the stream that r reads.
+func NewScanner(r io.Reader) *Scanner {
+	return &Scanner{r: r, buf: make([]byte, bufferSize)}
+}
+
+// Record gives the record of the last Scan that said true.
+func (s *Scanner) Record() Record { return s.rec }
+
+// Err gives the fault that ended the scan, nil where it ended with the stream. Faults of the stream are of type
+// *SyntaxError.
+func (s *Scanner) Err() error { return s.err }
+
+// Scan goes to the next record. It says false behind ENDLIB, once all that follows is seen to be zero, and at the first
+// fault.
+func (s *Scanner) Scan() bool {
+	b := s.buf[s.pos:s.end]
+	if len(b) >= 4 && !s.over {
+		length := int(binary.BigEndian.Uint16(b))
+		if length <= len(b) && length >= 4 && length&1 == 0 {
+			s.rec = Record{Kind(b[2]), DataType(b[3]), s.base + int64(s.pos), b[4:length:length]}
+			s.pos += length
+			s.over = s.rec.Kind == ENDLIB
+			return true
+		}
+	}
+	return s.scan()
+}
+
+// scan is Scan where the buffer ends, and where something is wrong.
+func (s *Scanner) scan() bool {
+	if s.err != nil {
+		return false
+	}
+	if s.over {
+		s.padding()
+		return false
+	}
+	length, ok := s.head()
+	if !ok {
+		return false
+	}
+	for s.end-s.pos < length {
+		if !s.fill() {
+			s.cutOff(length)
+			return false
+		}
+	}
+	b := s.buf[s.pos:s.end]
+	s.rec = Record{Kind(b[2]), DataType(b[3]), s.base + int64(s.pos), b[4:length:length]}
+	s.pos += length
+	s.over = s.rec.Kind == ENDLIB
+	return true
+}
+
+// head makes sure that the head of the next record is in the buffer, and gives the record's length, with the head.
+func (s *Scanner) head() (length int, ok bool) {
+	for s.end-s.pos < 4 {
+		if !s.fill() {
+			s.cutOff(4)
+			return 0, false
+		}
+	}
+	b := s.buf[s.pos:s.end]
+	length = int(binary.BigEndian.Uint16(b))
+	if err := checkLength(length); err != nil {
+		s.fail(&SyntaxError{Offset: s.offset(), Record: Kind(b[2]), Err: err})
+		return 0, false
+	}
+	return length, true
+}
+
+// checkLength says what is wrong with the length of a record.
+func checkLength(length int) error {
+	if length < 4 {
+		return faultf(ErrLength, "record length %d is less than 4", length)
+	}
+	if length&1 != 0 {
+		return faultf(ErrLength, "record length %d is odd", length)
+	}
+	return nil
+}
+
+// offset is the place of the next record.
+func (s *Scanner) offset() int64 { return s.base + int64(s.pos) }
+
+// fill reads on; all from pos is kept. It says false where nothing is left, or reading fails.
+func (s *Scanner) fill() bool {
+	if s.fault != nil {
+		return false
+	}
+	if s.sums {
+		s.sum = crc32.Update(s.sum, castagnoli, s.buf[s.from:s.pos])
+		s.from = 0
+	}
+	if s.pos > 0 {
+		copy(s.buf, s.buf[s.pos:s.end])
+		s.base += int64(s.pos)
+		s.end -= s.pos
+		s.pos = 0
+	} else if s.end == len(s.buf) {
+		grown := make([]byte, 2*len(s.buf))
+		copy(grown, s.buf)
+		s.buf = grown
+	}
+	for tries := 0; tries < 100; tries++ {
+		n, err := s.r.Read(s.buf[s.end:])
+		s.end += n
+		if err != nil {
+			s.fault = err
+		}
+		if n > 0 {
+			if s.progress != nil {
+				s.progress(s.base + int64(s.end))
+			}
+			return true
+		}
+		if err != nil {
+			return false
+		}
+	}
+	s.fault = io.ErrNoProgress
+	return false
+}
+
+// cut gives the CRC-32C of the bytes from the last cut to the next record.
+func (s *Scanner) cut() uint32 {
+	sum := crc32.Update(s.sum, castagnoli, s.buf[s.from:s.pos])
+	s.sum, s.from = 0, s.pos
+	return sum
+}
+
+// castagnoli is the polynomial of CRC-32C, the one that processors compute.
+var castagnoli = crc32.MakeTable(crc32.Castagnoli)
+
+// cutOff makes the fault of a stream that ends where at least need more bytes must stand.
+func (s *Scanner) cutOff(need int) {
+	if s.fault != io.EOF {
+		s.fail(s.fault)
+		return
+	}
+	e := &SyntaxError{Offset: s.offset()}
+	have := s.end - s.pos
+	switch {
+	case s.base == 0 && s.end == 0:
+		e.Err = faultf(io.ErrUnexpectedEOF, "the file is empty")
+	case have == 0:
+		e.Err = faultf(io.ErrUnexpectedEOF, "the file is cut off: it ends here, without ENDLIB")
+	case have < 4:
+		e.Err = faultf(io.ErrUnexpectedEOF, "the file is cut off: %d of the 4 bytes of a record's head are there", have)
+	default:
+		e.Record = Kind(s.buf[s.pos+2])
+		e.Err = faultf(io.ErrUnexpectedEOF, "the file is cut off: %d of the %d bytes of %v are there", have, need, e.Record)
+	}
+	s.fail(e)
+}
+
+// fail keeps the first fault.
+func (s *Scanner) fail(err error) {
+	if s.err == nil {
+		s.err = err
+	}
+}
+
+// padding reads to the end of the stream, where only zeros may stand.
+func (s *Scanner) padding() {
+	for {
+		for i, c := range s.buf[s.pos:s.end] {
+			if c != 0 {
+				s.pos += i
+				s.fail(&SyntaxError{Offset: s.offset(), Err: faultf(ErrTrailing,
+					"something that is not zero follows the end of the library (ENDLIB)")})
+				return
+			}
+		}
+		s.pos = s.end
+		if !s.fill() {
+			if s.fault != io.EOF {
+				s.fail(s.fault)
+			}
+			return
+		}
+	}
+}
