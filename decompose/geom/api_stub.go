@@ -1,16 +1,5 @@
 package geom
 
-// PathEnd is GDSII PATHTYPE (0, 1, 2 or 4) with BGNEXTN and ENDEXTN of type 4.
-type PathEnd struct {
-	Type          uint8
-	Begin, Finish int64
-}
-
-// PathOutline appends the outline of a path (fill NonZero).
-func PathOutline(dst []Point, centre []Point, width int64, end PathEnd, grid int64) (outline []Point, rounded, ok bool) {
-	return dst, false, false
-}
-
 // Polygon is an any-angle figure cut into bands.
 type Polygon struct{}
 
