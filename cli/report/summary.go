@@ -1,0 +1,308 @@
+package report
+
+import (
+	"bufio"
+	"cmp"
+	"fmt"
+	"io"
+	"slices"
+	"strconv"
+	"strings"
+
+	"maskpair/decompose"
+)
+
+// This file words the summary: one table over all layers, then what could not be done, worst first, with the cheapest way
+// out. Lengths and places are in the deck's unit.
+
+// groupsShown is how many groups of unresolved components of a layer the summary shows; the JSON lists all.
+const groupsShown = 8
+
+// WriteSummary writes the summary for a person, in plain text.
+func WriteSummary(w io.Writer, r *Report) error {
+	s := &summary{w: bufio.NewWriter(w), r: r}
+	s.verdict()
+	s.table()
+	for i := range r.Result.Layers {
+		s.layer(&r.Result.Layers[i])
+	}
+	s.cost()
+	return s.w.Flush()
+}
+
+type summary struct {
+	w *bufio.Writer
+	r *Report
+}
+
+func (s *summary) line(format string, args ...any) {
+	s.w.WriteString(strings.TrimRight(fmt.Sprintf(format, args...), " "))
+	s.w.WriteByte('\n')
+}
+
+// verdict answers the question: can this be done on two masks?
+func (s *summary) verdict() {
+	var bad []string
+	for i := range s.r.Result.Layers {
+		if l := &s.r.Result.Layers[i]; l.UnresolvedPairs > 0 {
+			bad = append(bad, fmt.Sprintf("%s %s", l.Name, number(l.UnresolvedPairs)))
+		}
+	}
+	name := s.r.Input.Name
+	if name == "" || name == "-" {
+		name = "The layout"
+	}
+	if len(bad) == 0 {
+		s.line("%s fits on two masks: nothing is unresolved.", name)
+	} else {
+		s.line("%s does not fit on two masks as drawn. Unresolved near pairs: %s.", name, strings.Join(bad, ", "))
+	}
+}
+
+// table has a column for each layer, and no row that is zero in all of them unless it is one that everybody looks for.
+func (s *summary) table() {
+	layers := s.r.Result.Layers
+	type row struct {
+		label  string
+		always bool
+		cell   func(l *decompose.LayerResult) string
+	}
+	tally := func(label string, always bool, n func(l *decompose.LayerResult) int64) row {
+		return row{label, always, func(l *decompose.LayerResult) string { return number(n(l)) }}
+	}
+	rows := []row{
+		{"same-mask spacing", true, func(l *decompose.LayerResult) string { return s.r.Rules.Length(float64(l.Spacing)) }},
+		tally("figures", true, func(l *decompose.LayerResult) int64 { return l.Figures }),
+		tally("  already on a mask", false, func(l *decompose.LayerResult) int64 { return l.AlreadyMaskedFigures }),
+		tally("  rounded to the grid", false, func(l *decompose.LayerResult) int64 { return l.RoundedFigures }),
+		tally("shapes", true, func(l *decompose.LayerResult) int64 { return l.Shapes }),
+		tally("  held by anchors", false, func(l *decompose.LayerResult) int64 { return l.AnchoredShapes }),
+		tally("  known from the baseline", false, func(l *decompose.LayerResult) int64 { return l.BaselineShapes }),
+		tally("  moved to the other mask", false, func(l *decompose.LayerResult) int64 { return l.MovedShapes }),
+		tally("near pairs", true, func(l *decompose.LayerResult) int64 { return l.NearPairs }),
+		tally("components", true, func(l *decompose.LayerResult) int64 { return l.Components }),
+		tally("  that two masks cannot do", false, func(l *decompose.LayerResult) int64 { return l.UnresolvedComponents }),
+		tally("  clashes over ties", false, func(l *decompose.LayerResult) int64 { return l.JointClashes }),
+		tally("unresolved pairs", true, func(l *decompose.LayerResult) int64 { return l.UnresolvedPairs }),
+		{"  least possible", false, leastPossible},
+		tally("  waived", false, func(l *decompose.LayerResult) int64 { return l.WaivedPairs }),
+		tally("stitches", false, func(l *decompose.LayerResult) int64 { return l.Stitches }),
+		tally("too near on any masks", false, func(l *decompose.LayerResult) int64 { return l.AnyMaskPairs }),
+		{"wishes kept", false, func(l *decompose.LayerResult) string {
+			if l.Wishes == 0 {
+				return "0"
+			}
+			return number(l.WishesKept) + " of " + number(l.Wishes)
+		}},
+		{"area on A", true, func(l *decompose.LayerResult) string { return s.area(l.AreaA) }},
+		{"area on B", true, func(l *decompose.LayerResult) string { return s.area(l.AreaB) }},
+		{"  imbalance", true, func(l *decompose.LayerResult) string { return imbalance(l.AreaA, l.AreaB) }},
+	}
+	table := [][]string{{""}}
+	for i := range layers {
+		table[0] = append(table[0], text(layers[i].Name))
+	}
+	for _, row := range rows {
+		line, some := []string{row.label}, row.always
+		for i := range layers {
+			c := row.cell(&layers[i])
+			some = some || c != "0"
+			line = append(line, c)
+		}
+		if some {
+			table = append(table, line)
+		}
+	}
+	s.line("")
+	s.aligned(table)
+}
+
+// leastPossible words what is proved about the number of unresolved pairs.
+func leastPossible(l *decompose.LayerResult) string {
+	switch {
+	case l.UnresolvedPairs+l.WaivedPairs == 0:
+		return "0"
+	case l.ProvedOptimal:
+		return "proved"
+	}
+	return "not proved, at least " + number(l.LowerBound)
+}
+
+// aligned prints a table, the first column to the left, the others to the right.
+func (s *summary) aligned(table [][]string) {
+	widths := make([]int, len(table[0]))
+	for _, line := range table {
+		for i, c := range line {
+			widths[i] = max(widths[i], len([]rune(c)))
+		}
+	}
+	for _, line := range table {
+		var b strings.Builder
+		fmt.Fprintf(&b, "  %-*s", widths[0], line[0])
+		for i, c := range line[1:] {
+			fmt.Fprintf(&b, "  %*s", widths[i+1], c)
+		}
+		s.line("%s", b.String())
+	}
+}
+
+// group is a number of components that are equal, and what they leave.
+type group struct {
+	first *decompose.Unresolved
+	times int64
+	pairs int64 // of all
+}
+
+// layer shows the groups of unresolved components, those that leave most pairs first.
+func (s *summary) layer(l *decompose.LayerResult) {
+	if len(l.Unresolved) == 0 {
+		return
+	}
+	groups := groupsOf(l.Unresolved)
+	s.line("")
+	if len(groups) == 1 {
+		s.line("%s: what two masks cannot do is all of one kind", text(l.Name))
+	} else {
+		s.line("%s: %s kinds of what two masks cannot do, worst first", text(l.Name), number(int64(len(groups))))
+	}
+	for _, g := range groups[:min(len(groups), groupsShown)] {
+		s.group(g)
+	}
+	if more := len(groups) - groupsShown; more > 0 {
+		s.line("  %s more kinds: write a --report for the full list", number(int64(more)))
+	}
+}
+
+// groupsOf collects the groups, by pairs left, then by number.
+func groupsOf(list []decompose.Unresolved) []*group {
+	byNumber := map[int64]*group{}
+	var groups []*group
+	for i := range list {
+		u := &list[i]
+		g := byNumber[u.Group]
+		if g == nil {
+			g = &group{first: u}
+			byNumber[u.Group] = g
+			groups = append(groups, g)
+		}
+		g.times++
+		g.pairs += int64(len(u.Pairs))
+	}
+	slices.SortStableFunc(groups, func(a, b *group) int {
+		return cmp.Or(cmp.Compare(b.pairs, a.pairs), cmp.Compare(b.times, a.times), cmp.Compare(a.first.Group, b.first.Group))
+	})
+	return groups
+}
+
+func (s *summary) group(g *group) {
+	u := g.first
+	what := "an odd cycle of " + count(len(u.Cycle), "shape")
+	if u.Cause == decompose.OrderClash {
+		what = "orders that clash over " + count(len(u.Cycle), "shape")
+	}
+	s.line("  %s: %s, %s left on one mask", times(g.times), what, count(len(u.Pairs), "pair"))
+	if u.Cell != "" {
+		s.line("      at (%s) in cell %s", s.place(u.CellPlace), text(u.Cell))
+	}
+	if len(u.Pairs) > 0 {
+		p := &u.Pairs[0]
+		first := "the pair"
+		if len(u.Pairs) > 1 {
+			first = "the first pair"
+		}
+		line := fmt.Sprintf("      %s: from (%s) to (%s) in top %s, on mask %v", first, s.place(p.From), s.place(p.To), text(u.Top), p.Mask)
+		if p.Widen > 0 {
+			line += "; widen the gap by " + s.r.Rules.Length(float64(p.Widen))
+		}
+		s.line("%s", line)
+	}
+	switch {
+	case len(u.LeastStitches) > 0:
+		c := u.Candidates[u.LeastStitches[0]]
+		s.line("      %s would do, the first over (%s) to (%s)", count(len(u.LeastStitches), "stitch"),
+			s.place(decompose.Spot{X: c.Box.X1, Y: c.Box.Y1}), s.place(decompose.Spot{X: c.Box.X2, Y: c.Box.Y2}))
+	case len(u.Candidates) > 0:
+		s.line("      %s for a stitch, but no set of them is enough", count(len(u.Candidates), "place"))
+	case u.NoCandidate != "":
+		s.line("      no stitch: %s", u.NoCandidate)
+	}
+}
+
+// place words a place in the deck's unit.
+func (s *summary) place(at decompose.Spot) string {
+	return s.r.Rules.Number(float64(at.X)/2) + ", " + s.r.Rules.Number(float64(at.Y)/2) + " " + s.r.Rules.Unit
+}
+
+// cost tells what the run took.
+func (s *summary) cost() {
+	run := &s.r.Run
+	parts := []string{fmt.Sprintf("%.2f s", run.Seconds)}
+	if run.Peak > 0 {
+		parts = append(parts, Bytes(run.Peak)+" of memory at most")
+	}
+	if run.Jobs > 0 {
+		parts = append(parts, count(run.Jobs, "worker"))
+	}
+	s.line("")
+	s.line("%s", strings.Join(parts, ", "))
+}
+
+// Bytes words an amount of memory.
+func Bytes(n int64) string {
+	switch {
+	case n >= 1<<30:
+		return fmt.Sprintf("%.2f GiB", float64(n)/(1<<30))
+	case n >= 1<<20:
+		return fmt.Sprintf("%.0f MiB", float64(n)/(1<<20))
+	case n >= 1<<10:
+		return fmt.Sprintf("%.0f KiB", float64(n)/(1<<10))
+	}
+	return fmt.Sprintf("%d B", n)
+}
+
+// number words a count, with commas between thousands.
+func number(n int64) string {
+	digits := strconv.FormatInt(n, 10)
+	from := len(digits) % 3
+	parts := []string{}
+	if from > 0 {
+		parts = append(parts, digits[:from])
+	}
+	for i := from; i < len(digits); i += 3 {
+		parts = append(parts, digits[i:i+3])
+	}
+	return strings.Join(parts, ",")
+}
+
+// count words a number of things.
+func count(n int, thing string) string {
+	if n == 1 {
+		return "1 " + thing
+	}
+	if strings.HasSuffix(thing, "ch") {
+		thing += "e"
+	}
+	return number(int64(n)) + " " + thing + "s"
+}
+
+// times words how often a thing occurs.
+func times(n int64) string {
+	if n == 1 {
+		return "once"
+	}
+	return number(n) + " times"
+}
+
+// area words an area that is given in square database units.
+func (s *summary) area(dbu2 float64) string {
+	um := s.r.Rules.DBU * 1e6
+	return strconv.FormatFloat(dbu2*um*um, 'g', 5, 64) + " um2"
+}
+
+// imbalance words the difference of two areas as a part of their sum.
+func imbalance(a, b float64) string {
+	if a+b <= 0 {
+		return "none"
+	}
+	return fmt.Sprintf("%.1f %%", 100*max(a-b, b-a)/(a+b))
+}
