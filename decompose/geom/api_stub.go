@@ -1,36 +1,5 @@
 package geom
 
-// Polygon is an any-angle figure cut into bands.
-type Polygon struct{}
-
-// Band is a part of a polygon.
-type Band struct {
-	Box Rect
-}
-
-// NewPolygon cuts an outline into bands.
-func NewPolygon(outline []Point, fill Fill) *Polygon { return &Polygon{} }
-
-// Bands of the polygon; read only.
-func (p *Polygon) Bands() []Band { return nil }
-
-// Box is the bounding box of the filled area.
-func (p *Polygon) Box() Rect { return Rect{} }
-
-// HasArea tells whether the polygon covers anything; exact.
-func (p *Polygon) HasArea() bool { return false }
-
-// Area is the filled area (float: crossings may have fractional places).
-func (p *Polygon) Area() float64 { return 0 }
-
-// BandRelation compares band i of p with band j of q as placed.
-func BandRelation(p *Polygon, i int, pp Placement, q *Polygon, j int, qp Placement, s int64) Relation {
-	return Far
-}
-
-// BandRectRelation compares band i of p as placed with a rectangle of the plane.
-func BandRectRelation(p *Polygon, i int, pp Placement, r Rect, s int64) Relation { return Far }
-
 // Placed is a polygon with its place.
 type Placed struct {
 	Polygon *Polygon
