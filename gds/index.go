@@ -4,6 +4,8 @@ import (
 	"encoding/binary"
 	"io"
 	"math"
+
+	"maskpair/gds/arena"
 )
 
 // This file is pass 1: it reads a stream once, checks its grammar, and keeps what is of interest. Elements that are plain
@@ -52,8 +54,8 @@ func newIndexer(r io.Reader, size int64, want Interest) *indexer {
 	x.lib = &Library{Boxes: map[LayerType]int{}}
 	if size > 0 {
 		// No element is shorter than 32 bytes.
-		x.lib.Figures = make([]Figure, 0, min(size/32+1, 1<<18))
-		x.lib.Points = make([]Point, 0, min(size/8+1, 1<<18))
+		x.lib.Figures = arena.Make[Figure](0, int(min(size/32+1, 1<<18)))
+		x.lib.Points = arena.Make[Point](0, int(min(size/8+1, 1<<18)))
 	}
 	return x
 }
@@ -69,7 +71,7 @@ func grow[T any](s []T, read, size, least int64) []T {
 		room = max(room, min(ahead, 64*have))
 		room = min(room, have+(size-read)/least+bufferSize/least+1024)
 	}
-	grown := make([]T, have, room)
+	grown := arena.Make[T](len(s), int(room))
 	copy(grown, s)
 	return grown
 }
@@ -92,14 +94,14 @@ func (x *indexer) library() error {
 			return err
 		}
 	}
-	x.lib.End = x.s.offset()
+	x.lib.End = x.s.place()
 	x.s.Scan()
 	x.s.padding()
 	if x.s.err != nil {
 		return x.s.err
 	}
 	x.lib.tailSum = x.s.cut()
-	x.lib.Bytes = x.s.offset()
+	x.lib.Bytes = x.s.place()
 	return nil
 }
 
@@ -115,7 +117,7 @@ func (x *indexer) next() (Kind, error) {
 		err = faultf(ErrOrder, "%v stands where a structure (BGNSTR) or the end of the library (ENDLIB) must follow", kind)
 	}
 	if err != nil {
-		return 0, &SyntaxError{Offset: x.s.offset(), Record: kind, Err: err}
+		return 0, &SyntaxError{Offset: x.s.place(), Record: kind, Err: err}
 	}
 	return kind, nil
 }
@@ -143,7 +145,7 @@ func (x *indexer) header() error {
 		if !ok {
 			return s.err
 		}
-		offset := s.offset()
+		offset := s.place()
 		kind, data := Kind(s.buf[s.pos+2]), DataType(s.buf[s.pos+3])
 		err := checkRecord(length, kind, data)
 		bit := kind.bit()
@@ -174,7 +176,7 @@ func (x *indexer) header() error {
 				return s.err
 			}
 			if kind == UNITS {
-				err = x.units(s.rec.Data)
+				err = x.units(s.data())
 			}
 		}
 		if err != nil {
@@ -196,7 +198,7 @@ func (x *indexer) units(data []byte) error {
 // structure reads from BGNSTR to ENDSTR.
 func (x *indexer) structure() error {
 	s, lib := x.s, x.lib
-	begin := s.offset()
+	begin := s.place()
 	x.cur = Structure{Begin: begin, FirstFigure: uint32(len(lib.Figures)), FirstRef: uint32(len(lib.Refs)),
 		FirstLabel: uint32(len(lib.Labels))}
 	x.elements = 0
@@ -247,6 +249,7 @@ func (x *indexer) strname() (int32, error) {
 	if !ok {
 		return 0, s.err
 	}
+	offset := s.place()
 	kind := Kind(s.buf[s.pos+2])
 	if err := checkRecord(length, kind, DataType(s.buf[s.pos+3])); err != nil {
 		return 0, x.fault(err, kind)
@@ -257,14 +260,14 @@ func (x *indexer) strname() (int32, error) {
 	if !s.Scan() {
 		return 0, s.err
 	}
-	name := trimNUL(s.rec.Data)
+	name := trimNUL(s.data())
 	if len(name) == 0 {
-		return 0, &SyntaxError{Offset: s.rec.Offset, Record: STRNAME, Err: faultf(ErrValue, "STRNAME is empty")}
+		return 0, &SyntaxError{Offset: offset, Record: STRNAME, Err: faultf(ErrValue, "STRNAME is empty")}
 	}
 	id := x.number(name)
 	x.cur.Name = x.names[id]
 	if other := x.defined[id]; other >= 0 {
-		return 0, &SyntaxError{Offset: s.rec.Offset, Structure: x.cur.Name, Record: STRNAME, Err: faultf(ErrTwice,
+		return 0, &SyntaxError{Offset: offset, Structure: x.cur.Name, Record: STRNAME, Err: faultf(ErrTwice,
 			"the structure is defined twice, at byte %d and at byte %d", x.lib.Structures[other].Begin, x.cur.Begin)}
 	}
 	return id, nil
@@ -276,7 +279,7 @@ func (x *indexer) endStructure(id int32) error {
 	if len(lib.Structures) >= math.MaxInt32 {
 		return x.fault(faultf(ErrTooMany, "more than %d structures", math.MaxInt32), ENDSTR)
 	}
-	x.cur.End = x.s.offset()
+	x.cur.End = x.s.place()
 	x.cur.Sum = x.s.cut()
 	x.cur.Elements = int32(min(x.elements, math.MaxInt32))
 	x.cur.EndFigure = uint32(len(lib.Figures))
@@ -289,7 +292,7 @@ func (x *indexer) endStructure(id int32) error {
 
 // fault places what is wrong with the next record, between elements.
 func (x *indexer) fault(err error, kind Kind) error {
-	return &SyntaxError{Offset: x.s.offset(), Structure: x.cur.Name, Record: kind, Err: err}
+	return &SyntaxError{Offset: x.s.place(), Structure: x.cur.Name, Record: kind, Err: err}
 }
 
 // inStructure adds the structure to a fault that the scanner found.
@@ -409,7 +412,7 @@ func (x *indexer) cutElement() error {
 
 // elementFault places what is wrong with a record of the element at the scanner's place.
 func (x *indexer) elementFault(err error, kind Kind, at int, record Kind) error {
-	return &SyntaxError{Offset: x.s.offset() + int64(at), Structure: x.cur.Name, Element: x.elements + 1, Kind: kind,
+	return &SyntaxError{Offset: x.s.place() + int64(at), Structure: x.cur.Name, Element: x.elements + 1, Kind: kind,
 		Record: record, Err: err}
 }
 
@@ -483,7 +486,7 @@ func (x *indexer) outline(class uint8, o Outline, xy, rest []byte, more int) {
 	}
 	o.Count = uint32(len(points))
 	if len(lib.Outlines) == cap(lib.Outlines) {
-		lib.Outlines = grow(lib.Outlines, x.s.offset(), x.size, 32)
+		lib.Outlines = grow(lib.Outlines, x.s.place(), x.size, 32)
 	}
 	lib.Outlines = append(lib.Outlines, o)
 	lib.Figures = append(lib.Figures, Figure{Box: bounds(points), Outline: uint32(len(lib.Outlines)), Class: class})
@@ -493,7 +496,7 @@ func (x *indexer) outline(class uint8, o Outline, xy, rest []byte, more int) {
 func (x *indexer) addPoints(xy []byte) {
 	points := x.lib.Points
 	for cap(points)-len(points) < len(xy)/8 {
-		points = grow(points, x.s.offset(), x.size, 8)
+		points = grow(points, x.s.place(), x.size, 8)
 	}
 	at := len(points)
 	points = points[:at+len(xy)/8]
@@ -553,7 +556,7 @@ func (x *indexer) reference() error {
 		ref.Extra = uint32(len(lib.Placements))
 	}
 	if len(lib.Refs) == cap(lib.Refs) {
-		lib.Refs = grow(lib.Refs, x.s.offset(), x.size, 26)
+		lib.Refs = grow(lib.Refs, x.s.place(), x.size, 26)
 	}
 	lib.Refs = append(lib.Refs, ref)
 	return nil

@@ -27,7 +27,7 @@ type Scanner struct {
 	buf      []byte
 	pos, end int   // buf[pos:end] is read and not yet scanned
 	base     int64 // offset of buf[0] in the stream
-	rec      Record
+	last     int   // buf[last:pos] is the last record; empty before the first, and at the end
 	err      error
 	over     bool  // ENDLIB was scanned
 	fault    error // of the reader; io.EOF at its end
@@ -45,7 +45,16 @@ func NewScanner(r io.Reader) *Scanner {
 }
 
 // Record gives the record of the last Scan that said true.
-func (s *Scanner) Record() Record { return s.rec }
+func (s *Scanner) Record() Record {
+	b := s.buf[s.last:s.pos]
+	if len(b) < 4 {
+		return Record{}
+	}
+	return Record{Kind: Kind(b[2]), Type: DataType(b[3]), Offset: s.base + int64(s.last), Data: b[4:len(b):len(b)]}
+}
+
+// data is the data of the last record.
+func (s *Scanner) data() []byte { return s.buf[s.last+4 : s.pos] }
 
 // Err gives the fault that ended the scan, nil where it ended with the stream. Faults of the stream are of type
 // *SyntaxError.
@@ -58,9 +67,9 @@ func (s *Scanner) Scan() bool {
 	if len(b) >= 4 && !s.over {
 		length := int(binary.BigEndian.Uint16(b))
 		if length <= len(b) && length >= 4 && length&1 == 0 {
-			s.rec = Record{Kind(b[2]), DataType(b[3]), s.base + int64(s.pos), b[4:length:length]}
+			s.last = s.pos
 			s.pos += length
-			s.over = s.rec.Kind == ENDLIB
+			s.over = Kind(b[2]) == ENDLIB
 			return true
 		}
 	}
@@ -69,6 +78,7 @@ func (s *Scanner) Scan() bool {
 
 // scan is Scan where the buffer ends, and where something is wrong.
 func (s *Scanner) scan() bool {
+	s.last = s.pos
 	if s.err != nil {
 		return false
 	}
@@ -86,10 +96,9 @@ func (s *Scanner) scan() bool {
 			return false
 		}
 	}
-	b := s.buf[s.pos:s.end]
-	s.rec = Record{Kind(b[2]), DataType(b[3]), s.base + int64(s.pos), b[4:length:length]}
+	s.last = s.pos
 	s.pos += length
-	s.over = s.rec.Kind == ENDLIB
+	s.over = Kind(s.buf[s.last+2]) == ENDLIB
 	return true
 }
 
@@ -104,7 +113,7 @@ func (s *Scanner) head() (length int, ok bool) {
 	b := s.buf[s.pos:s.end]
 	length = int(binary.BigEndian.Uint16(b))
 	if err := checkLength(length); err != nil {
-		s.fail(&SyntaxError{Offset: s.offset(), Record: Kind(b[2]), Err: err})
+		s.fail(&SyntaxError{Offset: s.place(), Record: Kind(b[2]), Err: err})
 		return 0, false
 	}
 	return length, true
@@ -121,8 +130,8 @@ func checkLength(length int) error {
 	return nil
 }
 
-// offset is the place of the next record.
-func (s *Scanner) offset() int64 { return s.base + int64(s.pos) }
+// place is the offset of the next record.
+func (s *Scanner) place() int64 { return s.base + int64(s.pos) }
 
 // fill reads on; all from pos is kept. It says false where nothing is left, or reading fails.
 func (s *Scanner) fill() bool {
@@ -137,7 +146,7 @@ func (s *Scanner) fill() bool {
 		copy(s.buf, s.buf[s.pos:s.end])
 		s.base += int64(s.pos)
 		s.end -= s.pos
-		s.pos = 0
+		s.pos, s.last = 0, 0
 	} else if s.end == len(s.buf) {
 		grown := make([]byte, 2*len(s.buf))
 		copy(grown, s.buf)
@@ -179,7 +188,7 @@ func (s *Scanner) cutOff(need int) {
 		s.fail(s.fault)
 		return
 	}
-	e := &SyntaxError{Offset: s.offset()}
+	e := &SyntaxError{Offset: s.place()}
 	have := s.end - s.pos
 	switch {
 	case s.base == 0 && s.end == 0:
@@ -208,12 +217,13 @@ func (s *Scanner) padding() {
 		for i, c := range s.buf[s.pos:s.end] {
 			if c != 0 {
 				s.pos += i
-				s.fail(&SyntaxError{Offset: s.offset(), Err: faultf(ErrTrailing,
+				s.last = s.pos
+				s.fail(&SyntaxError{Offset: s.place(), Err: faultf(ErrTrailing,
 					"something that is not zero follows the end of the library (ENDLIB)")})
 				return
 			}
 		}
-		s.pos = s.end
+		s.pos, s.last = s.end, s.end
 		if !s.fill() {
 			if s.fault != io.EOF {
 				s.fail(s.fault)

@@ -20,12 +20,10 @@ const Mirrored Orientation = 4
 
 // Then gives the orientation of something laid by o inside something laid by outer.
 func (o Orientation) Then(outer Orientation) Orientation {
-	// Mirroring turns a counter-clockwise turn into a clockwise one: R^a M R^b = R^(a-b) M.
-	turns := o & 3
-	if outer&Mirrored != 0 {
-		turns = -turns
-	}
-	return (outer+turns)&3 | (o^outer)&Mirrored
+	// Mirroring turns a counter-clockwise turn into a clockwise one: R^a M R^b = R^(a-b) M. sign is 0 or -1, and turns the
+	// count of o around without a branch.
+	sign := -(outer >> 2 & 1)
+	return (outer+(o^sign)-sign)&3 | (o^outer)&Mirrored
 }
 
 // Inverse gives the orientation that undoes o.
@@ -36,20 +34,16 @@ func (o Orientation) Inverse() Orientation {
 	return -o & 3
 }
 
+// axes says what becomes of the axes: (x, y) goes to (a*x + b*y, c*x + d*y). It is never written to.
+var axes = [8]struct{ a, b, c, d int64 }{
+	{1, 0, 0, 1}, {0, -1, 1, 0}, {-1, 0, 0, -1}, {0, 1, -1, 0},
+	{1, 0, 0, -1}, {0, 1, 1, 0}, {-1, 0, 0, 1}, {0, -1, -1, 0},
+}
+
 // Apply turns a point about the origin.
 func (o Orientation) Apply(x, y int64) (int64, int64) {
-	if o&Mirrored != 0 {
-		y = -y
-	}
-	switch o & 3 {
-	case 1:
-		return -y, x
-	case 2:
-		return -x, -y
-	case 3:
-		return y, -x
-	}
-	return x, y
+	m := &axes[o&7]
+	return m.a*x + m.b*y, m.c*x + m.d*y
 }
 
 // String gives the orientation in words.
@@ -69,9 +63,9 @@ func (o Orientation) String() string {
 
 const (
 	// maxGrow is the largest whole magnification that is kept as an integer. With it, and with maxShift, nothing in this
-	// file can leave int64: points handed to Apply are below 2^33 in magnitude, so grow times a point is at most 2^53; a
-	// composition adds at most 2^34 (a place and a lattice) times 2^20 to a shift of at most 2^60, and falls back to
-	// floating point where the sum passes 2^60.
+	// file can leave int64: points handed to Apply are below 2^33 in magnitude, so a grown point is below 2^53; without
+	// magnification a composition adds at most 2^34 (a place and a lattice) to a shift, which takes more levels of
+	// hierarchy than there can be structures; with it, composeGrown checks the shift.
 	maxGrow  = 1 << 20
 	maxShift = 1 << 60
 )
@@ -82,12 +76,12 @@ const (
 type Transform struct {
 	X, Y        int64 // shift in whole units; meaningful where Exact
 	Orientation Orientation
-	grow        int32    // whole magnification less 1
-	odd         *inexact // not nil: this is what counts
+	odd         *odd // nil: neither magnified nor odd. (Four fields are what the compiler keeps in registers.)
 }
 
-// inexact is a placement that is no whole number of units, as float64.
-type inexact struct {
+// odd says of a placement what whole units and eight orientations do not.
+type odd struct {
+	grow     int64   // not 0: the placement is exact and this its whole magnification, 2 or more; nothing below counts
 	x, y     float64 // shift
 	scale    float64
 	degrees  float64 // counter-clockwise, in [0, 360)
@@ -104,20 +98,25 @@ func NewTransform(o Orientation, x, y int64) Transform {
 }
 
 // Exact says whether the placement takes whole units to whole units by integers alone.
-func (t Transform) Exact() bool { return t.odd == nil }
+func (t Transform) Exact() bool { return t.odd == nil || t.odd.grow != 0 }
 
 // Rigid says whether the placement is exact and does not magnify.
-func (t Transform) Rigid() bool { return t.odd == nil && t.grow == 0 }
+func (t Transform) Rigid() bool { return t.odd == nil }
 
-// Magnification gives the whole magnification of an exact placement.
-func (t Transform) Magnification() int64 { return int64(t.grow) + 1 }
+// Magnification gives the whole magnification of an exact placement, 0 for others.
+func (t Transform) Magnification() int64 {
+	if t.odd == nil {
+		return 1
+	}
+	return t.odd.grow
+}
 
 // Scale gives the magnification: what the width of a path is to be multiplied with, unless it is negative (absolute).
 func (t Transform) Scale() float64 {
-	if t.odd != nil {
-		return t.odd.scale
+	if t.Exact() {
+		return float64(t.Magnification())
 	}
-	return float64(t.grow) + 1
+	return t.odd.scale
 }
 
 // Equal says whether two placements are the same.
@@ -125,7 +124,7 @@ func (t Transform) Equal(u Transform) bool {
 	if t.odd == nil || u.odd == nil {
 		return t == u
 	}
-	return *t.odd == *u.odd
+	return t.X == u.X && t.Y == u.Y && t.Orientation == u.Orientation && *t.odd == *u.odd
 }
 
 // Compose places a reference: it gives the placement of what ref places (element column, row of an array) where parent
@@ -144,165 +143,197 @@ func Compose(parent Transform, ref *Ref, p *Placement, column, row int32) Transf
 			x, y = p.Element(ref.At, column, row)
 		}
 		if !p.Exact || p.AbsoluteAngle || p.AbsoluteMagnification {
-			return composeOdd(parent, p, x, y)
+			return parent.composeOdd(p, x, y)
 		}
 	}
-	if parent.odd != nil {
-		o := Orientation(ref.Turn)
-		return parent.odd.compose(float64(x), float64(y), 1, 90*float64(o&3), o&Mirrored != 0, false, false)
-	}
-	if parent.grow != 0 {
-		return composeGrown(parent, x, y, 1, Orientation(ref.Turn), false, false)
-	}
-	return parent.place(x, y, Orientation(ref.Turn))
+	return parent.Place(Orientation(ref.Turn), x, y)
 }
 
-// Shift gives the placement of something upright at (x, y) where t places what holds it.
-func (t Transform) Shift(x, y int64) Transform {
+// Place gives the placement of something laid by o at (x, y), where t places what holds it.
+func (t Transform) Place(o Orientation, x, y int64) Transform {
 	if t.odd != nil {
-		return t.odd.compose(float64(x), float64(y), 1, 0, false, false, false)
+		return t.placeOdd(part{whole: true, orientation: o, grow: 1, x: x, y: y})
 	}
-	if t.grow != 0 {
-		return composeGrown(t, x, y, 1, 0, false, false)
-	}
-	return t.place(x, y, 0)
-}
-
-// Then gives the placement of something that t places inside something that outer places.
-func (t Transform) Then(outer Transform) Transform {
-	if t.odd == nil && outer.odd == nil {
-		if t.grow|outer.grow == 0 {
-			return outer.place(t.X, t.Y, t.Orientation)
-		}
-		return composeGrown(outer, t.X, t.Y, t.Magnification(), t.Orientation, false, false)
-	}
-	i := t.float()
-	return outer.float().compose(i.x, i.y, i.scale, i.degrees, i.mirror, false, false)
-}
-
-// place composes without magnification, by integers.
-func (t Transform) place(x, y int64, o Orientation) Transform {
 	dx, dy := t.Orientation.Apply(x, y)
 	return Transform{X: t.X + dx, Y: t.Y + dy, Orientation: o.Then(t.Orientation)}
 }
 
-// composeGrown composes where parent and reference are exact but one of them may magnify, or be absolute.
-func composeGrown(parent Transform, x, y, magnification int64, o Orientation, absoluteMagnification, absoluteAngle bool) Transform {
-	total := magnification
-	if !absoluteMagnification {
-		total *= parent.Magnification() // each at most 2^20
+// Then gives the placement of something that t places inside something that outer places.
+func (t Transform) Then(outer Transform) Transform {
+	if t.odd == nil {
+		return outer.Place(t.Orientation, t.X, t.Y)
 	}
-	const most = maxShift >> 21
-	if total > maxGrow || x > most || x < -most || y > most || y < -most {
-		return parent.float().compose(float64(x), float64(y), float64(magnification), 90*float64(o&3), o&Mirrored != 0,
-			absoluteMagnification, absoluteAngle)
+	if t.odd.grow != 0 {
+		return outer.placeOdd(part{whole: true, orientation: t.Orientation, grow: t.odd.grow, x: t.X, y: t.Y})
 	}
-	dx, dy := parent.Orientation.Apply(x, y)
-	dx, dy = parent.X+dx*parent.Magnification(), parent.Y+dy*parent.Magnification()
-	if dx > maxShift || dx < -maxShift || dy > maxShift || dy < -maxShift {
-		return parent.float().compose(float64(x), float64(y), float64(magnification), 90*float64(o&3), o&Mirrored != 0,
-			absoluteMagnification, absoluteAngle)
-	}
-	if absoluteAngle {
-		o = o&3 | (o^parent.Orientation)&Mirrored
-	} else {
-		o = o.Then(parent.Orientation)
-	}
-	return Transform{X: dx, Y: dy, Orientation: o, grow: int32(total - 1)}
+	return outer.float().compose(part{fx: t.odd.x, fy: t.odd.y, scale: t.odd.scale, degrees: t.odd.degrees, mirror: t.odd.mirror})
 }
 
-// composeOdd composes a reference that magnifies, has an odd angle, or is absolute.
-func composeOdd(parent Transform, p *Placement, x, y int64) Transform {
-	quarter, whole := quarterTurns(p.Angle)
-	if parent.odd == nil && whole && p.Magnification >= 1 && p.Magnification <= maxGrow && p.Magnification == math.Trunc(p.Magnification) {
-		o := quarter
+// part is what is placed inside a placement: a reference, or another placement.
+type part struct {
+	whole       bool // orientation, grow, x and y count; otherwise scale, degrees, mirror, fx and fy
+	orientation Orientation
+	grow        int64
+	x, y        int64
+
+	scale, degrees float64
+	mirror         bool
+	fx, fy         float64
+
+	absoluteMagnification, absoluteAngle bool
+}
+
+// composeOdd places a reference that magnifies, has an odd angle, or is absolute, at (x, y).
+func (t Transform) composeOdd(p *Placement, x, y int64) Transform {
+	n := part{x: x, y: y, scale: p.Magnification, degrees: p.Angle, mirror: p.Mirror, fx: float64(x), fy: float64(y),
+		absoluteMagnification: p.AbsoluteMagnification, absoluteAngle: p.AbsoluteAngle}
+	quarter, turns := quarterTurns(p.Angle)
+	if turns && wholeGrow(p.Magnification) {
+		n.whole, n.orientation, n.grow = true, quarter, int64(p.Magnification)
 		if p.Mirror {
-			o |= Mirrored
+			n.orientation |= Mirrored
 		}
-		return composeGrown(parent, x, y, int64(p.Magnification), o, p.AbsoluteMagnification, p.AbsoluteAngle)
 	}
-	return parent.float().compose(float64(x), float64(y), p.Magnification, p.Angle, p.Mirror, p.AbsoluteMagnification, p.AbsoluteAngle)
+	return t.placeOdd(n)
+}
+
+// placeOdd places n where not all is rigid: by integers where these do, otherwise by floating point.
+func (t Transform) placeOdd(n part) Transform {
+	if !n.whole {
+		return t.float().compose(n)
+	}
+	if t.Exact() {
+		if u, ok := t.placeGrown(n); ok {
+			return u
+		}
+	}
+	n.scale, n.degrees, n.mirror = float64(n.grow), 90*float64(n.orientation&3), n.orientation&Mirrored != 0
+	n.fx, n.fy = float64(n.x), float64(n.y)
+	return t.float().compose(n)
+}
+
+// placeGrown composes by integers. It says false where these could overflow.
+func (t Transform) placeGrown(n part) (Transform, bool) {
+	grow := t.Magnification()
+	total := n.grow
+	if !n.absoluteMagnification {
+		total *= grow // each at most 2^20
+	}
+	const most = maxShift / maxGrow
+	if total > maxGrow || n.x > most || n.x < -most || n.y > most || n.y < -most {
+		return Transform{}, false
+	}
+	x, y := t.Orientation.Apply(n.x, n.y)
+	x, y = t.X+x*grow, t.Y+y*grow // below 2^62: a shift is at most 2^60, or of a few levels of 2^34 more
+	if x > maxShift || x < -maxShift || y > maxShift || y < -maxShift {
+		return Transform{}, false
+	}
+	u := Transform{X: x, Y: y, Orientation: n.orientation.Then(t.Orientation)}
+	if n.absoluteAngle {
+		u.Orientation = u.Orientation&Mirrored | n.orientation&3
+	}
+	if total != 1 {
+		u.odd = &odd{grow: total}
+	}
+	return u, true
 }
 
 // float gives the placement as floating point.
-func (t Transform) float() *inexact {
-	if t.odd != nil {
+func (t Transform) float() *odd {
+	if !t.Exact() {
 		return t.odd
 	}
-	i := &inexact{x: float64(t.X), y: float64(t.Y), scale: float64(t.grow) + 1, degrees: 90 * float64(t.Orientation&3),
+	f := &odd{x: float64(t.X), y: float64(t.Y), scale: t.Scale(), degrees: 90 * float64(t.Orientation&3),
 		mirror: t.Orientation&Mirrored != 0}
-	i.cos, i.sin = cosSin(i.degrees)
-	return i
+	f.cos, f.sin = cosSin(f.degrees)
+	return f
 }
 
-// compose places something with the given shift, scale, angle and mirroring inside i. Angles add up as degrees, so that
-// two turns by 45 degrees are a quarter turn; what comes out exact is made exact again.
-func (i *inexact) compose(x, y, scale, degrees float64, mirror, absoluteMagnification, absoluteAngle bool) Transform {
-	n := &inexact{scale: scale, degrees: degrees, mirror: mirror != i.mirror}
-	n.x, n.y = i.place(x, y)
-	if !absoluteMagnification {
-		n.scale = scale * i.scale
+// compose places n inside f, by floating point. Angles add up as degrees, so that two turns by 45 degrees are a quarter
+// turn; what comes out exact is made exact again.
+func (f *odd) compose(n part) Transform {
+	u := &odd{scale: n.scale, degrees: n.degrees, mirror: n.mirror != f.mirror}
+	u.x, u.y = f.place(n.fx, n.fy)
+	if !n.absoluteMagnification {
+		u.scale = n.scale * f.scale
 	}
-	if !absoluteAngle {
-		if i.mirror {
-			degrees = -degrees
+	if !n.absoluteAngle {
+		if f.mirror {
+			u.degrees = -n.degrees
 		}
-		n.degrees = i.degrees + degrees
+		u.degrees += f.degrees
 	}
-	n.degrees = math.Mod(n.degrees, 360)
-	if n.degrees < 0 {
-		n.degrees += 360
-	}
-	if n.degrees >= 360 { // a tiny negative angle, rounded
-		n.degrees = 0
-	}
-	n.cos, n.sin = cosSin(n.degrees)
+	u.degrees = turnOnce(u.degrees)
+	u.cos, u.sin = cosSin(u.degrees)
 
-	quarter, whole := quarterTurns(n.degrees)
-	if whole && n.scale >= 1 && n.scale <= maxGrow && n.scale == math.Trunc(n.scale) && wholeShift(n.x) && wholeShift(n.y) {
-		t := Transform{X: int64(n.x), Y: int64(n.y), Orientation: quarter, grow: int32(n.scale) - 1}
-		if n.mirror {
+	if quarter, turns := quarterTurns(u.degrees); turns && wholeGrow(u.scale) && wholeShift(u.x) && wholeShift(u.y) {
+		t := Transform{X: int64(u.x), Y: int64(u.y), Orientation: quarter}
+		if u.mirror {
 			t.Orientation |= Mirrored
+		}
+		if u.scale != 1 {
+			t.odd = &odd{grow: int64(u.scale)}
 		}
 		return t
 	}
-	return Transform{odd: n}
+	return Transform{odd: u}
 }
+
+// wholeGrow says whether a magnification is a whole number that is kept as an integer.
+func wholeGrow(f float64) bool { return f >= 1 && f <= maxGrow && f == math.Trunc(f) }
 
 // wholeShift says whether a shift is a whole number that float64 holds without doubt.
 func wholeShift(f float64) bool { return f == math.Trunc(f) && math.Abs(f) < 1<<52 }
 
 // place gives the place of a point, unrounded. The conversions keep the compiler from fusing products and sums, so that
 // every machine computes the same.
-func (i *inexact) place(x, y float64) (float64, float64) {
-	if i.mirror {
+func (f *odd) place(x, y float64) (float64, float64) {
+	if f.mirror {
 		y = -y
 	}
-	c, s := i.cos*i.scale, i.sin*i.scale
-	return float64(float64(c*x)-float64(s*y)) + i.x, float64(float64(s*x)+float64(c*y)) + i.y
+	c, s := f.cos*f.scale, f.sin*f.scale
+	return float64(float64(c*x)-float64(s*y)) + f.x, float64(float64(s*x)+float64(c*y)) + f.y
 }
 
-// quarterTurns gives an angle as quarter turns, where it is a multiple of 90 degrees.
-func quarterTurns(degrees float64) (Orientation, bool) {
-	turns := degrees / 90
-	if turns != math.Trunc(turns) || turns*90 != degrees {
-		return 0, false
-	}
-	return Orientation(int64(math.Mod(turns, 4))) & 3, true
-}
-
-// cosSin gives cosine and sine of an angle, exact at the quarter turns and at halves.
-func cosSin(degrees float64) (cos, sin float64) {
+// turnOnce takes whole turns off an angle: the result lies in [0, 360).
+func turnOnce(degrees float64) float64 {
 	degrees = math.Mod(degrees, 360)
 	if degrees < 0 {
 		degrees += 360
 	}
+	if degrees >= 360 { // a tiny negative angle, rounded
+		return 0
+	}
+	return degrees
+}
+
+// quarterTurns gives an angle as quarter turns, where it is a multiple of 90 degrees.
+func quarterTurns(degrees float64) (Orientation, bool) {
+	switch degrees {
+	case 0:
+		return 0, true
+	case 90:
+		return 1, true
+	case 180:
+		return 2, true
+	case 270:
+		return 3, true
+	}
+	if math.Mod(degrees, 90) != 0 {
+		return 0, false
+	}
+	return Orientation(turnOnce(degrees) / 90), true
+}
+
+// cosSin gives cosine and sine of an angle, exact at the quarter turns and where one of them is a half.
+func cosSin(degrees float64) (cos, sin float64) {
+	degrees = turnOnce(degrees)
 	quarter := math.Floor(degrees / 90)
-	rest := degrees - 90*quarter // exact: both are multiples of the last place of degrees
-	switch {
-	case rest == 0:
+	rest := degrees - 90*quarter // exact: no bits are lost to a smaller number
+	switch rest {
+	case 0:
 		cos, sin = 1, 0
-	case rest == 45:
+	case 45:
 		cos, sin = math.Sqrt2/2, math.Sqrt2/2
 	default:
 		sin, cos = math.Sincos(rest * (math.Pi / 180))
@@ -313,7 +344,7 @@ func cosSin(degrees float64) (cos, sin float64) {
 			cos = 0.5
 		}
 	}
-	switch int(quarter) & 3 {
+	switch int(quarter) {
 	case 1:
 		return -sin, cos
 	case 2:
@@ -328,15 +359,19 @@ func cosSin(degrees float64) (cos, sin float64) {
 // to the nearest unit, ties to even.
 func (t Transform) Apply(x, y int64) (int64, int64) {
 	if t.odd != nil {
-		fx, fy := t.odd.place(float64(x), float64(y))
-		return round(fx), round(fy)
+		return t.applyOdd(x, y)
 	}
 	x, y = t.Orientation.Apply(x, y)
-	if t.grow != 0 {
-		k := int64(t.grow) + 1
+	return t.X + x, t.Y + y
+}
+
+func (t Transform) applyOdd(x, y int64) (int64, int64) {
+	if k := t.odd.grow; k != 0 {
+		x, y = t.Orientation.Apply(x, y)
 		return t.X + x*k, t.Y + y*k
 	}
-	return t.X + x, t.Y + y
+	fx, fy := t.odd.place(float64(x), float64(y))
+	return round(fx), round(fy)
 }
 
 // ApplyFloat places a point without rounding it to whole units.
@@ -358,7 +393,7 @@ func round(f float64) int64 {
 // ApplyRect places a rectangle. It says false where the placement is not exact, and where the rectangle would leave the
 // range of int32.
 func (t Transform) ApplyRect(r Rect) (Rect, bool) {
-	if t.odd != nil {
+	if !t.Exact() {
 		return Rect{}, false
 	}
 	x1, y1 := t.Apply(int64(r.X1), int64(r.Y1))
@@ -383,7 +418,7 @@ func (t Transform) Invert() (Transform, bool) {
 
 // ApplyInverse finds the point that t places at (x, y). It says false where t is not exact, or no whole point goes there.
 func (t Transform) ApplyInverse(x, y int64) (int64, int64, bool) {
-	if t.odd != nil {
+	if !t.Exact() {
 		return 0, 0, false
 	}
 	x, y = x-t.X, y-t.Y
@@ -399,17 +434,16 @@ func (t Transform) ApplyInverse(x, y int64) (int64, int64, bool) {
 
 // String gives the placement in words, for reports: "mirrored, turned 90 degrees, at (120, -40)".
 func (t Transform) String() string {
-	if t.odd == nil {
-		words := ""
+	words := ""
+	if t.Exact() {
 		if t.Orientation != 0 {
 			words = t.Orientation.String() + ", "
 		}
-		if t.grow != 0 {
-			words += fmt.Sprintf("magnified %d times, ", t.Magnification())
+		if k := t.Magnification(); k != 1 {
+			words += fmt.Sprintf("magnified %d times, ", k)
 		}
 		return words + fmt.Sprintf("at (%d, %d)", t.X, t.Y)
 	}
-	words := ""
 	if t.odd.mirror {
 		words = "mirrored, "
 	}
