@@ -1,11 +1,9 @@
 package exact
 
-import "slices"
-
 // This file cuts a graph into biconnected blocks (Hopcroft and Tarjan 1973). Unary terms do not count as edges.
 
 // blocks calls visit for each block of g, each block after all blocks that hang below it: top is the node that the block shares with what is above it, or the root of its
-// component, and below are its other nodes in ascending order, valid during the call. A node without edges is a block with nothing below. Every node but the roots is
+// component, and below are its other nodes in the order of discovery, which keeps neighbours near each other, valid during the call. A node without edges is a block with nothing below. Every node but the roots is
 // below in exactly one block; roots are the least nodes of their components, and done is called for each after the blocks of its component.
 func blocks(g *graph, visit func(top int32, below []int32), done func(root int32)) {
 	n := g.nodes()
@@ -13,7 +11,7 @@ func blocks(g *graph, visit func(top int32, below []int32), done func(root int32
 	low := make([]int32, n)
 	next := make([]int32, n) // next entry of the row to look at
 	up := make([]int32, n)
-	var path, open, below []int32
+	path, open, below := make([]int32, 0, n), make([]int32, 0, n), make([]int32, 0, n)
 	count := int32(0)
 	discover := func(v, from int32) {
 		count++
@@ -55,7 +53,6 @@ func blocks(g *graph, visit func(top int32, below []int32), done func(root int32
 			}
 			below = append(below[:0], open[at:]...)
 			open = open[:at]
-			slices.Sort(below)
 			visit(u, below)
 		}
 		open = open[:0]

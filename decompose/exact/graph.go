@@ -72,10 +72,25 @@ func (g *graph) floor() int64 {
 	return sum
 }
 
-// reset makes g a graph without edges and unary terms, keeping its memory.
-func (g *graph) reset() {
-	g.start = append(g.start[:0], 0)
-	g.adj, g.wt, g.h = g.adj[:0], g.wt[:0], g.h[:0]
+// reset makes g a graph without nodes that has room for so many nodes and entries of rows, keeping its memory where it can.
+func (g *graph) reset(nodes, halves int) {
+	g.start = append(resize(g.start, nodes+1)[:0], 0)
+	g.adj, g.wt, g.h = resize(g.adj, halves)[:0], resize(g.wt, halves)[:0], resize(g.h, nodes)[:0]
+}
+
+// resize gives s the length n, keeping its memory where it can; what it holds is left over from before.
+func resize[T any](s []T, n int) []T {
+	if cap(s) < n {
+		return make([]T, n, n+n/4)
+	}
+	return s[:n]
+}
+
+// zeroed is resize with every element zero.
+func zeroed[T any](s []T, n int) []T {
+	s = resize(s, n)
+	clear(s)
+	return s
 }
 
 // magnitude is |v|; the caller's bound on sums keeps v away from the least int64.

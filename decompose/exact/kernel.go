@@ -34,6 +34,9 @@ type solver struct {
 // share is the part of the budget that a block may take before all others are known: one in so many.
 const share = 64
 
+// cheap is the number of table entries per node that a block may take in any case before all others are known.
+const cheap = 256
+
 // piece is a part of the kernel that is solved by itself: nodes without the top, which is held on A, or -1 where there is none.
 type piece struct {
 	nodes []int32
@@ -112,7 +115,7 @@ func (s *solver) block(g *graph, f *forest, top int32, below []int32) int64 {
 		}
 	}
 	ca := s.load(g, below, top, 0)
-	if !s.planned(s.budget.Work / share) {
+	if !s.planned(max(s.budget.Work/share, cheap*int64(len(below)))) {
 		if free {
 			f.late = append(f.late, piece{nodes: slices.Clone(below), top: top})
 		} else {
@@ -169,7 +172,11 @@ func (s *solver) load(g *graph, nodes []int32, top int32, side uint8) int64 {
 		s.local[v] = int32(i)
 	}
 	sub := &s.sub
-	sub.reset()
+	halves := 0
+	for _, v := range nodes {
+		halves += int(g.start[v+1] - g.start[v])
+	}
+	sub.reset(len(nodes), halves)
 	var held int64
 	for _, v := range nodes {
 		h := g.h[v]

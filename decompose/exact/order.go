@@ -17,30 +17,33 @@ const (
 	fillKeys = 1024
 )
 
+// fillNode is what is known of a node; it fills one cache line, as the nodes are met in no order.
+type fillNode struct {
+	off        int   // row: cell[off : off+size], with room for more
+	fill       int64 // pairs of neighbours that are not adjacent
+	size, room int32
+	degree     int32 // living neighbours; size may count dead ones where the node is large
+	key        int32 // list of nodes of equal fill that the node is in, or -1
+	prev, next int32 // neighbours in that list, or -1
+	slot       int32 // place in the bag in hand plus 1, or 0
+	mark       int32 // time at which the node was met
+	dead, big  bool
+	_          [14]byte
+}
+
 // minFill is the workspace of one ordering after another.
 type minFill struct {
-	off        []int // row of a node: cell[off : off+size], with room for more
-	size, room []int32
-	cell       []int32
-	degree     []int32 // living neighbours; size may count dead ones where the node is large
-	dead       []bool
-	big        []bool
-	fill       []int64
-	far        pairSet // edges between large nodes
+	node  []fillNode
+	cell  []int32
+	far   pairSet // edges between large nodes
+	head  []int32 // per fill: first node, or -1
+	least int32   // no list below is occupied
+	time  int32
 
-	head       []int32 // per fill: first node, or -1
-	prev, tail []int32 // neighbours in that list
-	key        []int32 // list the node is in, or -1
-	least      int32
-
-	slot   []int32 // place in the bag plus 1, or 0
-	mark   []int32 // time at which a node was met
-	time   int32
-	rows   []uint64 // adjacency within the bag
-	listed []int32
-	moved  []int32 // nodes outside the bag whose fill changed
-	out    []int32
-	triple []int32
+	rows  []uint64 // adjacency within the bag
+	moved []int32  // nodes outside the bag whose fill changed
+	ups   []int32  // neighbours of higher degree, for the triangles
+	upAt  []int32
 
 	// The result: order[k] is eliminated when bag[bagStart[k]:bagStart[k+1]] are its neighbours.
 	order    []int32
@@ -50,36 +53,21 @@ type minFill struct {
 	work     int64 // table entries of the elimination: the sum of 2^(bag+1)
 }
 
-// resize gives s the length n, keeping its memory where it can; what it holds is left over from before.
-func resize[T any](s []T, n int) []T {
-	if cap(s) < n {
-		return make([]T, n, n+n/4)
-	}
-	return s[:n]
-}
-
-// zeroed is resize with every element zero.
-func zeroed[T any](s []T, n int) []T {
-	s = resize(s, n)
-	clear(s)
-	return s
-}
-
 // run orders all nodes of g. It gives up, answering false, where no node has at most limit neighbours any more or the work passes the given number. The width is then
 // the least degree met that was too high, or the largest width so far.
 func (o *minFill) run(g *graph, limit int, work int64) bool {
 	limit = min(limit, maxWidth)
 	o.load(g)
-	o.order, o.bag, o.bagStart = o.order[:0], o.bag[:0], append(o.bagStart[:0], 0)
-	o.width, o.work = 0, 0
 	n := g.nodes()
+	o.order, o.bag, o.bagStart = resize(o.order, n)[:0], resize(o.bag, len(g.adj))[:0], append(resize(o.bagStart, n+1)[:0], 0)
+	o.width, o.work = 0, 0
 	for len(o.order) < n {
 		v := o.pick(int32(limit))
 		if v < 0 {
 			o.width = max(o.width, limit+1)
 			return false
 		}
-		d := int(o.degree[v])
+		d := int(o.node[v].degree)
 		o.width = max(o.width, d)
 		o.work += 2 << d
 		if o.work > work {
@@ -93,36 +81,31 @@ func (o *minFill) run(g *graph, limit int, work int64) bool {
 // load copies the graph and counts the fill of every node.
 func (o *minFill) load(g *graph) {
 	n := g.nodes()
-	o.off, o.size, o.room = resize(o.off, n), resize(o.size, n), resize(o.room, n)
-	o.degree, o.dead, o.big = resize(o.degree, n), zeroed(o.dead, n), zeroed(o.big, n)
-	o.fill = resize(o.fill, n)
 	o.head = resize(o.head, fillKeys+1)
 	for i := range o.head {
 		o.head[i] = -1
 	}
-	o.prev, o.tail, o.key = resize(o.prev, n), resize(o.tail, n), resize(o.key, n)
-	o.slot, o.mark = zeroed(o.slot, n), zeroed(o.mark, n)
 	o.time = 0
 	o.far.clear()
 	const slack = 3
+	o.node = resize(o.node, n)
 	o.cell = resize(o.cell, len(g.adj)+slack*n)
 	at := 0
 	for v := range n {
 		adj, _ := g.row(int32(v))
 		d := int32(len(adj))
-		o.off[v], o.size[v], o.room[v], o.degree[v] = at, d, d+slack, d
+		pairs := int64(d) * int64(d-1) / 2
+		o.node[v] = fillNode{off: at, fill: pairs, size: d, room: d + slack, degree: d, key: -1, big: d > large}
 		copy(o.cell[at:], adj)
 		at += len(adj) + slack
-		o.big[v] = d > large
 	}
 	o.triangles(g)
-	for v := range n {
-		o.key[v] = -1
-		if !o.big[v] {
+	for v := range o.node {
+		if !o.node[v].big {
 			continue
 		}
 		for _, w := range o.row(int32(v)) {
-			if int(w) > v && o.big[w] {
+			if int(w) > v && o.node[w].big {
 				o.far.add(int32(v), w)
 			}
 		}
@@ -133,44 +116,39 @@ func (o *minFill) load(g *graph) {
 	}
 }
 
-// triangles sets fill to the number of pairs of neighbours less the triangles through the node. Each triangle is found once, from its node of least degree.
+// triangles takes the triangles through each node from its fill. Each triangle is found once, from its node of least degree.
 func (o *minFill) triangles(g *graph) {
 	n := g.nodes()
-	below := func(u, v int32) bool {
-		return o.degree[u] < o.degree[v] || o.degree[u] == o.degree[v] && u < v
-	}
-	o.triple = resize(o.triple, n+1)
-	o.out = resize(o.out, len(g.adj)/2)
+	o.upAt = resize(o.upAt, n+1)
+	o.ups = resize(o.ups, len(g.adj)/2)
 	at := int32(0)
 	for v := range int32(n) {
-		o.triple[v] = at
-		for _, w := range o.row(v) {
-			if below(v, w) {
-				o.out[at] = w
+		o.upAt[v] = at
+		row := o.row(v)
+		d := len(row)
+		for _, w := range row {
+			if e := int(g.start[w+1] - g.start[w]); d < e || d == e && v < w {
+				o.ups[at] = w
 				at++
 			}
 		}
 	}
-	o.triple[n] = at
+	o.upAt[n] = at
 	for v := range n {
-		d := int64(o.degree[v])
-		o.fill[v] = d * (d - 1) / 2
-	}
-	for v := range n {
-		ups := o.out[o.triple[v]:o.triple[v+1]]
+		ups := o.ups[o.upAt[v]:o.upAt[v+1]]
 		if len(ups) < 2 {
 			continue
 		}
 		o.time++
 		for _, w := range ups {
-			o.mark[w] = o.time
+			o.node[w].mark = o.time
 		}
 		for _, w := range ups {
-			for _, x := range o.out[o.triple[w]:o.triple[w+1]] {
-				if o.mark[x] == o.time {
-					o.fill[v]--
-					o.fill[w]--
-					o.fill[x]--
+			for _, x := range o.ups[o.upAt[w]:o.upAt[w+1]] {
+				if o.node[x].mark == o.time {
+					o.node[v].fill--
+					o.node[w].fill--
+					o.node[x].fill--
 				}
 			}
 		}
@@ -178,41 +156,46 @@ func (o *minFill) triangles(g *graph) {
 }
 
 // row is the stored row of a node, dead nodes included where it is large.
-func (o *minFill) row(v int32) []int32 { return o.cell[o.off[v] : o.off[v]+int(o.size[v])] }
+func (o *minFill) row(v int32) []int32 {
+	nd := &o.node[v]
+	return o.cell[nd.off : nd.off+int(nd.size)]
+}
 
 // place moves v to the list of its fill.
 func (o *minFill) place(v int32) {
-	k := int32(min(o.fill[v], fillKeys))
-	if o.key[v] == k {
+	nd := &o.node[v]
+	k := int32(min(nd.fill, fillKeys))
+	if nd.key == k {
 		return
 	}
-	if o.key[v] >= 0 {
+	if nd.key >= 0 {
 		o.unlink(v)
 	}
 	o.link(v, k)
 }
 
 func (o *minFill) link(v, k int32) {
+	nd := &o.node[v]
 	h := o.head[k]
-	o.prev[v], o.tail[v], o.key[v] = -1, h, k
+	nd.prev, nd.next, nd.key = -1, h, k
 	if h >= 0 {
-		o.prev[h] = v
+		o.node[h].prev = v
 	}
 	o.head[k] = v
 	o.least = min(o.least, k)
 }
 
 func (o *minFill) unlink(v int32) {
-	p, t := o.prev[v], o.tail[v]
-	if p >= 0 {
-		o.tail[p] = t
+	nd := &o.node[v]
+	if nd.prev >= 0 {
+		o.node[nd.prev].next = nd.next
 	} else {
-		o.head[o.key[v]] = t
+		o.head[nd.key] = nd.next
 	}
-	if t >= 0 {
-		o.prev[t] = p
+	if nd.next >= 0 {
+		o.node[nd.next].prev = nd.prev
 	}
-	o.key[v] = -1
+	nd.key = -1
 }
 
 // pick takes the node of least fill that has at most limit neighbours out of its list, -1 where there is none.
@@ -220,7 +203,7 @@ func (o *minFill) pick(limit int32) int32 {
 	for ; o.least < fillKeys; o.least++ {
 		for v := o.head[o.least]; v >= 0; v = o.head[o.least] {
 			o.unlink(v)
-			if o.degree[v] <= limit {
+			if o.node[v].degree <= limit {
 				return v
 			}
 			o.link(v, fillKeys) // parked until an elimination changes it
@@ -233,67 +216,66 @@ func (o *minFill) pick(limit int32) int32 {
 func (o *minFill) eliminate(v int32) {
 	at := len(o.bag)
 	for _, w := range o.row(v) {
-		if !o.dead[w] {
+		if !o.node[w].dead {
 			o.bag = append(o.bag, w)
 		}
 	}
 	bag := o.bag[at:]
 	o.order = append(o.order, v)
 	o.bagStart = append(o.bagStart, int32(len(o.bag)))
-	o.dead[v] = true
+	o.node[v].dead = true
 	d := len(bag)
 	full := uint64(1)<<d - 1
 	o.rows = zeroed(o.rows, d)
+	rows := o.rows
 	for i, a := range bag {
-		o.slot[a] = int32(i + 1)
+		o.node[a].slot = int32(i + 1)
 	}
 	for i, a := range bag {
-		if o.big[a] {
+		nd := &o.node[a]
+		if nd.big {
+			for j := range i {
+				if b := bag[j]; o.node[b].big && o.far.has(a, b) {
+					rows[i] |= 1 << j
+					rows[j] |= 1 << i
+				}
+			}
+			if nd.size > 2*nd.degree {
+				o.sweep(a)
+			}
 			continue
 		}
 		row := o.row(a)
 		drop := -1
 		for k, x := range row {
-			if s := o.slot[x]; s > 0 {
-				o.rows[i] |= 1 << (s - 1)
-				o.rows[s-1] |= 1 << i
+			if s := o.node[x].slot; s > 0 {
+				rows[i] |= 1 << (s - 1)
+				rows[s-1] |= 1 << i
 			} else if x == v {
 				drop = k
 			}
 		}
 		row[drop] = row[len(row)-1]
-		o.size[a]--
-	}
-	for i, a := range bag {
-		if o.big[a] {
-			for j := range i {
-				if b := bag[j]; o.big[b] && o.far.has(a, b) {
-					o.rows[i] |= 1 << j
-					o.rows[j] |= 1 << i
-				}
-			}
-			if o.size[a] > 2*o.degree[a] {
-				o.sweep(a)
-			}
-		}
-		o.degree[a]--
+		nd.size--
 	}
 	for i, a := range bag {
 		// v had no edge to these neighbours of a, and takes the pairs with it.
-		o.fill[a] -= int64(int(o.degree[a]) - bits.OnesCount64(o.rows[i]))
+		nd := &o.node[a]
+		nd.degree--
+		nd.fill -= int64(int(nd.degree) - bits.OnesCount64(rows[i]))
 	}
 	o.moved = o.moved[:0]
 	for i, a := range bag {
-		lacks := full &^ o.rows[i] &^ (1<<(i+1) - 1)
+		lacks := full &^ rows[i] &^ (1<<(i+1) - 1)
 		if lacks == 0 {
 			continue
 		}
-		if !o.big[a] {
+		if !o.node[a].big {
 			// The neighbours of a outside the bag, which no new edge of this elimination changes.
 			o.time++
 			for _, x := range o.row(a) {
-				if o.slot[x] == 0 {
-					o.mark[x] = o.time
+				if o.node[x].slot == 0 {
+					o.node[x].mark = o.time
 				}
 			}
 		}
@@ -302,7 +284,7 @@ func (o *minFill) eliminate(v int32) {
 		}
 	}
 	for _, a := range bag {
-		o.slot[a] = 0
+		o.node[a].slot = 0
 		o.place(a)
 	}
 	for _, x := range o.moved {
@@ -313,39 +295,41 @@ func (o *minFill) eliminate(v int32) {
 // connect adds the edge between two nodes of the bag. Where the first is not large, its neighbours outside the bag carry the mark of the present time.
 func (o *minFill) connect(bag []int32, i, j int) {
 	a, b := bag[i], bag[j]
+	na, nb := &o.node[a], &o.node[b]
 	common := 0
 	for both := o.rows[i] & o.rows[j]; both != 0; both &= both - 1 {
-		o.fill[bag[bits.TrailingZeros64(both)]]--
+		o.node[bag[bits.TrailingZeros64(both)]].fill--
 		common++
 	}
-	walk, other, marked := b, a, !o.big[a]
-	if o.big[b] && (marked || o.size[a] < o.size[b]) {
+	walk, other, marked := b, a, !na.big
+	if nb.big && (marked || na.size < nb.size) {
 		walk, other, marked = a, b, false
 	}
 	for _, x := range o.row(walk) {
-		if o.dead[x] || o.slot[x] != 0 {
+		nx := &o.node[x]
+		if nx.dead || nx.slot != 0 {
 			continue
 		}
-		if marked && o.mark[x] == o.time || !marked && o.adjacent(x, other) {
-			o.fill[x]--
+		if marked && nx.mark == o.time || !marked && o.adjacent(x, other) {
+			nx.fill--
 			o.moved = append(o.moved, x)
 			common++
 		}
 	}
-	o.fill[a] += int64(int(o.degree[a]) - common)
-	o.fill[b] += int64(int(o.degree[b]) - common)
+	na.fill += int64(int(na.degree) - common)
+	nb.fill += int64(int(nb.degree) - common)
 	o.rows[i] |= 1 << j
 	o.rows[j] |= 1 << i
 	o.append(a, b)
 	o.append(b, a)
-	if o.big[a] && o.big[b] {
+	if na.big && nb.big {
 		o.far.add(a, b)
 	}
 }
 
 // adjacent tells whether there is an edge between x and a large node.
 func (o *minFill) adjacent(x, big int32) bool {
-	if o.big[x] {
+	if o.node[x].big {
 		return o.far.has(x, big)
 	}
 	for _, y := range o.row(x) {
@@ -358,8 +342,9 @@ func (o *minFill) adjacent(x, big int32) bool {
 
 // append adds b to the row of a, which may make a large.
 func (o *minFill) append(a, b int32) {
-	if o.size[a] == o.room[a] {
-		room := 2 * o.room[a]
+	nd := &o.node[a]
+	if nd.size == nd.room {
+		room := 2 * nd.room
 		at := len(o.cell)
 		if at+int(room) > cap(o.cell) {
 			grown := make([]int32, at, at+at/2+int(room))
@@ -368,15 +353,15 @@ func (o *minFill) append(a, b int32) {
 		}
 		o.cell = o.cell[:at+int(room)]
 		copy(o.cell[at:], o.row(a))
-		o.off[a], o.room[a] = at, room
+		nd.off, nd.room = at, room
 	}
-	o.cell[o.off[a]+int(o.size[a])] = b
-	o.size[a]++
-	o.degree[a]++
-	if o.degree[a] > large && !o.big[a] {
-		o.big[a] = true
+	o.cell[nd.off+int(nd.size)] = b
+	nd.size++
+	nd.degree++
+	if nd.degree > large && !nd.big {
+		nd.big = true
 		for _, x := range o.row(a) {
-			if o.big[x] && x != b {
+			if o.node[x].big && x != b {
 				o.far.add(a, x)
 			}
 		}
@@ -388,12 +373,12 @@ func (o *minFill) sweep(a int32) {
 	row := o.row(a)
 	k := int32(0)
 	for _, x := range row {
-		if !o.dead[x] {
+		if !o.node[x].dead {
 			row[k] = x
 			k++
 		}
 	}
-	o.size[a] = k
+	o.node[a].size = k
 }
 
 // pairSet is a set of unordered pairs of nodes: open addressing, pair (u, v) with u < v as u<<32 | v, 0 for an empty place. The pair (0, 0) never occurs.

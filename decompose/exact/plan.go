@@ -130,9 +130,9 @@ func (p *plan) number(o *minFill, roots []int32) {
 // fill writes the bags, the edges and the place of the back-pointers by rank.
 func (p *plan) fill(g *graph, o *minFill) {
 	n := g.nodes()
-	p.bagStart, p.bag = append(p.bagStart[:0], 0), resize(p.bag, len(o.bag))[:0]
-	p.refStart, p.ref = append(p.refStart[:0], 0), resize(p.ref, len(g.adj)/2)[:0]
-	p.back = append(p.back[:0], 0)
+	p.bagStart, p.bag = append(resize(p.bagStart, n+1)[:0], 0), resize(p.bag, len(o.bag))[:0]
+	p.refStart, p.ref = append(resize(p.refStart, n+1)[:0], 0), resize(p.ref, len(g.adj)/2)[:0]
+	p.back = append(resize(p.back, n+1)[:0], 0)
 	for r := range p.span {
 		p.span[r] = 1
 	}

@@ -21,25 +21,40 @@ type undo struct {
 	flip       uint8
 }
 
-// reducer is the graph under reduction. Half-edges 2e and 2e+1 are the two ends of edge e; the half-edges of a node form a list. Merged and deleted edges stay in the
-// lists, marked, until the list is cleaned.
+// reducer is the graph under reduction.
+//
+// An edge is two half-edges, mates of each other, which carry the same s; where that is 0 the edge is deleted. The half-edges of a node are one row each for the node itself and
+// for the nodes merged into it, chained; a row is closed up when its node is cleaned. Node numbers in to are kept right when nodes are merged, so that the way from a node to its
+// neighbours goes through its rows alone.
 type reducer struct {
-	end    []int32 // node at a half-edge
-	next   []int32 // next half-edge of the same node, or -1
-	s      []int64 // per edge; 0: deleted
-	head   []int32 // per node: first half-edge, or -1
-	size   []int32 // per node: length of the list
-	fresh  []int32 // per node: changes since the list was last looked at
-	h      []int64
-	gone   []bool
-	queued []bool
-	seen   []int32 // per node: half-edge of the list being cleaned that leads there; valid where stamp says so
-	stamp  []int32
-	time   int32
-	queue  []int32
-	base   int64
-	trail  []undo
+	to    []int32 // per half-edge: the neighbour
+	mate  []int32
+	s     []int64
+	row   []rowSpan // per node: its own row, and the next in the chain
+	last  []int32   // per node: last row of its chain
+	size  []int32   // per node: half-edges in its rows
+	fresh []int32   // per node: changes since it was cleaned
+	state []uint8
+	h     []int64
+	met   []meeting
+	time  int32
+	queue []int32
+	base  int64
+	trail []undo
+	keys  [2][]twinKey
 }
+
+type rowSpan struct{ start, end, next int32 }
+
+// meeting says in which row walk a node was met, and at which half-edge.
+type meeting struct{ time, half int32 }
+
+// The states of a node, as bits.
+const (
+	gone    = 1 << iota // taken out
+	queued              // in the queue
+	twofold             // may have parallel edges
+)
 
 // newReducer takes in the part of a problem that rest (ascending) spans. Held nodes become unary terms and are left without edges.
 func newReducer(p *Problem, rest []int32) *reducer {
@@ -51,19 +66,10 @@ func newReducer(p *Problem, rest []int32) *reducer {
 	for i, v := range rest {
 		local[v] = int32(i)
 	}
-	m := 0
-	for _, e := range p.Edges {
-		if local[e.U] >= 0 {
-			m++
-		}
-	}
 	r := &reducer{
-		end: make([]int32, 0, 2*m), next: make([]int32, 0, 2*m), s: make([]int64, 0, m),
-		head: make([]int32, n), size: make([]int32, n), fresh: make([]int32, n), h: make([]int64, n),
-		gone: make([]bool, n), queued: make([]bool, n), seen: make([]int32, n), stamp: make([]int32, n),
-	}
-	for i := range r.head {
-		r.head[i] = -1
+		row: make([]rowSpan, n), last: make([]int32, n), size: make([]int32, n), fresh: make([]int32, n),
+		state: make([]uint8, n), h: make([]int64, n), met: make([]meeting, n),
+		queue: make([]int32, 0, n+n/2), trail: make([]undo, 0, n),
 	}
 	for i, v := range rest {
 		k := p.fixed(v)
@@ -77,11 +83,12 @@ func newReducer(p *Problem, rest []int32) *reducer {
 			}
 		}
 		if k >= 0 {
-			r.gone[i] = true
+			r.state[i] = gone
 			r.trail = append(r.trail, undo{int32(i), -1, uint8(k)})
 		}
 	}
-	for _, e := range p.Edges {
+	for i := range p.Edges {
+		e := &p.Edges[i]
 		u, v := local[e.U], local[e.V]
 		if u < 0 || u == v || e.Weight <= 0 {
 			continue // loops are in what settle returns
@@ -102,8 +109,33 @@ func newReducer(p *Problem, rest []int32) *reducer {
 		case b >= 0:
 			r.lean(u, s, uint8(b))
 		default:
-			r.add(u, v, s)
+			r.size[u]++
+			r.size[v]++
 		}
+	}
+	at := int32(0)
+	for i := range r.row {
+		r.row[i] = rowSpan{at, at, -1}
+		r.last[i] = int32(i)
+		r.state[i] |= twofold
+		at += r.size[i]
+	}
+	r.to, r.mate, r.s = make([]int32, at), make([]int32, at), make([]int64, at)
+	for i := range p.Edges {
+		e := &p.Edges[i]
+		u, v := local[e.U], local[e.V]
+		if u < 0 || u == v || e.Weight <= 0 || p.fixed(e.U) >= 0 || p.fixed(e.V) >= 0 {
+			continue
+		}
+		s := e.Weight
+		if e.Same {
+			s = -s
+		}
+		a, b := r.row[u].end, r.row[v].end
+		r.to[a], r.mate[a], r.s[a] = v, b, s
+		r.to[b], r.mate[b], r.s[b] = u, a, s
+		r.row[u].end++
+		r.row[v].end++
 	}
 	return r
 }
@@ -118,109 +150,92 @@ func (r *reducer) lean(v int32, s int64, x uint8) {
 	}
 }
 
-// add makes a new edge.
-func (r *reducer) add(u, v int32, s int64) {
-	k := int32(len(r.end))
-	r.end = append(r.end, u, v)
-	r.next = append(r.next, r.head[u], r.head[v])
-	r.s = append(r.s, s)
-	r.head[u], r.head[v] = k, k+1
-	r.size[u]++
-	r.size[v]++
-}
-
-// clean merges the parallel edges of v and drops deleted ones from its list. It returns the number of edges, the sum of their |s|, and the half-edge with the largest
-// |s|, -1 if there is none; of equal ones that to the least node.
-func (r *reducer) clean(v int32) (degree int32, sum int64, heavy int32) {
-	r.time++
-	heavy = -1
-	for pass := 0; pass < 2; pass++ {
-		// The first pass adds up parallel edges, the second drops what came to 0, so that the list is right even where a sum did.
-		last := int32(-1)
-		degree = 0
-		for k := r.head[v]; k >= 0; k = r.next[k] {
-			keep := r.s[k>>1] != 0
-			if keep && pass == 0 {
-				w := r.end[k^1]
-				if r.stamp[w] == r.time {
-					r.s[r.seen[w]>>1] += r.s[k>>1]
-					r.s[k>>1] = 0
-					keep = false
-				} else {
-					r.stamp[w], r.seen[w] = r.time, k
+// clean merges the parallel edges of v and drops deleted ones from its rows.
+func (r *reducer) clean(v int32) {
+	if r.state[v]&twofold != 0 {
+		r.time++
+		for c := v; c >= 0; c = r.row[c].next {
+			for k := r.row[c].start; k < r.row[c].end; k++ {
+				if r.s[k] == 0 {
+					continue
+				}
+				m := &r.met[r.to[k]]
+				if m.time != r.time {
+					*m = meeting{r.time, k}
+					continue
+				}
+				sum := r.s[m.half] + r.s[k]
+				r.set(k, 0)
+				r.set(m.half, sum)
+				if sum == 0 {
+					m.time = 0 // a third one starts anew
 				}
 			}
-			if !keep {
+		}
+		r.state[v] &^= twofold
+	}
+	size := int32(0)
+	for c := v; c >= 0; c = r.row[c].next {
+		span := &r.row[c]
+		at := span.start
+		for k := span.start; k < span.end; k++ {
+			if r.s[k] == 0 {
 				continue
 			}
-			if last < 0 {
-				r.head[v] = k
-			} else {
-				r.next[last] = k
+			if k != at {
+				r.to[at], r.mate[at], r.s[at] = r.to[k], r.mate[k], r.s[k]
+				r.mate[r.mate[at]] = at
 			}
-			last = k
-			degree++
-			if pass == 1 {
-				a := magnitude(r.s[k>>1])
-				sum += a
-				if heavy < 0 || a > magnitude(r.s[heavy>>1]) || a == magnitude(r.s[heavy>>1]) && r.end[k^1] < r.end[heavy^1] {
-					heavy = k
-				}
-			}
+			at++
 		}
-		if last < 0 {
-			r.head[v] = -1
-			degree = 0
-			break
-		}
-		r.next[last] = -1
+		span.end = at
+		size += at - span.start
 	}
-	r.size[v] = degree
+	r.size[v] = size
 	r.fresh[v] = 0
-	return degree, sum, heavy
 }
 
-// long is the list length from which a node is looked at only after a quarter of its list may have changed, so that a hub is not walked for each neighbour it loses.
+// set gives both halves of an edge a new s.
+func (r *reducer) set(k int32, s int64) {
+	r.s[k] = s
+	r.s[r.mate[k]] = s
+}
+
+// long is the number of half-edges from which a node is looked at only after a quarter of them may have changed, so that a hub is not walked for each neighbour it loses.
 const long = 64
 
 // touch puts a node in the queue.
 func (r *reducer) touch(v int32) {
 	r.fresh[v]++
-	if r.queued[v] || r.gone[v] || r.size[v] > long && r.fresh[v] < r.size[v]/4 {
+	if r.state[v]&(queued|gone) != 0 || r.size[v] > long && r.fresh[v] < r.size[v]/4 {
 		return
 	}
-	r.queued[v] = true
+	r.state[v] |= queued
 	r.queue = append(r.queue, v)
 }
 
-// run applies the rules until none applies, or until the rounds of the twin rule, each of which costs a sort, are used up.
+// run applies the first rule until it applies no more, then the twin rule, and so on while the twin rule finds much; each of its rounds costs a walk over the graph.
 func (r *reducer) run() {
 	const rounds = 6
-	for v := range r.head {
-		if !r.gone[v] {
-			r.queued[v] = true
-			r.queue = append(r.queue, int32(v))
-		}
+	for v := range r.row {
+		r.fresh[v] = 1
 	}
 	for round := 0; ; round++ {
+		for v := range r.row {
+			if r.fresh[v] > 0 && r.state[v]&(queued|gone) == 0 {
+				r.state[v] |= queued
+				r.queue = append(r.queue, int32(v))
+			}
+		}
 		for at := 0; at < len(r.queue); at++ {
 			v := r.queue[at]
-			r.queued[v] = false
-			if !r.gone[v] {
+			r.state[v] &^= queued
+			if r.state[v]&gone == 0 {
 				r.visit(v)
 			}
 		}
 		r.queue = r.queue[:0]
-		if round == rounds {
-			return
-		}
-		for v := range r.head {
-			if r.fresh[v] > 0 && !r.gone[v] {
-				r.queued[v] = true
-				r.queue = append(r.queue, int32(v))
-			}
-		}
-		if !r.twins() && len(r.queue) == 0 {
+		if round == rounds || !r.twins() {
 			return
 		}
 	}
@@ -228,7 +243,18 @@ func (r *reducer) run() {
 
 // visit tries the first rule on a node.
 func (r *reducer) visit(v int32) {
-	_, sum, heavy := r.clean(v)
+	r.clean(v)
+	var sum, most int64
+	heavy := int32(-1)
+	for c := v; c >= 0; c = r.row[c].next {
+		for k := r.row[c].start; k < r.row[c].end; k++ {
+			a := magnitude(r.s[k])
+			sum += a
+			if a > most || a == most && r.to[k] < r.to[heavy] {
+				heavy, most = k, a
+			}
+		}
+	}
 	h := magnitude(r.h[v])
 	if h >= sum {
 		var x uint8
@@ -238,34 +264,34 @@ func (r *reducer) visit(v int32) {
 		r.hold(v, x)
 		return
 	}
-	s := r.s[heavy>>1]
-	if a := magnitude(s); a >= sum-a+h {
+	if most >= sum-most+h {
 		var flip uint8
-		if s > 0 {
+		if r.s[heavy] > 0 {
 			flip = 1
 		}
-		r.merge(v, r.end[heavy^1], flip)
+		r.merge(v, r.to[heavy], flip)
 	}
 }
 
 // hold takes v out with mask x.
 func (r *reducer) hold(v int32, x uint8) {
-	r.gone[v] = true
+	r.state[v] |= gone
 	r.trail = append(r.trail, undo{v, -1, x})
 	if x != 0 {
 		r.base += r.h[v]
 	}
-	for k := r.head[v]; k >= 0; k = r.next[k] {
-		if s := r.s[k>>1]; s != 0 {
-			w := r.end[k^1]
-			r.lean(w, s, x)
-			r.s[k>>1] = 0
-			r.touch(w)
+	for c := v; c >= 0; c = r.row[c].next {
+		for k := r.row[c].start; k < r.row[c].end; k++ {
+			if s := r.s[k]; s != 0 {
+				r.lean(r.to[k], s, x)
+				r.set(k, 0)
+				r.touch(r.to[k])
+			}
 		}
 	}
 }
 
-// merge takes one of v and j out, the one with the shorter list, with x[v] = x[j] ^ flip, and gives its edges to the other.
+// merge takes one of v and j out, the one with fewer half-edges, with x[v] = x[j] ^ flip, and gives its edges to the other.
 func (r *reducer) merge(v, j int32, flip uint8) {
 	if r.size[v] > r.size[j] {
 		v, j = j, v
@@ -275,7 +301,7 @@ func (r *reducer) merge(v, j int32, flip uint8) {
 
 // absorb takes v out with x[v] = x[j] ^ flip, and gives its edges to j.
 func (r *reducer) absorb(v, j int32, flip uint8) {
-	r.gone[v] = true
+	r.state[v] |= gone
 	r.trail = append(r.trail, undo{v, j, flip})
 	if flip != 0 {
 		r.base += r.h[v]
@@ -283,34 +309,33 @@ func (r *reducer) absorb(v, j int32, flip uint8) {
 	} else {
 		r.h[j] += r.h[v]
 	}
-	last := int32(-1)
-	for k := r.head[v]; k >= 0; k = r.next[k] {
-		last = k
-		s := r.s[k>>1]
-		if s == 0 {
-			continue
-		}
-		w := r.end[k^1]
-		if w == j {
-			if flip == 0 {
-				r.base += s
+	for c := v; c >= 0; c = r.row[c].next {
+		for k := r.row[c].start; k < r.row[c].end; k++ {
+			s, w := r.s[k], r.to[k]
+			if s == 0 {
+				continue
 			}
-			r.s[k>>1] = 0
-			continue
+			if w == j {
+				if flip == 0 {
+					r.base += s
+				}
+				r.set(k, 0)
+				continue
+			}
+			if flip != 0 {
+				// s*[x[v]==x[w]] = s*[x[j]!=x[w]] = s - s*[x[j]==x[w]]
+				r.base += s
+				r.set(k, -s)
+			}
+			r.to[r.mate[k]] = j
+			r.state[w] |= twofold
+			r.touch(w)
 		}
-		if flip != 0 {
-			// s*[x[v]==x[w]] = s*[x[j]!=x[w]] = s - s*[x[j]==x[w]]
-			r.base += s
-			r.s[k>>1] = -s
-		}
-		r.end[k] = j
-		r.touch(w)
 	}
-	if last >= 0 {
-		r.next[last] = r.head[j]
-		r.head[j] = r.head[v]
-		r.size[j] += r.size[v]
-	}
+	r.row[r.last[j]].next = v
+	r.last[j] = r.last[v]
+	r.size[j] += r.size[v]
+	r.state[j] |= twofold
 	r.touch(j)
 }
 
@@ -320,66 +345,121 @@ type twinKey struct {
 	node int32
 }
 
-// twins merges twins, and tells whether there were any. Twins are found by a hash of their neighbours, and compared exactly with the last few nodes of that hash.
+// twinPair says that drop is a twin of keep.
+type twinPair struct {
+	keep, drop int32
+	flip       uint8
+}
+
+// twins merges twins, and tells whether there were many. Twins are found by a hash of their neighbours, and compared exactly with the last few nodes of that hash; twins with an edge
+// between them have the same hash when each counts among its own neighbours.
 //
 // Pairs found in one pass may all be merged: when twins u and u' are merged, two twins among their neighbours still see the merged node with edges in their old proportion.
 func (r *reducer) twins() bool {
-	found := false
-	for _, closed := range [2]bool{false, true} {
-		var keys []twinKey
-		for v := range r.head {
-			if r.gone[v] || r.size[v] > long {
-				continue
-			}
-			if r.fresh[v] > 0 {
-				r.clean(int32(v))
-			}
-			var hash uint64
-			if closed {
-				hash = scramble(uint64(v))
-			}
-			for k := r.head[v]; k >= 0; k = r.next[k] {
-				if r.s[k>>1] != 0 {
-					hash += scramble(uint64(r.end[k^1]))
-				}
-			}
-			keys = append(keys, twinKey{hash, int32(v)})
+	n := len(r.row)
+	open, closed := newRepeats(n), newRepeats(n)
+	hashOf := func(v int32) (uint64, bool) {
+		if r.state[v]&gone != 0 || r.size[v] > long {
+			return 0, false
 		}
-		slices.SortFunc(keys, func(a, b twinKey) int {
-			if c := cmp.Compare(a.hash, b.hash); c != 0 {
-				return c
-			}
-			return cmp.Compare(a.node, b.node)
-		})
-		type pair struct {
-			keep, drop int32
-			flip       uint8
-		}
-		var pairs []pair
-		var kept []int32
-		for i := range keys {
-			if i > 0 && keys[i].hash != keys[i-1].hash {
-				kept = kept[:0]
-			}
-			v, joined := keys[i].node, false
-			const memory = 8
-			for _, u := range kept[max(0, len(kept)-memory):] {
-				if flip, ok := r.compare(u, v); ok {
-					pairs = append(pairs, pair{u, v, flip})
-					joined = true
-					break
-				}
-			}
-			if !joined {
-				kept = append(kept, v)
+		var hash uint64
+		for c := v; c >= 0; c = r.row[c].next {
+			for _, w := range r.to[r.row[c].start:r.row[c].end] {
+				hash += scramble(uint64(w))
 			}
 		}
-		for _, p := range pairs {
-			found = true
-			r.absorb(p.drop, p.keep, p.flip)
+		return hash, true
+	}
+	living := 0
+	for v := range int32(n) {
+		if r.fresh[v] > 0 && r.state[v]&gone == 0 {
+			r.clean(v)
+			r.fresh[v] = 1 // still to be visited
+		}
+		if hash, ok := hashOf(v); ok {
+			living++
+			open.note(hash)
+			closed.note(hash + scramble(uint64(v)))
 		}
 	}
-	return found
+	r.keys[0], r.keys[1] = r.keys[0][:0], r.keys[1][:0]
+	for v := range int32(n) {
+		if hash, ok := hashOf(v); ok {
+			if open.twice(hash) {
+				r.keys[0] = append(r.keys[0], twinKey{hash, v})
+			}
+			if hash += scramble(uint64(v)); closed.twice(hash) {
+				r.keys[1] = append(r.keys[1], twinKey{hash, v})
+			}
+		}
+	}
+	merged := r.mergeTwins(r.keys[0])
+	merged += r.mergeTwins(r.keys[1])
+	const many = 64 // one in so many: fewer are not worth another round
+	return merged*many > living
+}
+
+// repeats tells hashes that may have been noted more than once from those that were noted once: two bits for each of several places per node.
+type repeats struct {
+	once, more []uint64
+	mask       uint64
+}
+
+func newRepeats(n int) *repeats {
+	places := uint64(64)
+	for places < 8*uint64(n) {
+		places *= 2
+	}
+	return &repeats{make([]uint64, places/64), make([]uint64, places/64), places - 1}
+}
+
+func (r *repeats) note(hash uint64) {
+	h := scramble(hash) & r.mask
+	bit := uint64(1) << (h & 63)
+	r.more[h/64] |= r.once[h/64] & bit
+	r.once[h/64] |= bit
+}
+
+func (r *repeats) twice(hash uint64) bool {
+	h := scramble(hash) & r.mask
+	return r.more[h/64]>>(h&63)&1 != 0
+}
+
+// mergeTwins merges the twins among nodes of equal hash, and returns how many it took out.
+func (r *reducer) mergeTwins(keys []twinKey) int {
+	slices.SortFunc(keys, func(a, b twinKey) int {
+		if c := cmp.Compare(a.hash, b.hash); c != 0 {
+			return c
+		}
+		return cmp.Compare(a.node, b.node)
+	})
+	var pairs []twinPair
+	var kept []int32
+	for i := range keys {
+		v := keys[i].node
+		if i == 0 || keys[i].hash != keys[i-1].hash {
+			kept = kept[:0]
+		}
+		if r.state[v]&gone != 0 {
+			continue
+		}
+		joined := false
+		const memory = 8
+		for _, u := range kept[max(0, len(kept)-memory):] {
+			if flip, ok := r.compare(u, v); ok {
+				pairs = append(pairs, twinPair{u, v, flip})
+				joined = true
+				break
+			}
+		}
+		if !joined {
+			kept = append(kept, v)
+		}
+	}
+	for _, p := range pairs {
+		r.absorb(p.drop, p.keep, p.flip)
+	}
+	return len(pairs)
 }
 
 // compare tells whether u and v are twins, and whether they want opposite masks.
@@ -387,37 +467,41 @@ func (r *reducer) compare(u, v int32) (flip uint8, ok bool) {
 	r.time++
 	var between int64
 	du, dv := 0, 0
-	for k := r.head[u]; k >= 0; k = r.next[k] {
-		if r.s[k>>1] == 0 {
-			continue
+	for c := u; c >= 0; c = r.row[c].next {
+		for k := r.row[c].start; k < r.row[c].end; k++ {
+			w := r.to[k]
+			if r.s[k] == 0 {
+				continue
+			}
+			if w == v {
+				between += r.s[k]
+				continue
+			}
+			if r.met[w].time == r.time {
+				return 0, false // a parallel edge not merged yet
+			}
+			r.met[w] = meeting{r.time, k}
+			du++
 		}
-		w := r.end[k^1]
-		if w == v {
-			between += r.s[k>>1]
-			continue
-		}
-		if r.stamp[w] == r.time {
-			return 0, false // a parallel edge not merged yet
-		}
-		r.stamp[w], r.seen[w] = r.time, k
-		du++
 	}
 	var su, sv int64 // one edge of each, to which all others are held
-	for k := r.head[v]; k >= 0; k = r.next[k] {
-		b := r.s[k>>1]
-		if b == 0 || r.end[k^1] == u {
-			continue
-		}
-		w := r.end[k^1]
-		if r.stamp[w] != r.time {
-			return 0, false
-		}
-		r.stamp[w] = r.time - 1 // met: a second edge to w is no match
-		a := r.s[r.seen[w]>>1]
-		if dv++; dv == 1 {
-			su, sv = a, b
-		} else if !proportional(su, sv, a, b) {
-			return 0, false
+	for c := v; c >= 0; c = r.row[c].next {
+		for k := r.row[c].start; k < r.row[c].end; k++ {
+			b, w := r.s[k], r.to[k]
+			if b == 0 || w == u {
+				continue
+			}
+			m := &r.met[w]
+			if m.time != r.time {
+				return 0, false
+			}
+			m.time = 0 // a second edge to w is no match
+			a := r.s[m.half]
+			if dv++; dv == 1 {
+				su, sv = a, b
+			} else if !proportional(su, sv, a, b) {
+				return 0, false
+			}
 		}
 	}
 	if du != dv || du == 0 || !proportional(su, sv, r.h[u], r.h[v]) {
@@ -452,26 +536,26 @@ func scramble(x uint64) uint64 {
 
 // kernel is what is left: a graph over the surviving nodes, which it lists in ascending order.
 func (r *reducer) kernel() (*graph, []int32) {
-	var nodes []int32
-	local := r.seen // no list is cleaned any more after the loop below
+	nodes := make([]int32, 0, len(r.row))
+	local := r.last // the chains are not lengthened any more
 	halves := 0
-	for v := range r.head {
-		if !r.gone[v] {
-			d, _, _ := r.clean(int32(v))
-			halves += int(d)
+	for v := range r.row {
+		if r.state[v]&gone == 0 {
+			r.clean(int32(v))
+			halves += int(r.size[v])
+			local[v] = int32(len(nodes))
 			nodes = append(nodes, int32(v))
 		}
-	}
-	for i, v := range nodes {
-		local[v] = int32(i)
 	}
 	g := &graph{start: make([]int32, 1, len(nodes)+1), adj: make([]int32, 0, halves), wt: make([]int64, 0, halves), h: make([]int64, len(nodes))}
 	for i, v := range nodes {
 		g.h[i] = r.h[v]
-		for k := r.head[v]; k >= 0; k = r.next[k] {
-			if s := r.s[k>>1]; s != 0 {
-				g.adj = append(g.adj, local[r.end[k^1]])
-				g.wt = append(g.wt, s)
+		for c := v; c >= 0; c = r.row[c].next {
+			for k := r.row[c].start; k < r.row[c].end; k++ {
+				if s := r.s[k]; s != 0 {
+					g.adj = append(g.adj, local[r.to[k]])
+					g.wt = append(g.wt, s)
+				}
 			}
 		}
 		g.start = append(g.start, int32(len(g.adj)))
