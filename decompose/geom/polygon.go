@@ -185,9 +185,6 @@ func (p *Polygon) cut(cuts []int64) (starts []int32) {
 		}
 	}
 	p.lists = make([]int32, len(pieces))
-	for i := range pieces {
-		p.lists[i] = -1
-	}
 	starts = make([]int32, slabCount+1)
 	for k := range slabCount {
 		starts[k] = int32(len(p.bands))
