@@ -99,6 +99,7 @@ func decomposeTo(ctx context.Context, o *Options, con *console, s steps) (*repor
 		}
 		return nil, err
 	}
+	r.Input.Name = o.Input
 	r.Run.Version, r.Run.Jobs, r.Run.Peak = version(), o.Jobs, peakMemory()
 	r.Run.Stages, r.Run.Seconds = clock.stop()
 	if account != nil {

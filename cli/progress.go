@@ -4,6 +4,7 @@ import (
 	"fmt"
 	"io"
 	"os"
+	"slices"
 	"sync"
 	"time"
 
@@ -46,6 +47,9 @@ func newClock(w io.Writer, quiet bool) *Clock {
 func (c *Clock) Stage(name string) {
 	c.mu.Lock()
 	defer c.mu.Unlock()
+	if name == c.name {
+		return
+	}
 	c.end()
 	c.name, c.stage = name, time.Now()
 	c.draw("")
@@ -60,12 +64,19 @@ func (c *Clock) Progress(done, of int64) {
 	}
 }
 
-// end notes the stage that is going on.
+// end notes the time of the stage that is going on; a stage may come again.
 func (c *Clock) end() {
-	if c.name != "" {
-		c.stages = append(c.stages, report.Stage{Name: c.name, Seconds: time.Since(c.stage).Seconds()})
-		c.name = ""
+	if c.name == "" {
+		return
 	}
+	seconds := time.Since(c.stage).Seconds()
+	k := slices.IndexFunc(c.stages, func(s report.Stage) bool { return s.Name == c.name })
+	if k < 0 {
+		k = len(c.stages)
+		c.stages = append(c.stages, report.Stage{Name: c.name})
+	}
+	c.stages[k].Seconds += seconds
+	c.name = ""
 }
 
 // draw writes the line again, not too often.

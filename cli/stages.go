@@ -2,10 +2,13 @@ package cli
 
 import (
 	"context"
-	"errors"
+	"encoding/hex"
 	"io"
 
+	"maskpair/anchor"
 	"maskpair/cli/report"
+	"maskpair/decompose"
+	"maskpair/gds"
 )
 
 // This file wires the packages below together.
@@ -21,6 +24,54 @@ type work struct {
 // Rules, Result and Warnings; the rest is filled by its caller. It gives back soon after ctx ends.
 type decomposeStep func(ctx context.Context, o *Options, w *work) (*report.Report, error)
 
+// runDecompose is the way through the house: index, shapes, orders, masks, output.
 func runDecompose(ctx context.Context, o *Options, w *work) (*report.Report, error) {
-	return nil, errors.New("not wired yet")
+	want, err := o.Deck.Interest()
+	if err != nil {
+		return nil, err
+	}
+	w.clock.Stage("read")
+	in, err := gds.Open(o.Input, w.out != nil, w.in)
+	if err != nil {
+		return nil, err
+	}
+	defer in.Close()
+	lib, err := in.Index(want, func(done int64) { w.clock.Progress(done, in.Given()) })
+	if err != nil {
+		return nil, err
+	}
+	if err := ctx.Err(); err != nil {
+		return nil, err
+	}
+	rules, err := o.Deck.Resolve(lib.DBU)
+	if err != nil {
+		return nil, err
+	}
+	if _, err := o.ParseAnchors(rules); err != nil {
+		return nil, err
+	}
+	run, err := decompose.New(lib, rules, decompose.Options{Jobs: o.Jobs, Memory: o.Memory, Top: o.Top, Stage: w.clock.Stage})
+	if err != nil {
+		return nil, err
+	}
+	defer run.Close()
+	result, err := run.Decompose(ctx, &anchor.Sources{})
+	if err != nil {
+		return nil, err
+	}
+	if w.out != nil {
+		if err := run.Write(ctx, w.out, in.ReaderAt(), func(done int64) { w.clock.Progress(done, lib.Bytes) }); err != nil {
+			return nil, err
+		}
+		if err := in.Changed(); err != nil {
+			return nil, err
+		}
+	}
+	sum, bytes := in.Sum()
+	return &report.Report{
+		Input:    report.Input{SHA256: hex.EncodeToString(sum[:]), Bytes: bytes, DBU: lib.DBU, Tops: result.Tops},
+		Rules:    rules,
+		Result:   result,
+		Warnings: run.Warnings,
+	}, nil
 }

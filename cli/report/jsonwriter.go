@@ -136,11 +136,27 @@ func (j *jsonWriter) boolean(b bool) {
 // number, so that different names stay different.
 func (j *jsonWriter) str(s string) {
 	j.entry()
+	if plain(s) {
+		j.w.WriteByte('"')
+		j.w.WriteString(s)
+		j.w.WriteByte('"')
+		return
+	}
 	quoted, err := json.Marshal(text(s))
 	if err != nil {
 		quoted = []byte(`""`)
 	}
 	j.w.Write(quoted)
+}
+
+// plain tells whether s stands in JSON as it is.
+func plain(s string) bool {
+	for i := range len(s) {
+		if c := s[i]; c < ' ' || c > '~' || c == '"' || c == '\\' {
+			return false
+		}
+	}
+	return true
 }
 
 // text gives s as UTF-8.

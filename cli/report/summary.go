@@ -161,9 +161,9 @@ func (s *summary) layer(l *decompose.LayerResult) {
 	groups := groupsOf(l.Unresolved)
 	s.line("")
 	if len(groups) == 1 {
-		s.line("%s: what two masks cannot do is all of one kind", text(l.Name))
+		s.line("%s: the unresolved components are all of one kind", text(l.Name))
 	} else {
-		s.line("%s: %s kinds of what two masks cannot do, worst first", text(l.Name), number(int64(len(groups))))
+		s.line("%s: %s kinds of unresolved components, worst first", text(l.Name), number(int64(len(groups))))
 	}
 	for _, g := range groups[:min(len(groups), groupsShown)] {
 		s.group(g)
