@@ -17,18 +17,3 @@ func Closest(a, b Parts) (from, to Point, distanceSq float64) { return }
 
 // UnionAreaPolygons is the area that rectangles and polygons cover together.
 func UnionAreaPolygons(parts Parts) float64 { return 0 }
-
-// Corner is a corner of a merged outline.
-type Corner struct {
-	At     Point
-	Convex bool
-}
-
-// Outline is the boundary of a union of rectangles: loop i is Corners[Start[i]:Start[i+1]], interior on the left.
-type Outline struct {
-	Corners []Corner
-	Start   []int32
-}
-
-// Merge gives the outline of the union of rectangles.
-func Merge(rects []Rect) Outline { return Outline{} }
