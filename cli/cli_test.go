@@ -5,7 +5,9 @@ import (
 	"context"
 	"encoding/json"
 	"errors"
+	"fmt"
 	"io"
+	"math"
 	"os"
 	"strings"
 	"testing"
@@ -415,6 +417,7 @@ func TestFailuresLeaveWhatWas(t *testing.T) {
 		{"deck", &decompose.DeckError{File: "deck.toml", Line: 7, Key: "x", Msg: "no whole number"}, 2},
 		{"orders", &decompose.OrderError{Msg: "two anchors on one shape"}, 2},
 		{"output", &writeError{"out.gds", errors.New("no space left on device")}, 4},
+		{"spool", fmt.Errorf("in.gds: %w: no space left on device", gds.ErrSpool), 4},
 		{"two lines", errors.New("one\ntwo"), 3},
 	} {
 		t.Run(c.name, func(t *testing.T) {
@@ -624,4 +627,40 @@ func TestDemo(t *testing.T) {
 		t.Errorf("the anchor file of the demo: %+v, %v", f, err)
 	}
 	b.want(2, b.run("demo", "@new"), "holds something already")
+}
+
+func TestDemoLayout(t *testing.T) {
+	var stream bytes.Buffer
+	if err := writeDemoLayout(&stream); err != nil {
+		t.Fatal(err)
+	}
+	wire := gds.LayerType{Layer: 10, Type: 0}
+	lib, err := gds.Index(bytes.NewReader(stream.Bytes()), int64(stream.Len()), gds.Interest{Figures: map[gds.LayerType]uint8{wire: 1}}, nil)
+	if err != nil {
+		t.Fatal(err)
+	}
+	if math.Abs(lib.DBU-1e-9) > 1e-15 || len(lib.Missing) != 0 {
+		t.Errorf("a unit is %g m, want a nanometre; missing are %v, want none", lib.DBU, lib.Missing)
+	}
+	var cells []string
+	for _, s := range lib.Structures {
+		cells = append(cells, fmt.Sprintf("%s %d %d", s.Name, s.EndFigure-s.FirstFigure, s.EndRef-s.FirstRef))
+	}
+	if got := strings.Join(cells, ", "); got != "line 1 0, amplifier 3 0, knot 5 0, demo 0 5" {
+		t.Errorf("cells, their figures and references are %s", got)
+	}
+	// The knot must be an odd cycle under the spacing of the deck: each wire is near the next in the ring, and no other.
+	knot := lib.Figures[lib.Structures[2].FirstFigure:lib.Structures[2].EndFigure]
+	near := func(a, b gds.Rect) bool {
+		dx := max(0, int64(a.X1)-int64(b.X2), int64(b.X1)-int64(a.X2))
+		dy := max(0, int64(a.Y1)-int64(b.Y2), int64(b.Y1)-int64(a.Y2))
+		return dx*dx+dy*dy < 40*40
+	}
+	for i := range knot {
+		for j := range i {
+			if next := i-j == 1 || i-j == len(knot)-1; near(knot[i].Box, knot[j].Box) != next {
+				t.Errorf("wires %d and %d of the knot: near is %v, want %v", j, i, !next, next)
+			}
+		}
+	}
 }

@@ -8,6 +8,7 @@ import (
 	"github.com/urfave/cli/v2"
 
 	"maskpair/decompose"
+	"maskpair/gds"
 )
 
 // This file turns errors into exit statuses, and nothing else does.
@@ -56,7 +57,7 @@ func statusOf(err error) int {
 	switch {
 	case err == nil:
 		return statusDone
-	case errors.Is(err, errInterrupted), errors.Is(err, context.Canceled), errors.Is(err, context.DeadlineExceeded), errors.As(err, &write):
+	case errors.Is(err, errInterrupted), errors.Is(err, context.Canceled), errors.Is(err, context.DeadlineExceeded), errors.Is(err, gds.ErrSpool), errors.As(err, &write):
 		return statusOutput
 	case errors.As(err, &usage), errors.As(err, &deck), errors.As(err, &order), errors.As(err, &exit):
 		return statusUsage
