@@ -46,7 +46,8 @@ func (p *Placement) Lattice(at Point) Lattice {
 }
 
 // Element gives the place of an element of the array whose origin is at: at + column*(ColumnEnd-at)/Columns +
-// row*(RowEnd-at)/Rows, the exact sum rounded to the nearest whole unit, ties to even.
+// row*(RowEnd-at)/Rows, where the exact sum of the two quotients is rounded to the nearest whole unit, ties to even. So the
+// elements of an array can be written as single references at the very same places.
 func (p *Placement) Element(at Point, column, row int32) (x, y int64) {
 	c, r := int64(column), int64(row)
 	columns, rows := int64(p.Columns), int64(p.Rows)

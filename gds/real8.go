@@ -3,7 +3,6 @@ package gds
 import (
 	"encoding/binary"
 	"math"
-	"math/bits"
 )
 
 // This file turns the eight-byte reals of the format into float64 and back. Such a real is a sign bit, seven bits of
@@ -37,8 +36,7 @@ func EncodeReal8(f float64) (real8 [8]byte, ok bool) {
 	mantissa := uint64(math.Ldexp(fraction, 53))  // 53 bits, exact
 	// |f| = mantissa * 2^(exponent-53). The hexadecimal exponent e is the least with |f| < 16^e.
 	e := ceilDiv4(exponent)
-	shift := 3 - (4*e - exponent) // mantissa * 2^(shift) / 2^56 * 16^e; 0 <= shift <= 3
-	mantissa <<= uint(shift)
+	mantissa <<= 3 - (4*e - exponent) // by 0 to 3 bits: |f| = mantissa / 2^56 * 16^e
 	if e > 63 {
 		return real8, false
 	}
@@ -50,7 +48,7 @@ func EncodeReal8(f float64) (real8 [8]byte, ok bool) {
 		v |= 1 << 63
 	}
 	binary.BigEndian.PutUint64(real8[:], v)
-	return real8, bits.Len64(mantissa) <= 56
+	return real8, true
 }
 
 // ceilDiv4 is n/4 rounded up.
