@@ -1,0 +1,424 @@
+package decompose
+
+import (
+	"cmp"
+	"context"
+	"math"
+	"slices"
+
+	"maskpair/decompose/exact"
+	"maskpair/decompose/geom"
+	"maskpair/gds"
+)
+
+// This file explains failure: for each component that two masks cannot do, the smallest odd cycle or the shortest path between
+// clashing orders, the pairs that stay on one mask and how far they are apart, and which components are the same thing again.
+
+// explain fills in what is unresolved.
+func (s *solver) explain(ctx context.Context, res *LayerResult) error {
+	if len(s.groups) == 0 {
+		return nil
+	}
+	e := &explainer{solver: s, boxes: s.l.boxes(), groups: map[uint64]int64{}}
+	e.gather()
+	e.sign()
+	for i := range s.groups {
+		if err := ctx.Err(); err != nil {
+			return err
+		}
+		e.group(&s.groups[i], res)
+	}
+	slices.SortStableFunc(res.Unresolved, func(a, b Unresolved) int { return cmp.Compare(a.Component, b.Component) })
+	for i := range res.Unresolved {
+		res.Unresolved[i].Group = e.number(uint64(res.Unresolved[i].Group))
+	}
+	return nil
+}
+
+// explainer holds what explaining needs.
+type explainer struct {
+	*solver
+	boxes  []Box
+	parts  map[uint32]*geom.Parts // of the nodes of pairs that stay
+	shape  []uint64               // by local index of node: what the node is, in the canonical frame of its group
+	local  map[uint32]uint32      // node to index in shape
+	groups map[uint64]int64       // signature to number
+}
+
+// gather finds the geometry of the nodes whose pairs stay on one mask.
+func (e *explainer) gather() {
+	e.parts = map[uint32]*geom.Parts{}
+	for i := range e.solver.groups {
+		b := &e.solver.groups[i]
+		for _, ed := range b.edges {
+			u, v := b.nodes[ed.U], b.nodes[ed.V]
+			if e.a.mask.Data[u] == e.a.mask.Data[v] {
+				for _, n := range [2]uint32{u, v} {
+					if e.parts[n] == nil {
+						e.parts[n] = &geom.Parts{}
+					}
+				}
+			}
+		}
+	}
+	e.l.geometryOf(e.parts)
+}
+
+// sign hashes what each node of the broken groups is made of: its figures, each once, in the canonical frame of its group.
+func (e *explainer) sign() {
+	e.local = map[uint32]uint32{}
+	owner := []int32{}
+	for i := range e.solver.groups {
+		for _, u := range e.solver.groups[i].nodes {
+			e.local[u] = uint32(len(owner))
+			owner = append(owner, int32(i))
+		}
+	}
+	type figure struct {
+		node uint32
+		hash uint64
+	}
+	var list []figure
+	l := e.l
+	node := l.nodeOf.Data
+	for top := range l.flat.h.tops {
+		l.eachFigure(top, func(o uint32) bool { _, ok := e.solver.index[int32(e.a.group.Data[node[o]])]; return ok },
+			func(o, fig uint32, at placement, odd *oddFigure) {
+				k := e.local[node[o]]
+				back := e.solver.groups[owner[k]].canon.back
+				if odd != nil {
+					list = append(list, figure{k, hashBox(back.applyBox(odd.form.box))})
+					return
+				}
+				list = append(list, figure{k, hashPlaced(l.flat, fig, back.compose(at))})
+			})
+	}
+	slices.SortFunc(list, func(a, b figure) int { return cmp.Or(cmp.Compare(a.node, b.node), cmp.Compare(a.hash, b.hash)) })
+	list = slices.Compact(list)
+	e.shape = make([]uint64, len(owner))
+	for _, f := range list {
+		e.shape[f.node] += mix(f.hash, 5)
+	}
+}
+
+func hashBox(b Box) uint64 {
+	return mix(mix(mix(mix(11, uint64(b.X1)), uint64(b.Y1)), uint64(b.X2)), uint64(b.Y2))
+}
+
+// hashPlaced hashes the points of a figure as placed; the sum does not depend on where the outline starts.
+func hashPlaced(f *flat, figure uint32, at placement) uint64 {
+	fig := &f.lib.Figures[figure]
+	h := hashBox(at.applyBox(f.scaled(fig.Box)))
+	if fig.Outline == 0 {
+		return h
+	}
+	o := &f.lib.Outlines[fig.Outline-1]
+	for _, p := range f.lib.Points[o.First : o.First+uint64(o.Count)] {
+		x, y := at.apply(int64(p.X)*f.forms.scale, int64(p.Y)*f.forms.scale)
+		h += mix(mix(13, uint64(x)), uint64(y))
+	}
+	return mix(h, uint64(uint32(o.Width)))
+}
+
+// number gives the number of the group of equal components with a signature.
+func (e *explainer) number(signature uint64) int64 {
+	n, ok := e.groups[signature]
+	if !ok {
+		n = int64(len(e.groups))
+		e.groups[signature] = n
+	}
+	return n
+}
+
+// group explains one broken group, component by component.
+func (e *explainer) group(b *brokenGroup, res *LayerResult) {
+	a := e.a
+	masks := make([]uint8, len(b.nodes))
+	for k, u := range b.nodes {
+		masks[k] = a.mask.Data[u]
+	}
+	bound := b.units.pairsOf(b.solution.LowerBound)
+	res.LowerBound += bound
+	// Parts of the group: its components, in order.
+	byComponent := map[uint32][]int32{}
+	var order []uint32
+	for k, u := range b.nodes {
+		c := a.component.Data[u]
+		if byComponent[c] == nil {
+			order = append(order, c)
+		}
+		byComponent[c] = append(byComponent[c], int32(k))
+	}
+	slices.Sort(order)
+	stuck := 0
+	first := len(res.Unresolved)
+	for _, c := range order {
+		part := e.part(b, byComponent[c], masks)
+		if part.stuck {
+			stuck++
+			res.UnresolvedComponents++
+		}
+		if part.stuck || len(part.left)+len(part.accepted) > 0 {
+			u := e.entry(b, part, c)
+			for _, x := range part.accepted {
+				res.Waived = append(res.Waived, e.waived(b, part, x, u.Top))
+			}
+			res.UnresolvedPairs += int64(len(u.Pairs))
+			res.WaivedPairs += int64(len(part.accepted))
+			if part.stuck || len(u.Pairs) > 0 {
+				res.Unresolved = append(res.Unresolved, u)
+			}
+		}
+	}
+	if stuck == 0 {
+		res.JointClashes++
+	}
+	proved := b.solution.Proved
+	left := int64(0)
+	for i := first; i < len(res.Unresolved); i++ {
+		left += int64(len(res.Unresolved[i].Pairs))
+	}
+	if left != bound {
+		proved = false
+	}
+	for i := first; i < len(res.Unresolved); i++ {
+		res.Unresolved[i].Proved = proved
+		if len(order) == 1 {
+			res.Unresolved[i].LowerBound = bound
+		}
+	}
+	if !proved {
+		res.ProvedOptimal = false
+	}
+}
+
+// componentPart is one component of a broken group, with numbers of its own.
+type componentPart struct {
+	nodes    []int32 // places in the group
+	edges    []exact.Edge
+	masks    []uint8
+	stuck    bool  // its own near pairs contradict the orders
+	odd      bool  // it has an odd cycle
+	left     []int // edges on one mask, not waived
+	accepted []int // edges on one mask, waived
+}
+
+// part cuts a component out of a group.
+func (e *explainer) part(b *brokenGroup, nodes []int32, masks []uint8) *componentPart {
+	p := &componentPart{nodes: nodes}
+	at := make(map[int32]int32, len(nodes))
+	for i, k := range nodes {
+		at[k] = int32(i)
+		p.masks = append(p.masks, masks[k])
+	}
+	near := newParity(make([]uint32, len(nodes)))
+	reps := len(nodes)
+	if b.rep != nil {
+		reps = b.problem.Nodes
+	}
+	orders := newParity(make([]uint32, reps+1)) // the last is mask A
+	held := func(i int) (uint32, uint32) {
+		if b.rep != nil {
+			return uint32(b.rep[nodes[i]]), uint32(b.flip[nodes[i]])
+		}
+		return uint32(i), 0
+	}
+	for i, k := range nodes {
+		rep, flip := held(i)
+		f := int8(-1)
+		if b.problem.Fixed != nil {
+			if b.rep != nil {
+				f = b.problem.Fixed[rep]
+				flip = 0
+			} else {
+				f = b.problem.Fixed[k]
+			}
+		}
+		if f >= 0 {
+			orders.relate(rep, uint32(reps), uint32(f)^flip)
+		}
+	}
+	for x, ed := range b.edges {
+		i, ok := at[ed.U]
+		if !ok {
+			continue
+		}
+		k := at[ed.V]
+		n := len(p.edges)
+		p.edges = append(p.edges, exact.Edge{U: i, V: k, Weight: 1})
+		if p.masks[i] == p.masks[k] {
+			if b.waived[x] {
+				p.accepted = append(p.accepted, n)
+			} else {
+				p.left = append(p.left, n)
+			}
+		}
+		if !near.relate(uint32(i), uint32(k), 1) {
+			p.odd, p.stuck = true, true
+		}
+		ri, fi := held(int(i))
+		rk, fk := held(int(k))
+		if !orders.relate(ri, rk, 1^fi^fk) {
+			p.stuck = true
+		}
+	}
+	return p
+}
+
+// entry words a component for the result.
+func (e *explainer) entry(b *brokenGroup, p *componentPart, component uint32) Unresolved {
+	l := e.l
+	u := Unresolved{Component: int64(component), Shapes: int64(len(p.nodes)), Cause: OrderClash}
+	firstNode := b.nodes[p.nodes[0]]
+	top := l.topOf(firstNode)
+	u.Top = l.flat.h.name(l.flat.h.tops[top])
+	var ring []int32
+	if p.odd {
+		u.Cause = OddCycle
+		ring = p.smallestCycle()
+	} else {
+		ring = p.clash(b)
+	}
+	for _, i := range ring {
+		n := b.nodes[p.nodes[i]]
+		u.Cycle = append(u.Cycle, CycleShape{l.half(e.boxes[n]), Mask(p.masks[i])})
+	}
+	for _, x := range p.left {
+		u.Pairs = append(u.Pairs, e.pair(b, p, x, u.Top))
+	}
+	slices.SortFunc(u.Pairs, func(a, b Pair) int { return cmp.Or(compareBoxes(a.A, b.A), compareBoxes(a.B, b.B)) })
+	fr := b.canon.frame
+	u.Cell = l.flat.h.name(fr.structure)
+	box := emptyBox
+	sign := uint64(17)
+	for _, k := range p.nodes {
+		n := b.nodes[k]
+		box = box.join(e.boxes[n])
+	}
+	// Components of one group that ties join have canonical places of their own.
+	low := b.canon.back.applyBox(box)
+	for _, k := range p.nodes {
+		n := b.nodes[k]
+		sign = mix(sign, e.shape[e.local[n]])
+		sign = mix(sign, hashBox(b.canon.back.applyBox(e.boxes[n]).shift(-low.X1, -low.Y1)))
+	}
+	for _, ed := range p.edges {
+		sign = mix(sign, uint64(ed.U)<<32|uint64(uint32(ed.V)))
+	}
+	u.Group = int64(sign)
+	place := fr.at.inverse().applyBox(box)
+	k := 2 / l.flat.forms.scale
+	u.CellPlace = Spot{place.X1 * k, place.Y1 * k}
+	u.CellTransform = gds.NewTransform(fr.at.turn, fr.at.x/l.flat.forms.scale, fr.at.y/l.flat.forms.scale).String()
+	return u
+}
+
+// smallestCycle gives the smallest of the smallest odd cycles through the pairs that stay; where none stays, of all.
+func (p *componentPart) smallestCycle() []int32 {
+	left := p.left
+	if len(left) == 0 {
+		left = p.accepted
+	}
+	// Through so many pairs the shortest cycle is looked for; a component with more has a short one among them.
+	const most = 256
+	var best []int32
+	for _, x := range left[:min(len(left), most)] {
+		if ring := tmpCycle(len(p.nodes), p.edges, x); len(ring) > 0 && (best == nil || len(ring) < len(best)) {
+			best = ring
+			if len(best) == 3 {
+				break
+			}
+		}
+	}
+	if best == nil {
+		_ = 0
+	}
+	return best
+}
+
+// clash gives the shortest path of near pairs between two anchored nodes whose masks it contradicts: breadth first from all anchored
+// nodes at once, over nodes and the masks that they would need.
+func (p *componentPart) clash(b *brokenGroup) []int32 {
+	n := len(p.nodes)
+	fixed := make([]int8, n)
+	for i, k := range p.nodes {
+		fixed[i] = -1
+		if b.problem.Fixed == nil {
+			continue
+		}
+		if b.rep == nil {
+			fixed[i] = b.problem.Fixed[k]
+		} else if f := b.problem.Fixed[b.rep[k]]; f >= 0 {
+			fixed[i] = f ^ int8(b.flip[k])
+		}
+	}
+	next := make([][]int32, n)
+	for _, ed := range p.edges {
+		next[ed.U] = append(next[ed.U], ed.V)
+		next[ed.V] = append(next[ed.V], ed.U)
+	}
+	const unseen, source = -2, -1
+	back := make([]int32, 2*n)
+	for i := range back {
+		back[i] = unseen
+	}
+	var queue []int32
+	for i, f := range fixed {
+		if f >= 0 {
+			back[2*i+int(f)] = source
+			queue = append(queue, int32(2*i+int(f)))
+		}
+	}
+	for len(queue) > 0 {
+		at := queue[0]
+		queue = queue[1:]
+		i, m := at/2, at%2
+		if fixed[i] >= 0 && int32(fixed[i]) != m {
+			var path []int32
+			for at != source {
+				path = append(path, at/2)
+				at = back[at]
+			}
+			slices.Reverse(path)
+			return path
+		}
+		for _, k := range next[i] {
+			if to := 2*k + (m ^ 1); back[to] == unseen {
+				back[to] = at
+				queue = append(queue, to)
+			}
+		}
+	}
+	return nil
+}
+
+// pair words a near pair that stays on one mask.
+func (e *explainer) pair(b *brokenGroup, p *componentPart, x int, top string) Pair {
+	ed := p.edges[x]
+	u, v := b.nodes[p.nodes[ed.U]], b.nodes[p.nodes[ed.V]]
+	if compareBoxes(e.boxes[u], e.boxes[v]) > 0 {
+		u, v = v, u
+	}
+	scale := float64(e.l.flat.forms.scale)
+	from, to, sq := geom.Closest(*e.parts[u], *e.parts[v])
+	k := 2 / e.l.flat.forms.scale
+	out := Pair{A: e.l.half(e.boxes[u]), B: e.l.half(e.boxes[v]), DistanceSq: sq / (scale * scale), Top: top,
+		From: Spot{from.X * k, from.Y * k}, To: Spot{to.X * k, to.Y * k}, Mask: Mask(p.masks[ed.U]), Rule: "same_mask_spacing"}
+	out.Gap = gapBox(out.A, out.B, out.From, out.To)
+	out.Widen = e.l.rules.Spacing - int64(math.Sqrt(out.DistanceSq))
+	return out
+}
+
+// waived words a pair that the user accepts.
+func (e *explainer) waived(b *brokenGroup, p *componentPart, x int, top string) WaivedPair {
+	ed := p.edges[x]
+	u, v := b.nodes[p.nodes[ed.U]], b.nodes[p.nodes[ed.V]]
+	out := WaivedPair{Pair: e.pair(b, p, x, top)}
+	for _, w := range e.o.Waivers {
+		if w.A == u && w.B == v || w.A == v && w.B == u {
+			out.Name, out.Reason = w.Name, w.Reason
+			break
+		}
+	}
+	return out
+}

@@ -1,0 +1,130 @@
+package decompose
+
+import (
+	"maskpair/decompose/geom"
+	"maskpair/gds"
+)
+
+// This file turns drawn figures that are no plain rectangle into forms: the rectangles of a Manhattan figure, or an any-angle polygon
+// cut in bands. A form is worked out once per drawn figure, in the coordinates of its structure, and placed as often as the
+// hierarchy says.
+
+// form is one outline ready to be placed, in work units.
+type form struct {
+	first, count uint32        // rectangles, in forms.rects
+	polygon      *geom.Polygon // nil: the rectangles are the figure
+	box          Box
+}
+
+// hasArea tells whether the figure covers anything. One that does not is no figure.
+func (f *form) hasArea() bool { return f.count > 0 || f.polygon != nil }
+
+// pieces is the number of flat items that a placement of the form makes.
+func (f *form) pieces() int64 {
+	if f.polygon != nil {
+		return int64(len(f.polygon.Bands()))
+	}
+	return int64(f.count)
+}
+
+// forms holds the forms of all outlines of one selection.
+type forms struct {
+	scale   int64 // work units per database unit: 2 where a path of odd width needs half units, else 1
+	of      []form
+	rects   []geom.Rect
+	rounded []bool // by outline: its own vertices were rounded
+}
+
+// needsHalves tells whether an outline has sides on half units: a path of odd width.
+func needsHalves(o *gds.Outline) bool {
+	return o.Path && o.Width&1 != 0
+}
+
+// halfUnit is the grid of outlines in half database units: a rounded vertex comes to lie on a whole unit.
+const halfUnit = 2
+
+// newForms works out the forms of the selected figures.
+func newForms(lib *gds.Library, sel *selection) *forms {
+	f := &forms{scale: 1, of: make([]form, len(lib.Outlines)), rounded: make([]bool, len(lib.Outlines))}
+	for i := range lib.Figures {
+		if o := lib.Figures[i].Outline; o != 0 && sel.tag[lib.Figures[i].Class] != none && needsHalves(&lib.Outlines[o-1]) {
+			f.scale = 2
+			break
+		}
+	}
+	var points []geom.Point
+	for i := range lib.Figures {
+		o := lib.Figures[i].Outline
+		if o == 0 || sel.tag[lib.Figures[i].Class] == none {
+			continue
+		}
+		var fill geom.Fill
+		var rounded bool
+		points, fill, rounded = outlinePoints(points[:0], lib, &lib.Outlines[o-1])
+		if f.scale == 1 {
+			for k := range points {
+				points[k].X >>= 1
+				points[k].Y >>= 1
+			}
+		}
+		f.rounded[o-1] = rounded
+		f.of[o-1] = f.make(points, fill)
+	}
+	return f
+}
+
+// make gives the form of an outline in work units.
+func (f *forms) make(points []geom.Point, fill geom.Fill) form {
+	if len(points) < 3 {
+		return form{}
+	}
+	first := len(f.rects)
+	rects, manhattan := geom.Rectangles(f.rects, points, fill)
+	f.rects = rects
+	if manhattan {
+		made := form{first: uint32(first), count: uint32(len(f.rects) - first)}
+		if made.count > 0 {
+			made.box = boxAround(f.rects[first:])
+		}
+		return made
+	}
+	p := geom.NewPolygon(points, fill)
+	if !p.HasArea() {
+		return form{}
+	}
+	b := p.Box()
+	return form{polygon: p, box: Box{b.X1, b.Y1, b.X2, b.Y2}}
+}
+
+func boxAround(rects []geom.Rect) Box {
+	b := Box(rects[0])
+	for _, r := range rects[1:] {
+		b = Box{min(b.X1, r.X1), min(b.Y1, r.Y1), max(b.X2, r.X2), max(b.Y2, r.Y2)}
+	}
+	return b
+}
+
+// outlinePoints appends the outline of a boundary or path in half database units of its structure.
+func outlinePoints(dst []geom.Point, lib *gds.Library, o *gds.Outline) (points []geom.Point, fill geom.Fill, rounded bool) {
+	raw := lib.Points[o.First : o.First+uint64(o.Count)]
+	if !o.Path {
+		for _, p := range raw {
+			dst = append(dst, geom.Point{X: 2 * int64(p.X), Y: 2 * int64(p.Y)})
+		}
+		return dst, geom.EvenOdd, false
+	}
+	centre := make([]geom.Point, len(raw))
+	for i, p := range raw {
+		centre[i] = geom.Point{X: 2 * int64(p.X), Y: 2 * int64(p.Y)}
+	}
+	width := int64(o.Width)
+	if width < 0 {
+		width = -width
+	}
+	end := geom.PathEnd{Type: o.PathType, Begin: 2 * int64(o.Begin), Finish: 2 * int64(o.Finish)}
+	points, rounded, ok := geom.PathOutline(dst, centre, 2*width, end, halfUnit)
+	if !ok {
+		return dst, geom.NonZero, false
+	}
+	return points, geom.NonZero, rounded
+}

@@ -1,0 +1,421 @@
+package decompose
+
+import (
+	"cmp"
+	"math"
+	"math/bits"
+	"slices"
+
+	"maskpair/gds"
+)
+
+// This file deals the free choices. A group that no order and no memory binds may be turned over; what decides must serve the
+// hierarchy, because every cell that comes out in two ways costs a variant. So each drawn figure of a structure that is placed more
+// than once has a home mask, and a group is turned to where most of its figures are home. Groups that hold the same drawn figures on
+// the same relative masks form a class and come out alike. What then still is free balances the areas of the two masks.
+//
+// Nothing here looks at the order of elements or structures in the file, or at chance: drawn figures are told by what they are (the
+// name of the structure, layer and outline), classes by the figures in them, groups by their place.
+
+// deal turns the free groups of a layout.
+func (l *layout) deal(a *assignment) {
+	delta := l.deltas(a)
+	d := &dealer{l: l, a: a, delta: delta}
+	turn := make([]bool, a.groups)
+	settled := make([]bool, a.groups)
+	for g, free := range a.free {
+		settled[g] = !free
+	}
+	if d.hashFigures() {
+		d.hashGroups()
+		d.makeClasses()
+		d.fillClasses()
+		d.turnClasses()
+		d.turnGroups(turn, settled)
+	}
+	d.balance(turn, settled)
+	a.turnOver(func(g uint32) bool { return turn[g] })
+}
+
+// deltas gives for each group the area on A less that on B.
+func (l *layout) deltas(a *assignment) []float64 {
+	delta := make([]float64, a.groups)
+	for u, area := range l.area {
+		if a.mask.Data[u] == 0 {
+			delta[a.group.Data[u]] += area
+		} else {
+			delta[a.group.Data[u]] -= area
+		}
+	}
+	return delta
+}
+
+// dealer holds what dealing needs.
+type dealer struct {
+	l     *layout
+	a     *assignment
+	delta []float64 // by group, as the masks are now
+
+	shared  []bool   // by structure: placed more than once and with figures of its own
+	hash    []uint64 // by figure of the library: what it is; only of shared structures
+	h0, h1  []uint64 // by group: its shared figures with their masks as they are now, and turned over
+	classOf []int32  // by group; -1: no shared figures
+	classes []class
+	homes   map[uint32]int8 // by figure: +1 A, -1 B
+}
+
+// class is a set of groups with the same shared figures on the same relative masks.
+type class struct {
+	low, high uint64 // the two hashes; equal: turning over changes nothing
+	fixed     bool   // its groups are not free
+	example   int32  // a group
+	count     int64  // groups
+	delta     float64
+	members   []member
+	turned    bool // relative to the canonical way, in which the lower hash is that of the masks
+}
+
+// member is a drawn figure in one group of a class: how often it is on A and on B in the canonical way.
+type member struct {
+	figure   uint32
+	onA, onB int32
+}
+
+// seed is fixed: hashes decide the order of classes of equal weight.
+const figureSeed = 0x9e3779b97f4a7c15
+
+func mix(h, v uint64) uint64 {
+	hi, lo := bits.Mul64(h^v^0xd6e8feb86659fd93, figureSeed)
+	hi2, lo2 := bits.Mul64(hi^lo, 0xa0761d6478bd642f)
+	return hi2 ^ lo2
+}
+
+func mixString(s string) uint64 {
+	h := uint64(len(s))
+	for i := 0; i < len(s); i++ {
+		h = mix(h, uint64(s[i]))
+	}
+	return h
+}
+
+// hashFigures tells what each figure of a shared structure is; false where no structure is shared.
+func (d *dealer) hashFigures() bool {
+	f := d.l.flat
+	d.shared = make([]bool, len(f.lib.Structures))
+	any := false
+	for _, s := range f.h.bottom {
+		d.shared[s] = f.own[s] > 0 && f.h.placed[s] > 1
+		any = any || d.shared[s]
+	}
+	if !any {
+		return false
+	}
+	d.hash = make([]uint64, len(f.lib.Figures))
+	for _, s := range f.h.bottom {
+		if !d.shared[s] {
+			continue
+		}
+		name := mixString(f.h.name(s))
+		f.ownFigures(s, func(_, i uint32) { d.hash[i] = hashFigure(f.lib, i, name) })
+	}
+	return true
+}
+
+// hashFigure hashes class, box and outline of a figure, wherever the outline starts and whichever way it runs.
+func hashFigure(lib *gds.Library, i uint32, h uint64) uint64 {
+	fig := &lib.Figures[i]
+	h = mix(h, uint64(fig.Class))
+	h = mix(h, uint64(uint32(fig.Box.X1))<<32|uint64(uint32(fig.Box.Y1)))
+	h = mix(h, uint64(uint32(fig.Box.X2))<<32|uint64(uint32(fig.Box.Y2)))
+	if fig.Outline == 0 {
+		return h
+	}
+	o := &lib.Outlines[fig.Outline-1]
+	sum := uint64(0)
+	for _, p := range lib.Points[o.First : o.First+uint64(o.Count)] {
+		sum += mix(1, uint64(uint32(p.X))<<32|uint64(uint32(p.Y)))
+	}
+	return mix(mix(h, sum), uint64(uint32(o.Width)))
+}
+
+// eachShared calls fn for every flat figure of a shared structure.
+func (d *dealer) eachShared(fn func(ordinal, figure uint32)) {
+	f := d.l.flat
+	for top := range f.h.tops {
+		f.visit(top, func(s int32, _ placement, _ bool, first uint32) {
+			if d.shared[s] {
+				f.ownFigures(s, func(k, figure uint32) { fn(first+k, figure) })
+			}
+		})
+	}
+}
+
+// hashGroups adds up, group by group, what is in it; sums do not depend on the order.
+func (d *dealer) hashGroups() {
+	d.h0, d.h1 = make([]uint64, d.a.groups), make([]uint64, d.a.groups)
+	node, group, mask := d.l.nodeOf.Data, d.a.group.Data, d.a.mask.Data
+	d.eachShared(func(ordinal, figure uint32) {
+		n := node[ordinal]
+		g, m := group[n], uint64(mask[n])
+		d.h0[g] += mix(d.hash[figure], m)
+		d.h1[g] += mix(d.hash[figure], m^1)
+	})
+}
+
+// makeClasses puts groups with the same hashes in one class.
+func (d *dealer) makeClasses() {
+	type key struct {
+		low, high uint64
+		fixed     bool
+	}
+	byKey := map[key]int32{}
+	d.classOf = make([]int32, d.a.groups)
+	for g := range d.classOf {
+		d.classOf[g] = -1
+		if d.h0[g] == 0 && d.h1[g] == 0 {
+			continue
+		}
+		k := key{min(d.h0[g], d.h1[g]), max(d.h0[g], d.h1[g]), false}
+		if !d.a.free[g] {
+			k = key{d.h0[g], d.h1[g], true}
+		}
+		c, ok := byKey[k]
+		if !ok {
+			c = int32(len(d.classes))
+			byKey[k] = c
+			d.classes = append(d.classes, class{low: k.low, high: k.high, fixed: k.fixed, example: int32(g)})
+		}
+		d.classOf[g] = c
+		d.classes[c].count++
+		d.classes[c].delta += d.canonical(g) * d.delta[g]
+	}
+}
+
+// canonical is -1 where a group is turned over relative to its class.
+func (d *dealer) canonical(g int) float64 {
+	if c := &d.classes[d.classOf[g]]; !c.fixed && d.h0[g] != c.low {
+		return -1
+	}
+	return 1
+}
+
+// fillClasses finds the drawn figures in one group of each class.
+func (d *dealer) fillClasses() {
+	node, group, mask := d.l.nodeOf.Data, d.a.group.Data, d.a.mask.Data
+	d.eachShared(func(ordinal, figure uint32) {
+		n := node[ordinal]
+		g := group[n]
+		c := &d.classes[d.classOf[g]]
+		if c.example != int32(g) {
+			return
+		}
+		m := mask[n]
+		if d.canonical(int(g)) < 0 {
+			m ^= 1
+		}
+		c.members = append(c.members, member{figure, int32(1 - m), int32(m)})
+	})
+	for i := range d.classes {
+		c := &d.classes[i]
+		slices.SortFunc(c.members, func(a, b member) int { return cmp.Compare(a.figure, b.figure) })
+		kept := c.members[:0]
+		for _, m := range c.members {
+			if n := len(kept); n > 0 && kept[n-1].figure == m.figure {
+				kept[n-1].onA += m.onA
+				kept[n-1].onB += m.onB
+			} else {
+				kept = append(kept, m)
+			}
+		}
+		c.members = kept
+	}
+}
+
+// homeRounds is how often homes and classes settle by each other; more rounds changed nothing on the layouts tried.
+const homeRounds = 8
+
+// turnClasses deals homes and turns the classes, those with most area at stake first.
+func (d *dealer) turnClasses() {
+	order := make([]int32, len(d.classes))
+	for i := range order {
+		order[i] = int32(i)
+	}
+	slices.SortFunc(order, func(i, j int32) int {
+		a, b := &d.classes[i], &d.classes[j]
+		return cmp.Or(-cmp.Compare(boolInt(a.fixed), boolInt(b.fixed)), -cmp.Compare(math.Abs(a.delta), math.Abs(b.delta)),
+			-cmp.Compare(a.count, b.count), cmp.Compare(a.low, b.low), cmp.Compare(a.high, b.high))
+	})
+	d.homes = map[uint32]int8{}
+	imbalance := 0.0
+	for g, x := range d.delta {
+		if !d.a.free[g] && d.classOf[g] < 0 {
+			imbalance += x
+		}
+	}
+	for _, i := range order {
+		c := &d.classes[i]
+		agree := d.agree(c)
+		switch {
+		case c.fixed:
+		case agree != 0:
+			c.turned = agree < 0
+		default:
+			c.turned = c.delta*imbalance > 0 || imbalance == 0 && c.delta < 0
+		}
+		imbalance += c.sign() * c.delta
+		for _, m := range c.members {
+			if d.homes[m.figure] == 0 {
+				d.homes[m.figure] = int8(signOf(int64(m.onA-m.onB)) * int64(c.sign()))
+			}
+		}
+	}
+	for range homeRounds {
+		votes := map[uint32]int64{}
+		for i := range d.classes {
+			c := &d.classes[i]
+			for _, m := range c.members {
+				votes[m.figure] += int64(c.sign()) * int64(m.onA-m.onB) * c.count
+			}
+		}
+		for f, v := range votes {
+			if v != 0 {
+				d.homes[f] = int8(signOf(v))
+			}
+		}
+		changed := false
+		for _, i := range order {
+			c := &d.classes[i]
+			if agree := d.agree(c); !c.fixed && agree != 0 && c.turned != (agree < 0) {
+				c.turned, changed = agree < 0, true
+			}
+		}
+		if !changed {
+			break
+		}
+	}
+}
+
+// agree tells how many more figures of a class are home in the canonical way than turned over.
+func (d *dealer) agree(c *class) int64 {
+	sum := int64(0)
+	for _, m := range c.members {
+		sum += int64(d.homes[m.figure]) * int64(m.onA-m.onB)
+	}
+	return sum
+}
+
+func (c *class) sign() float64 {
+	if c.turned {
+		return -1
+	}
+	return 1
+}
+
+func signOf(v int64) int64 { return int64(cmp.Compare(v, 0)) }
+
+func boolInt(b bool) int {
+	if b {
+		return 1
+	}
+	return 0
+}
+
+// turnGroups turns the groups of the classes. Where a class is the same when turned over, the place decides: the least box in the
+// frame of the lowest cell that holds the group is on its figure's home mask.
+func (d *dealer) turnGroups(turn, settled []bool) {
+	var even []bool
+	for g, c := range d.classOf {
+		if c < 0 || settled[g] {
+			continue
+		}
+		cl := &d.classes[c]
+		if cl.low == cl.high {
+			if even == nil {
+				even = make([]bool, len(settled))
+			}
+			even[g] = true
+			settled[g] = true
+			continue
+		}
+		turn[g] = (d.canonical(g) < 0) != cl.turned
+		settled[g] = true
+	}
+	if even != nil {
+		d.turnEven(even, turn)
+	}
+}
+
+// turnEven turns the groups that hold each of their shared figures as often on one mask as on the other.
+func (d *dealer) turnEven(even, turn []bool) {
+	l := d.l
+	type extent struct {
+		first, last uint32
+		best        Box
+		node        uint32
+	}
+	at := map[uint32]*extent{}
+	node, group := l.nodeOf.Data, d.a.group.Data
+	for o, n := range node {
+		if g := group[n]; even[g] {
+			e := at[g]
+			if e == nil {
+				e = &extent{first: uint32(o), best: emptyBox}
+				at[g] = e
+			}
+			e.last = uint32(o)
+		}
+	}
+	boxes := l.boxes()
+	fr := newFrames(l.flat)
+	back := map[uint32]placement{}
+	for n, box := range boxes {
+		g := group[n]
+		if !even[g] {
+			continue
+		}
+		e := at[g]
+		p, ok := back[g]
+		if !ok {
+			p = fr.of(l.topOf(uint32(n)), e.first, e.last).at.inverse()
+			back[g] = p
+		}
+		if local := p.applyBox(box); compareBoxes(local, e.best) < 0 {
+			e.best, e.node = local, uint32(n)
+		}
+	}
+	for g, e := range at {
+		turn[g] = d.a.mask.Data[e.node] == 1
+	}
+}
+
+func compareBoxes(a, b Box) int {
+	return cmp.Or(cmp.Compare(a.X1, b.X1), cmp.Compare(a.Y1, b.Y1), cmp.Compare(a.X2, b.X2), cmp.Compare(a.Y2, b.Y2))
+}
+
+// balance turns what is still free so that the areas of the masks come near to each other: largest first, by powers of two, and by
+// place among those.
+func (d *dealer) balance(turn, settled []bool) {
+	imbalance := 0.0
+	var buckets [2048][]int32
+	for g, x := range d.delta {
+		if settled[g] {
+			if turn[g] {
+				x = -x
+			}
+			imbalance += x
+			continue
+		}
+		_, e := math.Frexp(math.Abs(x))
+		buckets[e+1024] = append(buckets[e+1024], int32(g))
+	}
+	for e := len(buckets) - 1; e >= 0; e-- {
+		for _, g := range buckets[e] {
+			x := d.delta[g]
+			if x*imbalance > 0 || imbalance == 0 && x < 0 {
+				turn[g] = true
+				x = -x
+			}
+			imbalance += x
+		}
+	}
+}

@@ -1,0 +1,462 @@
+package decompose
+
+import (
+	"context"
+	"fmt"
+	"math"
+	"slices"
+	"sync/atomic"
+
+	"maskpair/decompose/arena"
+	"maskpair/decompose/geom"
+)
+
+// layout is one deck layer, flattened and searched: its shapes, and which of them are near.
+//
+// Ordinals number flat figures, nodes number what goes on a mask as a whole. A node is a shape, or one piece of a shape that arrived
+// stitched. Shapes are numbered top by top (tops by name), and within a top in the order in which the sweep meets them, so that
+// numbers depend on the geometry and not on the order of elements in the file.
+type layout struct {
+	rules  *LayerRules
+	number int // of the deck layer
+	flat   *flat
+	nodeOf *arena.Array[uint32] // by ordinal
+	shapes int
+	nodes  int
+	first  []uint32  // first node of each top, by rank of the top; one more at the end
+	area   []float64 // by node, square work units
+	near   *neighbours
+	box    *arena.Array[Box]   // by node, once boxes was called
+	odd    []oddFigures        // by top
+	tags   *arena.Array[uint8] // by ordinal: what arrived on a mask; nil where nothing did
+	given  *givenStitches      // nil: none
+	hits   []ProbeHit
+}
+
+// ProbeHit says that a probe touches a flat figure.
+type ProbeHit struct {
+	Probe, Figure uint32
+}
+
+// builder flattens and searches a deck layer. Its arrays are reused from top to top.
+type builder struct {
+	ctx      context.Context
+	jobs     int
+	l        *layout
+	probes   []Probe
+	limit    atomic.Int64 // near pairs of figures that may still be kept
+	items    *arena.Array[item]
+	scratch  *arena.Array[item]
+	bands    *arena.Array[band]
+	sinks    []pairSink
+	areas    geom.AreaScratch
+	sorted   []item // of the window at hand
+	joined   bool   // the shapes of the top at hand are settled: a window is only looked at again
+	polygons []*geom.Polygon
+	opt      *Options
+}
+
+// Probe is a box (or a point, as a box without extent) in half database units of a top; it finds the shapes of a deck layer that it
+// touches.
+type Probe struct {
+	Top int // index into the tops
+	Box Box
+}
+
+// newLayout builds one deck layer.
+func newLayout(ctx context.Context, h *hierarchy, sel *selection, rules *LayerRules, number int, probes []Probe, opt *Options) (*layout, error) {
+	opt.stage("flatten")
+	f, err := newFlat(h, sel)
+	if err != nil {
+		return nil, err
+	}
+	l := &layout{rules: rules, number: number, flat: f, odd: make([]oddFigures, len(h.tops)), first: make([]uint32, len(h.tops)+1)}
+	b := &builder{ctx: ctx, jobs: opt.jobs(), l: l, probes: probes, opt: opt}
+	defer b.free()
+	b.limit.Store(opt.mostPairs())
+	l.nodeOf = arena.New[uint32](int(f.total))
+	sets := newUnion(l.nodeOf.Data)
+	if err := b.collectOdd(); err != nil {
+		return nil, err
+	}
+	l.findTags()
+	most, mostBands := 0, 0
+	for i := range h.tops {
+		items, bands := b.size(i)
+		most, mostBands = max(most, items), max(mostBands, bands)
+	}
+	b.items, b.scratch, b.bands = arena.New[item](most), arena.New[item](most), arena.New[band](mostBands)
+	shapes := uint32(0)
+	for rank, top := range h.byName {
+		l.first[rank] = shapes
+		if f.all[h.tops[top]] == 0 {
+			continue
+		}
+		n, err := b.top(top, sets, shapes)
+		if err != nil {
+			return nil, err
+		}
+		shapes = n
+	}
+	l.first[len(h.tops)] = shapes
+	l.shapes, l.nodes = int(shapes), int(shapes)
+	b.items.Free()
+	b.scratch.Free()
+	b.bands.Free()
+	if l.given != nil {
+		l.given.apply(l)
+	}
+	opt.stage("pairs")
+	l.near = gather(b.sinks, l.nodeOf.Data, l.nodes, l.given)
+	return l, nil
+}
+
+func (b *builder) free() {
+	b.items.Free()
+	b.scratch.Free()
+	b.bands.Free()
+}
+
+// free gives back what a layout holds.
+func (l *layout) free() {
+	l.nodeOf.Free()
+	l.tags.Free()
+	l.box.Free()
+	if l.near != nil {
+		l.near.free()
+	}
+}
+
+// collectOdd works out what is placed by a magnification or an odd angle, top by top.
+func (b *builder) collectOdd() error {
+	for top := range b.l.odd {
+		odd := &b.l.odd[top]
+		if err := b.l.flat.collectOdd(top, odd); err != nil {
+			return err
+		}
+		b.l.flat.rounded += odd.rounded
+	}
+	return nil
+}
+
+// size gives the number of items and bands of a top, probes included.
+func (b *builder) size(top int) (items, bands int) {
+	f := b.l.flat
+	t := f.h.tops[top]
+	if f.all[t] == 0 {
+		return 0, 0
+	}
+	items, bands = int(f.items[t]), int(f.bands[t])
+	for i := range b.l.odd[top].figures {
+		fm := &b.l.odd[top].figures[i].form
+		items += int(fm.pieces())
+		if fm.polygon != nil {
+			bands += int(fm.pieces())
+		}
+	}
+	for i := range b.probes {
+		if b.probes[i].Top == top {
+			items++
+		}
+	}
+	return items, bands
+}
+
+// top searches one top and numbers its shapes from `shapes` on; it returns the next number.
+func (b *builder) top(top int, sets union, shapes uint32) (uint32, error) {
+	f := b.l.flat
+	windows := b.windows(top)
+	b.joined = false
+	for _, win := range windows {
+		if err := b.prepare(top, win); err != nil {
+			return 0, err
+		}
+		b.opt.stage("pairs")
+		if err := b.search(sets, win); err != nil {
+			return 0, err
+		}
+	}
+	b.opt.stage("shapes")
+	from, to := uint32(f.first[top]), uint32(f.first[top]+f.all[f.h.tops[top]])
+	sets.point(from, to)
+	b.joined = true
+	if err := b.onBoth(top, sets, from, to); err != nil {
+		return 0, err
+	}
+	begin := shapes
+	for _, win := range windows {
+		if len(windows) > 1 {
+			if err := b.prepare(top, win); err != nil {
+				return 0, err
+			}
+		}
+		shapes = b.numberShapes(sets, shapes)
+	}
+	sets.settle(from, to)
+	b.l.area = append(b.l.area, make([]float64, shapes-begin)...)
+	for _, win := range windows {
+		if len(windows) > 1 {
+			win.box = win.core
+			if err := b.prepare(top, win); err != nil {
+				return 0, err
+			}
+		}
+		b.measure(begin, shapes)
+	}
+	return shapes, b.ctx.Err()
+}
+
+// windows cuts a top where its extent in work units does not fit 32 bits: only then, so nearly always there is one. Neighbouring
+// windows overlap by the spacing, so that each near pair lies within one of them.
+func (b *builder) windows(top int) []window {
+	box := b.l.flat.box[b.l.flat.h.tops[top]].join(b.l.odd[top].box)
+	reach := b.l.rules.Reach() * b.l.flat.forms.scale
+	if box.X2-box.X1 <= math.MaxUint32-2 && box.Y2-box.Y1 <= math.MaxUint32-2 {
+		return []window{{originX: box.X1 + (box.X2-box.X1)/2, originY: box.Y1 + (box.Y2-box.Y1)/2}}
+	}
+	cut := func(low, high int64) [][2]int64 {
+		var out [][2]int64
+		for at := low; at <= high; at += 1 << 31 {
+			out = append(out, [2]int64{at, min(at+1<<31, high)})
+		}
+		return out
+	}
+	var out []window
+	for _, y := range cut(box.Y1, box.Y2) {
+		for _, x := range cut(box.X1, box.X2) {
+			core := Box{x[0], y[0], x[1], y[1]}
+			reach := min(reach, 1<<30)
+			out = append(out, window{originX: x[0] + 1<<30, originY: y[0] + 1<<30, clip: true, core: core,
+				box: Box{x[0] - reach, y[0] - reach, x[1] + reach, y[1] + reach}})
+		}
+	}
+	for i := range out {
+		w := &out[i]
+		w.core = w.core.shift(-w.originX, -w.originY)
+		w.box = w.box.shift(-w.originX, -w.originY)
+	}
+	return out
+}
+
+func (b Box) shift(x, y int64) Box { return Box{b.X1 + x, b.Y1 + y, b.X2 + x, b.Y2 + y} }
+
+// prepare flattens a window of a top and sorts its items.
+func (b *builder) prepare(top int, win window) error {
+	b.opt.stage("flatten")
+	f := b.l.flat
+	nItem, nBand, err := f.flatten(b.ctx, top, win, b.items.Data, b.bands.Data, b.jobs)
+	if err != nil {
+		return err
+	}
+	w := flattener{f: f, win: win, items: b.items.Data, bands: b.bands.Data, nItem: nItem, nBand: nBand}
+	b.polygons = f.polygons
+	odd := &b.l.odd[top]
+	at := placement{0, -win.originX, -win.originY}
+	for i := range odd.figures {
+		fig := &odd.figures[i]
+		if fig.form.polygon != nil {
+			b.polygons = append(slices.Clip(b.polygons), fig.form.polygon)
+		}
+		w.form(&fig.form, &odd.forms.rects, uint32(len(b.polygons)), at, fig.ordinal)
+	}
+	scale := f.forms.scale
+	for i := range b.probes {
+		if b.probes[i].Top != top {
+			continue
+		}
+		p := b.probes[i].Box
+		if scale == 1 {
+			// A probe between two whole units touches what reaches over both: whole boxes touch [ceil, floor] of it exactly then.
+			p = Box{(p.X1 + 1) >> 1, (p.Y1 + 1) >> 1, p.X2 >> 1, p.Y2 >> 1}
+			if p.X1 > p.X2 {
+				p.X1, p.X2 = p.X2, p.X1
+			}
+			if p.Y1 > p.Y2 {
+				p.Y1, p.Y2 = p.Y2, p.Y1
+			}
+		}
+		w.probe(at.applyBox(p), uint32(f.total)+uint32(i))
+	}
+	b.opt.stage("sort")
+	sets := union(b.l.nodeOf.Data)
+	if b.joined {
+		sets = nil
+	}
+	b.sorted = dropCopies(sortItems(b.items.Data[:w.nItem], b.scratch.Data[:w.nItem], b.jobs), sets, uint32(f.total), b.l.keptTags())
+	return nil
+}
+
+// probe emits the item of a probe, cut to what 32 bits hold.
+func (w *flattener) probe(b Box, id uint32) {
+	b = Box{max(b.X1, math.MinInt32), max(b.Y1, math.MinInt32), min(b.X2, math.MaxInt32), min(b.Y2, math.MaxInt32)}
+	if b.X1 <= b.X2 && b.Y1 <= b.Y2 {
+		w.rectangle(b, id)
+	}
+}
+
+// dropCopies drops rectangles that are exact copies of one before them and joins the two figures. Copies stand side by side, or among
+// the few that share a corner. With no sets the figures are joined already.
+// tags tell, where not nil, what arrived on a mask: only figures with equal tags are copies.
+func dropCopies(items []item, sets union, figures uint32, tags []uint8) []item {
+	kept := items[:0]
+	begin := 0 // of the kept items that share the corner at hand
+next:
+	for _, it := range items {
+		if begin < len(kept) && (kept[begin].Y1 != it.Y1 || kept[begin].X1 != it.X1) {
+			begin = len(kept)
+		}
+		if it.ID < figures { // neither a band nor a probe
+			for k := len(kept) - 1; k >= max(begin, len(kept)-8); k-- {
+				if q := &kept[k]; q.X2 == it.X2 && q.Y2 == it.Y2 && q.ID < figures && (tags == nil || tags[q.ID] == tags[it.ID]) {
+					if sets != nil && q.ID != it.ID {
+						sets.join(q.ID, it.ID)
+					}
+					continue next
+				}
+			}
+		}
+		kept = append(kept, it)
+	}
+	return kept
+}
+
+// search sweeps the window at hand.
+func (b *builder) search(sets union, win window) error {
+	scale := b.l.flat.forms.scale
+	s := &sweep{items: b.sorted, bands: b.bands.Data, polygons: b.polygons, spacing: b.l.rules.Reach() * scale,
+		anyMask: b.l.rules.AnyMask * scale, figures: uint32(b.l.flat.total), tags: b.l.keptTags()}
+	sinks, err := s.run(b.ctx, sets, b.jobs, &b.limit)
+	if err == errTooManyPairs {
+		return &LimitError{Msg: fmt.Sprintf("layer %s: so many figures are nearer to each other than %d database units that their pairs do not fit --memory; check the spacing, or allow more memory",
+			b.l.rules.Name, b.l.rules.Reach())}
+	}
+	if err != nil {
+		return err
+	}
+	for i := range sinks {
+		for _, h := range sinks[i].hits {
+			b.l.hits = append(b.l.hits, ProbeHit{h.probe, h.figure})
+		}
+		sinks[i].hits = nil
+	}
+	b.sinks = append(b.sinks, sinks...)
+	return nil
+}
+
+// point makes each ordinal of a range point straight at its root, which is never greater.
+func (u union) point(from, to uint32) {
+	for i := from; i < to; i++ {
+		u[i] = u[u[i]]
+	}
+}
+
+// numbered marks an entry that is the number of a shape, not an ordinal.
+const numbered = 1 << 31
+
+// settle replaces the entries of a range by the numbers of their shapes.
+func (u union) settle(from, to uint32) {
+	for i := from; i < to; i++ {
+		if u[i]&numbered == 0 {
+			u[i] = u[u[i]]
+		}
+	}
+	for i := from; i < to; i++ {
+		u[i] &^= numbered
+	}
+}
+
+// ordinal gives the flat figure of an item; false for a probe.
+func (b *builder) ordinal(it *item) (uint32, bool) {
+	id := it.ID
+	if isBand(id) {
+		id = b.bands.Data[id&^bandBit].ordinal
+	}
+	return id, id < uint32(b.l.flat.total)
+}
+
+// numberShapes numbers the shapes of the window at hand that have no number yet.
+func (b *builder) numberShapes(sets union, shapes uint32) uint32 {
+	for i := range b.sorted {
+		o, ok := b.ordinal(&b.sorted[i])
+		if !ok {
+			continue
+		}
+		root := sets[o]
+		if root&numbered != 0 {
+			continue
+		}
+		if sets[root]&numbered == 0 {
+			sets[root] = shapes | numbered
+			shapes++
+		}
+	}
+	return shapes
+}
+
+// measure adds up the merged area of the shapes with numbers from begin to end.
+func (b *builder) measure(begin, end uint32) {
+	count := arena.New[uint32](int(end-begin) + 1)
+	defer count.Free()
+	n := count.Data
+	slanted := map[uint32]*geom.Parts{}
+	node := b.l.nodeOf.Data
+	for i := range b.sorted {
+		it := &b.sorted[i]
+		o, ok := b.ordinal(it)
+		if !ok {
+			continue
+		}
+		n[node[o]-begin]++
+		if isBand(it.ID) && slanted[node[o]] == nil {
+			slanted[node[o]] = &geom.Parts{}
+		}
+	}
+	// Shapes of several rectangles are gathered in the scratch array, each in a stretch of its own.
+	at := uint32(0)
+	for k := range n {
+		if n[k] > 1 {
+			n[k], at = at, at+n[k]
+		} else {
+			n[k] = math.MaxUint32
+		}
+	}
+	group := make([]geom.Rect32, at)
+	for i := range b.sorted {
+		it := &b.sorted[i]
+		o, ok := b.ordinal(it)
+		if !ok {
+			continue
+		}
+		k := node[o] - begin
+		switch {
+		case len(slanted) > 0 && slanted[node[o]] != nil:
+			parts := slanted[node[o]]
+			if !isBand(it.ID) {
+				parts.Rects = append(parts.Rects, it.rect())
+			} else if bd := &b.bands.Data[it.ID&^bandBit]; bd.number == 0 {
+				parts.Polygons = append(parts.Polygons, geom.Placed{Polygon: b.polygons[bd.polygon], At: bd.at})
+			}
+		case n[k] == math.MaxUint32:
+			b.l.area[node[o]] += float64(int64(it.X2)-int64(it.X1)) * float64(int64(it.Y2)-int64(it.Y1))
+			continue
+		}
+		if n[k] != math.MaxUint32 {
+			group[n[k]] = geom.Rect32{X1: it.X1, Y1: it.Y1, X2: it.X2, Y2: it.Y2}
+			n[k]++
+		}
+	}
+	from := uint32(0)
+	for k := range n {
+		if n[k] == math.MaxUint32 {
+			continue
+		}
+		shape := begin + uint32(k)
+		if slanted[shape] == nil {
+			b.l.area[shape] += float64(b.areas.UnionArea32(group[from:n[k]]))
+		}
+		from = n[k]
+	}
+	for shape, parts := range slanted {
+		b.l.area[shape] += geom.UnionAreaPolygons(*parts)
+	}
+}

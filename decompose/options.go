@@ -1,0 +1,33 @@
+package decompose
+
+import "runtime"
+
+// Options say how a run is done. They change neither masks nor bytes.
+type Options struct {
+	Jobs   int               // workers; 0: as many as processors
+	Memory int64             // bytes that the run may use; 0: no limit of its own
+	Top    string            // take this structure alone; "": all tops
+	Stage  func(name string) // told when a stage begins, possibly again; may be nil
+}
+
+func (o *Options) jobs() int {
+	if o.Jobs > 0 {
+		return o.Jobs
+	}
+	return runtime.GOMAXPROCS(0)
+}
+
+// mostPairs is how many near pairs of flat figures a layer may keep.
+func (o *Options) mostPairs() int64 {
+	const bytesPerPair = 20 // packed, then sorted under nodes
+	if o.Memory > 0 {
+		return max(o.Memory/bytesPerPair, 1<<16)
+	}
+	return 1<<32 - 1<<20
+}
+
+func (o *Options) stage(name string) {
+	if o.Stage != nil {
+		o.Stage(name)
+	}
+}

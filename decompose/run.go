@@ -1,0 +1,209 @@
+package decompose
+
+import (
+	"context"
+	"fmt"
+	"io"
+	"slices"
+
+	"maskpair/gds"
+)
+
+// Run is one decomposition, stage by stage: New reads the hierarchy, Decompose assigns masks, Write copies the stream.
+type Run struct {
+	lib      *gds.Library
+	rules    *Rules
+	opt      Options
+	classes  *classes
+	h        *hierarchy
+	layers   []*layout
+	masks    [][]uint8
+	assigned []*assignment
+	marks    map[string][]markBox // by top
+	result   Result
+	// Warnings are remarks for the user, one line each; they are not part of the result.
+	Warnings []string
+}
+
+// Orderer says what the user, the layout and an earlier result order. Package anchor implements it.
+type Orderer interface {
+	// Probes gives the boxes that look for shapes of a deck layer.
+	Probes(layer int, v *View) ([]Probe, error)
+	// Orders turns what the probes hit into orders; it is called once the shapes of the layer are known.
+	Orders(layer int, v *View) (*Orders, error)
+}
+
+// New prepares a run. The library must have been indexed with the deck's Interest.
+func New(lib *gds.Library, rules *Rules, opt Options) (*Run, error) {
+	c, err := newClasses(rules)
+	if err != nil {
+		return nil, err
+	}
+	h, err := newHierarchy(lib, opt.Top)
+	if err != nil {
+		return nil, err
+	}
+	if err := checkMarks(lib, c, rules); err != nil {
+		return nil, err
+	}
+	r := &Run{lib: lib, rules: rules, opt: opt, classes: c, h: h, marks: map[string][]markBox{}}
+	for _, i := range h.byName {
+		r.result.Tops = append(r.result.Tops, h.name(h.tops[i]))
+	}
+	r.warnMissing()
+	return r, nil
+}
+
+// warnMissing tells of what the stream lacks or has where no figure can be.
+func (r *Run) warnMissing() {
+	for _, name := range r.lib.Missing {
+		r.warn("structure %s is placed but not in the stream; its references stay as they are", name)
+	}
+	layers := make([]gds.LayerType, 0, len(r.lib.Boxes))
+	for l := range r.lib.Boxes {
+		layers = append(layers, l)
+	}
+	slices.SortFunc(layers, func(a, b gds.LayerType) int {
+		return int(a.Layer)<<16 + int(a.Type) - int(b.Layer)<<16 - int(b.Type)
+	})
+	for _, l := range layers {
+		if k := r.classes.interest.Figures[l]; k != 0 {
+			for _, cr := range r.classes.roles[k] {
+				if cr.role == roleDrawn {
+					r.warn("%d BOX elements on the drawn layer %d/%d are no figures and stay as they are", r.lib.Boxes[l], l.Layer, l.Type)
+				}
+			}
+		}
+	}
+}
+
+func (r *Run) warn(format string, args ...any) {
+	r.Warnings = append(r.Warnings, fmt.Sprintf(format, args...))
+}
+
+// Decompose assigns masks in all deck layers. The result is complete when it returns.
+func (r *Run) Decompose(ctx context.Context, orders Orderer) (*Result, error) {
+	for i := range r.rules.Layers {
+		if err := r.layer(ctx, i, orders); err != nil {
+			return nil, err
+		}
+	}
+	return &r.result, nil
+}
+
+// Close gives back the memory of the run. The result stays.
+func (r *Run) Close() {
+	for _, l := range r.layers {
+		l.free()
+	}
+	for _, a := range r.assigned {
+		a.release()
+	}
+	r.layers, r.assigned, r.masks = nil, nil, nil
+}
+
+func (r *Run) layer(ctx context.Context, i int, orders Orderer) error {
+	rules := &r.rules.Layers[i]
+	v := &View{run: r, layer: i}
+	var probes []Probe
+	if orders != nil {
+		var err error
+		if probes, err = orders.Probes(i, v); err != nil {
+			return err
+		}
+	}
+	l, err := newLayout(ctx, r.h, r.classes.selectLayer(i), rules, i, probes, &r.opt)
+	if err != nil {
+		return err
+	}
+	r.layers = append(r.layers, l)
+	v.layout = l
+	r.opt.stage("solve")
+	o := &Orders{}
+	if orders != nil {
+		if o, err = orders.Orders(i, v); err != nil {
+			return err
+		}
+	}
+	if err := o.contradiction(l.nodes); err != nil {
+		return err
+	}
+	a := l.assign(o)
+	r.assigned = append(r.assigned, a)
+	s := newSolver(l, a, o)
+	if err := s.solve(ctx, r.opt.jobs()); err != nil {
+		return err
+	}
+	r.opt.stage("choose")
+	l.deal(a)
+	r.masks = append(r.masks, a.mask.Data)
+	r.opt.stage("report")
+	res := r.summarise(l, a, o)
+	if err := s.explain(ctx, &res); err != nil {
+		return err
+	}
+	r.mark(&res)
+	r.result.Layers = append(r.result.Layers, res)
+	return ctx.Err()
+}
+
+// summarise counts what a layer came to, but for what is unresolved.
+func (r *Run) summarise(l *layout, a *assignment, o *Orders) LayerResult {
+	res := LayerResult{Name: l.rules.Name, Spacing: l.rules.Spacing, RoundedFigures: l.flat.rounded, Shapes: int64(l.shapes),
+		NearPairs: l.near.pairs, Components: int64(a.components), AnyMaskPairs: l.near.tooNear, ProvedOptimal: true}
+	var by [4]int64
+	for _, s := range r.h.bottom {
+		l.flat.ownFigures(s, func(_, figure uint32) {
+			by[l.flat.sel.tag[r.lib.Figures[figure].Class]] += int64(r.h.placed[s])
+		})
+	}
+	res.Figures, res.AlreadyMaskedFigures = by[drawn], by[onA]+by[onB]
+	if res.Figures+res.AlreadyMaskedFigures == 0 {
+		r.warn("layer %s: no figure on its drawn layers; check the layer numbers in the deck", l.rules.Name)
+	}
+	if l.flat.withoutArea > 0 {
+		r.warn("layer %s: %d drawn elements cover no area; they stay as they are and are not counted", l.rules.Name, l.flat.withoutArea)
+	}
+	unit := float64(l.flat.forms.scale * l.flat.forms.scale)
+	for u, area := range l.area {
+		if a.mask.Data[u] == 0 {
+			res.AreaA += area
+		} else {
+			res.AreaB += area
+		}
+	}
+	res.AreaA /= unit
+	res.AreaB /= unit
+	anchored := map[uint32]bool{}
+	for _, an := range o.Anchors {
+		anchored[l.shapeOf(an.Node)] = true
+	}
+	res.AnchoredShapes = int64(len(anchored))
+	for u, m := range o.Memory {
+		if m != NoMemory {
+			res.BaselineShapes++
+			if a.mask.Data[u] != m-1 {
+				res.MovedShapes++
+			}
+		}
+	}
+	for _, w := range o.Wishes {
+		res.Wishes++
+		if a.mask.Data[w.Node] == uint8(w.Mask) {
+			res.WishesKept++
+		}
+	}
+	if l.given != nil {
+		res.Stitches = l.given.laps
+	}
+	return res
+}
+
+// Write copies the stream with every figure on its mask.
+func (r *Run) Write(ctx context.Context, dst io.Writer, src io.ReaderAt, progress func(int64)) error {
+	r.opt.stage("variants")
+	v := newVariants(r.h, r.layers, r.masks)
+	p := newOutputPlan(r.rules, r.classes, v, r.opt.Top, r.tails())
+	r.opt.stage("write")
+	return gds.CopyStream(dst, src, r.lib, r.classes.interest, p.plan(), progress)
+}
