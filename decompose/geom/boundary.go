@@ -47,10 +47,9 @@ func sameLine(e, f edge) int {
 	return Orient(e.a, e.b, f.a)
 }
 
-// boundary gives the edges of an outline that count, in no particular order, and whether they are still the closed line as
-// drawn (apart from repeated points).
-func boundary(outline []Point, fill Fill) (edges []edge, asDrawn bool) {
-	edges = make([]edge, 0, len(outline))
+// directed gives the edges of an outline as it is drawn, apart from repeated points.
+func directed(outline []Point) []edge {
+	edges := make([]edge, 0, len(outline))
 	for i, q := range outline {
 		p := outline[len(outline)-1]
 		if i > 0 {
@@ -63,6 +62,58 @@ func boundary(outline []Point, fill Fill) (edges []edge, asDrawn bool) {
 			edges = append(edges, edge{q, p, -1})
 		}
 	}
+	return edges
+}
+
+// convexTwice tells whether an outline is convex, and gives twice its area. It is if it always turns the same way, never
+// right round, and goes up and down once: then it winds once around what it encloses. Straight points are allowed.
+//
+// The area is summed by the shoelace formula about the first point: at most 2^72 for a convex figure in the plane, and
+// less for each part of the sum.
+func convexTwice(outline []Point) (twice int128, ok bool) {
+	n := len(outline)
+	for n > 1 && outline[n-1] == outline[0] {
+		n--
+	}
+	if n < 3 {
+		return int128{}, false
+	}
+	o := outline[0]
+	p, q := outline[n-2], outline[n-1]
+	way, flips := 0, 0
+	var rise int64
+	for first := n - 1; first > 0 && rise == 0; first-- {
+		rise = sign(outline[first].Y - outline[first-1].Y)
+	}
+	if d := sign(o.Y - q.Y); d != 0 {
+		rise = d
+	}
+	for _, r := range outline[:n] {
+		ax, ay, bx, by := q.X-p.X, q.Y-p.Y, r.X-q.X, r.Y-q.Y
+		if bx == 0 && by == 0 {
+			continue
+		}
+		turn := crossSign(ax, ay, bx, by)
+		if turn == 0 && (sign(ax) != sign(bx) || sign(ay) != sign(by)) || turn*way < 0 {
+			return int128{}, false
+		}
+		if turn != 0 {
+			way = turn
+		}
+		if d := sign(r.Y - q.Y); d != 0 && d != rise {
+			rise = d
+			flips++
+		}
+		twice = twice.add(mul(q.X-o.X, r.Y-o.Y).sub(mul(q.Y-o.Y, r.X-o.X)))
+		p, q = q, r
+	}
+	return twice.abs(), way != 0 && flips <= 2
+}
+
+// boundary gives the edges of an outline that count, in no particular order, and whether they are still the closed line as
+// drawn (apart from repeated points).
+func boundary(outline []Point, fill Fill) (edges []edge, asDrawn bool) {
+	edges = directed(outline)
 	slices.SortFunc(edges, alongLine)
 	if fill == EvenOdd {
 		for i := range edges {

@@ -5,6 +5,7 @@ import (
 	"math"
 	"math/bits"
 	"slices"
+	"sync"
 )
 
 // This file cuts an any-angle figure into bands. Slabs across the longer axis of its box cut it; in each slab the edges
@@ -19,7 +20,7 @@ import (
 // within about n log n.
 
 // Polygon is a figure with edges at any angle, in local coordinates. It does not change once made, and any number of
-// goroutines may read it.
+// goroutines may use it.
 type Polygon struct {
 	fill    Fill
 	swapped bool // x and y change places inside: the slabs are upright
@@ -28,6 +29,8 @@ type Polygon struct {
 	lists   []int32 // indices into edges
 	within  []Point // a point of each connected part of the boundary
 	box     Rect
+	twice   float64 // twice the area of a convex figure, else below 0 until measured
+	measure sync.Once
 }
 
 // Band is a part of a polygon: all of it within Box, local coordinates.
@@ -50,17 +53,32 @@ func NewPolygon(outline []Point, fill Fill) *Polygon {
 		}
 		outline = turned
 	}
-	edges, asDrawn := boundary(outline, fill)
+	asDrawn := true
+	if twice, convex := convexTwice(outline); convex { // nothing overlaps
+		p.edges, p.twice = directed(outline), twice.float()
+	} else {
+		p.edges, asDrawn = boundary(outline, fill)
+		p.twice = -1
+	}
+	edges := p.edges
 	if len(edges) == 0 {
 		return p
 	}
-	p.edges = edges
 	box := Rect{edges[0].a.X, edges[0].a.Y, edges[0].a.X, edges[0].a.Y}
 	for _, e := range edges {
 		box = box.Union(Rect{min(e.a.X, e.b.X), e.a.Y, max(e.a.X, e.b.X), e.b.Y})
 	}
 	p.box = p.swap(box)
 	cuts := slabs(edges, box, outline)
+	if len(cuts) == 2 && p.twice >= 0 { // a convex figure as one band
+		p.lists = make([]int32, len(edges))
+		for i := range p.lists {
+			p.lists[i] = int32(i)
+		}
+		p.within = []Point{edges[0].a}
+		p.bands = []Band{{p.box, 0, int32(len(edges)), 0, 1}}
+		return p
+	}
 	starts := p.cut(cuts)
 	p.spread(p.parts(asDrawn), cuts, starts)
 	return p
@@ -110,11 +128,6 @@ func (p *Polygon) frame(t Placement) Placement {
 func slabs(edges []edge, box Rect, outline []Point) []int64 {
 	const mostEven = 128
 	n := len(edges)
-	ys := make([]int64, 0, 2*n)
-	for _, e := range edges {
-		ys = append(ys, e.a.Y, e.b.Y)
-	}
-	slices.Sort(ys)
 	byVertex := min(n/8, 8+2*int(math.Sqrt(float64(n))))
 	var twice float64 // signed area; only a guess where the outline crosses itself
 	o := outline[0]
@@ -125,6 +138,14 @@ func slabs(edges []edge, box Rect, outline []Point) []int64 {
 	width, height := float64(box.X2-box.X1), box.Y2-box.Y1
 	even := int(min(width*float64(height)/max(math.Abs(twice)*2, 1), mostEven))
 	even = int(min(int64(even), height))
+	if byVertex < 2 && even < 2 {
+		return []int64{box.Y1, box.Y2}
+	}
+	ys := make([]int64, 0, 2*n)
+	for _, e := range edges {
+		ys = append(ys, e.a.Y, e.b.Y)
+	}
+	slices.Sort(ys)
 	for {
 		cuts := []int64{box.Y1, box.Y2}
 		for k := 1; k < byVertex; k++ {

@@ -32,12 +32,24 @@ type Parts struct {
 
 // Area is the filled area in square units; its relative error is at most 1e-12.
 func (p *Polygon) Area() float64 {
-	return UnionAreaPolygons(Parts{Polygons: []Placed{{Polygon: p}}})
+	p.measure.Do(func() {
+		if p.twice < 0 {
+			var sum double
+			for _, c := range clusters(Parts{Polygons: []Placed{{Polygon: p}}}) {
+				sum = sum.plus(c.area())
+			}
+			p.twice = 2 * sum.hi
+		}
+	})
+	return p.twice / 2
 }
 
 // UnionAreaPolygons is the area in square units that the parts cover together. It is exact for rectangles, but for the
 // rounding to a float; with polygons its relative error is at most 1e-12.
 func UnionAreaPolygons(parts Parts) float64 {
+	if len(parts.Polygons) == 1 && len(parts.Rects) == 0 {
+		return parts.Polygons[0].Polygon.Area()
+	}
 	var s AreaScratch
 	sum := double{hi: s.UnionArea(parts.Rects).Float()}
 	for _, c := range clusters(parts) {
@@ -67,11 +79,11 @@ func whole(v int64) double { return double{hi: float64(v)} }
 // cluster is what one scan measures: polygons, and rectangles whose area is counted already.
 type cluster struct {
 	lines   []line
-	evenOdd []bool  // by figure
-	counted []bool  // by figure: a rectangle
-	wind    []int32 // by figure, during a walk
-	over    int32   // polygons that cover the place of the walk
-	barred  int32   // rectangles that do
+	evenOdd []bool   // by figure
+	counted []bool   // by figure: a rectangle
+	wind    []int32  // by figure, during a walk
+	over    int32    // polygons that cover the place of the walk
+	barred  int32    // rectangles that do
 	ends    []double // by line of a slab: leftmost way out from here on
 	sum     double
 }
