@@ -174,7 +174,7 @@ func (r *reducer) clean(v int32) {
 		}
 		r.state[v] &^= twofold
 	}
-	size := int32(0)
+	size, kept := int32(0), v
 	for c := v; c >= 0; c = r.row[c].next {
 		span := &r.row[c]
 		at := span.start
@@ -190,7 +190,14 @@ func (r *reducer) clean(v int32) {
 		}
 		span.end = at
 		size += at - span.start
+		if at > span.start && c != v {
+			// Empty rows drop out of the chain, or a node into which thousands have been merged would get slow.
+			r.row[kept].next = c
+			kept = c
+		}
 	}
+	r.row[kept].next = -1
+	r.last[v] = kept
 	r.size[v] = size
 	r.fresh[v] = 0
 }
