@@ -1,6 +1,9 @@
 package geom
 
-import "math"
+import (
+	"math"
+	"slices"
+)
 
 // This file turns the centre line of a path into its outline. What GDSII leaves open about joins (the manual draws square
 // ones) is taken as a widely used open reader draws it, gdspy 1.4 with corners="natural", so that independent checks see
@@ -105,6 +108,7 @@ func withoutRepeats(line []Point) []Point {
 // squareOutline is the outline along a Manhattan centre line, in integers.
 func squareOutline(dst []Point, centre []Point, half int64, end PathEnd) []Point {
 	n := len(centre)
+	dst = slices.Grow(dst, 2*n+2)
 	if n == 1 {
 		p := centre[0]
 		return append(dst, Point{p.X - half, p.Y - half}, Point{p.X + half, p.Y - half}, Point{p.X + half, p.Y + half}, Point{p.X - half, p.Y + half})

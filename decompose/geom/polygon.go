@@ -17,7 +17,7 @@ import (
 //   - left of a band the slab is empty, so the winding number of a point in the box is that of the band's own edges.
 //
 // Long edges are listed in every slab that they cross; the number of slabs is held down so that all lists together stay
-// within about n log n.
+// within a few times n.
 
 // Polygon is a figure with edges at any angle, in local coordinates. It does not change once made, and any number of
 // goroutines may use it.
@@ -160,7 +160,7 @@ func slabs(edges []edge, box Rect, outline []Point) []int64 {
 			low, high := slabRange(cuts, e)
 			listed += high - low + 1
 		}
-		if listed <= n*(4+bits.Len(uint(n)))+4*mostEven || len(cuts) == 2 {
+		if listed <= 4*n+4*mostEven || len(cuts) == 2 {
 			return cuts
 		}
 		byVertex, even = byVertex/2, even/2

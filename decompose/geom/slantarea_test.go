@@ -151,6 +151,11 @@ func TestAreaOfKnownFigures(t *testing.T) {
 		if got := UnionAreaPolygons(c.parts); math.Abs(got-c.want) > 1e-12*c.want {
 			t.Errorf("%s: %v, want %v", c.name, got, c.want)
 		}
+		// the same again, which takes the scan also for what is measured at once alone
+		c.parts.Polygons = append(c.parts.Polygons, c.parts.Polygons...)
+		if got := UnionAreaPolygons(c.parts); math.Abs(got-c.want) > 1e-12*c.want {
+			t.Errorf("%s, twice: %v, want %v", c.name, got, c.want)
+		}
 	}
 	if got := round.Area(); math.Abs(got-disc2/2) > 1e-12*got {
 		t.Errorf("Area of the disc: %v, want %v", got, disc2/2)

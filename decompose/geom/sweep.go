@@ -47,6 +47,7 @@ func (s *sweep) addOutline(outline []Point, transposed bool) bool {
 	if len(outline) == 0 {
 		return true
 	}
+	s.uprights = slices.Grow(s.uprights, len(outline)/2+1)
 	p := outline[len(outline)-1]
 	for _, q := range outline {
 		if p.X != q.X && p.Y != q.Y {
@@ -85,6 +86,7 @@ func (s *sweep) start(fill Fill) {
 	if fill == EvenOdd {
 		s.mask = 1
 	}
+	s.xs, s.turns = slices.Grow(s.xs, len(s.uprights)), slices.Grow(s.turns, 2*len(s.uprights))
 	for _, u := range s.uprights {
 		s.xs = append(s.xs, u.x)
 	}
