@@ -37,6 +37,8 @@ func TestPathOutlineByHand(t *testing.T) {
 		{"3-4-5: slanted and whole", []Point{{0, 0}, {300, 400}}, 20, PathEnd{}, []Point{{308, 394}, {292, 406}, {-8, 6}, {8, -6}}, false},
 		{"3-4-5 with odd half units", []Point{{0, 0}, {300, 400}}, 10, PathEnd{}, []Point{{304, 397}, {296, 403}, {-4, 3}, {4, -3}}, false},
 		{"3-4-5, a square turn", []Point{{0, 0}, {300, 400}, {-100, 700}}, 20, PathEnd{}, []Point{{314, 402}, {-94, 708}, {-106, 692}, {286, 398}, {-8, 6}, {8, -6}}, false},
+		{"3-4-5, right round", []Point{{0, 0}, {300, 400}, {150, 200}}, 20, PathEnd{},
+			[]Point{{308, 394}, {292, 406}, {142, 206}, {158, 194}, {308, 394}, {292, 406}, {-8, 6}, {8, -6}}, false},
 		{"45 degrees: 7.07 to the nearest whole unit", []Point{{0, 0}, {100, 100}}, 20, PathEnd{}, []Point{{108, 92}, {92, 108}, {-8, 8}, {8, -8}}, true},
 		{"45 degrees from odd half units: 1 + 7.07", []Point{{1, 1}, {101, 101}}, 20, PathEnd{}, []Point{{108, 94}, {94, 108}, {-6, 8}, {8, -6}}, true},
 		{"a bend by 45 degrees: 10 tan 22.5 = 4.14", bend, 20, PathEnd{}, []Point{{104, -10}, {208, 92}, {192, 108}, {96, 10}, {0, 10}, {0, -10}}, true},

@@ -379,6 +379,42 @@ func TestPolygonForgetsEmptyEdges(t *testing.T) {
 	}
 }
 
+// The edges of a lying triangle, whichever way they are kept, and whatever is drawn besides.
+func TestPolygonEdges(t *testing.T) {
+	for _, turn := range []uint8{0, 1} {
+		at := Placement{Turn: turn}
+		p := NewPolygon(placedPoints(at, []Point{{0, 0}, {60, 0}, {90, 0}, {60, 0}, {0, 30}}), EvenOdd)
+		got := map[[2]Point]bool{}
+		for a, b := range p.Edges {
+			got[[2]Point{a, b}] = true
+			got[[2]Point{b, a}] = true
+		}
+		corners := placedPoints(at, []Point{{0, 0}, {60, 0}, {0, 30}})
+		for i, c := range corners {
+			if !got[[2]Point{c, corners[(i+1)%3]}] {
+				t.Errorf("turn %d: no edge from %v: %v", turn, c, got)
+			}
+		}
+		if len(got) != 6 {
+			t.Errorf("turn %d: %d edges", turn, len(got)/2)
+		}
+	}
+}
+
+// Bands that are far apart need no edges.
+func TestBandsFarApart(t *testing.T) {
+	p := NewPolygon(ring(8, 100, 0)[:9], EvenOdd)
+	if got := BandRelation(p, 0, Placement{}, p, 0, Placement{X: 300}, 100); got != Far {
+		t.Errorf("boxes 100 apart, spacing 100: %d", got)
+	}
+	if got := BandRectRelation(p, 0, Placement{}, Rect{200, -5, 210, 5}, 100); got != Far {
+		t.Errorf("a rectangle 100 apart, spacing 100: %d", got)
+	}
+	if got := BandRectRelation(p, 0, Placement{}, Rect{200, -5, 210, 5}, 101); got != Near {
+		t.Errorf("a rectangle 100 apart, spacing 101: %d", got)
+	}
+}
+
 // A ring that embraces everything has small boxes, and about as many entries as points.
 func TestBandsAreSmall(t *testing.T) {
 	for _, c := range []struct {
