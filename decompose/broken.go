@@ -20,14 +20,18 @@ type brokenGroup struct {
 	nodes       []uint32 // canonical order
 	first, last uint32   // least and greatest ordinal
 	canon       canon
-	edges       []exact.Edge // near pairs by place in nodes, ascending
-	waived      []bool       // by edge
-	problem     *exact.Problem
-	rep         []int32 // by node, where ties merge nodes: node of the problem; else nil
-	flip        []uint8 // by node, with rep: on the other mask than that
+	edges       []exact.Edge   // near pairs by place in nodes, ascending
+	waived      []bool         // by edge
+	problem     *exact.Problem // to be solved next
+	weighed     *exact.Problem // with the aims that count
+	rep         []int32        // by node, where ties merge nodes: node of the problem; else nil
+	flip        []uint8        // by node, with rep: on the other mask than that
 	units       units
-	same        int // index of the group whose problem is the same, possibly its own
-	solution    exact.Solution
+	same        int            // index of the group whose problem is the same, possibly its own
+	solution    exact.Solution // of weighed
+	homing      bool           // solved again, nearest to the usual masks
+	homeUnit    int64          // by which the aims that count are weighed then
+	near        exact.Solution
 }
 
 // units are the weights of one group.
@@ -101,6 +105,7 @@ func (s *solver) solve(ctx context.Context, jobs int) error {
 	for i := range s.groups {
 		b := &s.groups[i]
 		b.solution = s.groups[b.same].solution
+		b.weighed = b.problem
 		for k, u := range b.nodes {
 			s.a.mask.Data[u] = b.mask(b.solution.Masks, k)
 		}

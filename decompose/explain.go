@@ -214,7 +214,7 @@ func (e *explainer) part(b *brokenGroup, nodes []int32, masks []uint8) *componen
 	near := newParity(make([]uint32, len(nodes)))
 	reps := len(nodes)
 	if b.rep != nil {
-		reps = b.problem.Nodes
+		reps = b.weighed.Nodes
 	}
 	orders := newParity(make([]uint32, reps+1)) // the last is mask A
 	held := func(i int) (uint32, uint32) {
@@ -226,12 +226,12 @@ func (e *explainer) part(b *brokenGroup, nodes []int32, masks []uint8) *componen
 	for i, k := range nodes {
 		rep, flip := held(i)
 		f := int8(-1)
-		if b.problem.Fixed != nil {
+		if b.weighed.Fixed != nil {
 			if b.rep != nil {
-				f = b.problem.Fixed[rep]
+				f = b.weighed.Fixed[rep]
 				flip = 0
 			} else {
-				f = b.problem.Fixed[k]
+				f = b.weighed.Fixed[k]
 			}
 		}
 		if f >= 0 {
@@ -343,12 +343,12 @@ func (p *componentPart) clash(b *brokenGroup) []int32 {
 	fixed := make([]int8, n)
 	for i, k := range p.nodes {
 		fixed[i] = -1
-		if b.problem.Fixed == nil {
+		if b.weighed.Fixed == nil {
 			continue
 		}
 		if b.rep == nil {
-			fixed[i] = b.problem.Fixed[k]
-		} else if f := b.problem.Fixed[b.rep[k]]; f >= 0 {
+			fixed[i] = b.weighed.Fixed[k]
+		} else if f := b.weighed.Fixed[b.rep[k]]; f >= 0 {
 			fixed[i] = f ^ int8(b.flip[k])
 		}
 	}

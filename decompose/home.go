@@ -2,6 +2,7 @@ package decompose
 
 import (
 	"cmp"
+	"context"
 	"math"
 	"math/bits"
 	"slices"
@@ -17,21 +18,80 @@ import (
 // Nothing here looks at the order of elements or structures in the file, or at chance: drawn figures are told by what they are (the
 // name of the structure, layer and outline), classes by the figures in them, groups by their place.
 
-// deal turns the free groups of a layout.
-func (l *layout) deal(a *assignment) {
-	delta := l.deltas(a)
-	d := &dealer{l: l, a: a, delta: delta}
+// deal turns the free groups of a layout, and chooses among the solutions of broken ones.
+func (l *layout) deal(ctx context.Context, a *assignment, s *solver, jobs int) error {
+	d := &dealer{l: l, a: a}
+	shared := d.hashFigures()
+	d.turn(shared)
+	if !shared || len(s.groups) == 0 {
+		return nil
+	}
+	best, bestCost := slices.Clone(a.mask.Data), d.cost()
+	bias := 0.0
+	for range solveRounds {
+		if err := s.solveNear(ctx, d, d.usualMasks(), bias, jobs); err != nil {
+			return err
+		}
+		d.turn(shared)
+		if cost := d.cost(); cost < bestCost {
+			bestCost = cost
+			copy(best, a.mask.Data)
+		}
+		bias += leanStep * d.imbalance()
+	}
+	copy(a.mask.Data, best)
+	return nil
+}
+
+// cost says how dear an assignment is: the bytes of the structures and their variants, raised by what the masks' areas differ by beyond
+// two hundredths.
+func (d *dealer) cost() float64 {
+	v := newVariants(d.l.flat.h, []*layout{d.l}, [][]uint8{d.a.mask.Data})
+	bytes := 0.0
+	for s := range v.tables {
+		st := &d.l.flat.lib.Structures[s]
+		bytes += float64(max(1, v.tables[s].ways())) * float64(st.End-st.Begin)
+	}
+	return bytes * (1 + 10*max(0, math.Abs(d.imbalance())-0.02))
+}
+
+// solveRounds is how often broken groups are solved again for the sake of few variants.
+const solveRounds = 3
+
+// leanStep is by how many figures away from home a node may cost more on a mask that is fuller by the whole area.
+const leanStep = 64
+
+// imbalance gives the area on A less that on B, as a share of the whole.
+func (d *dealer) imbalance() float64 {
+	difference, total := 0.0, 0.0
+	for u, area := range d.l.area {
+		total += area
+		if d.a.mask.Data[u] == 0 {
+			difference += area
+		} else {
+			difference -= area
+		}
+	}
+	return difference / max(total, 1)
+}
+
+// turn turns the free groups as they are assigned now.
+func (d *dealer) turn(shared bool) {
+	a := d.a
+	d.delta = d.l.deltas(a)
+	d.classes = nil
 	turn := make([]bool, a.groups)
 	settled := make([]bool, a.groups)
 	for g, free := range a.free {
 		settled[g] = !free
 	}
-	if d.hashFigures() {
+	if shared {
 		d.hashGroups()
 		d.makeClasses()
 		d.fillClasses()
 		d.turnClasses()
 		d.turnGroups(turn, settled)
+		d.descend(turn)
 	}
 	d.balance(turn, settled)
 	a.turnOver(func(g uint32) bool { return turn[g] })
@@ -62,6 +122,7 @@ type dealer struct {
 	classOf []int32  // by group; -1: no shared figures
 	classes []class
 	homes   map[uint32]int8 // by figure: +1 A, -1 B
+	now     []float64       // by class: area on A less that on B, before the descent
 }
 
 // class is a set of groups with the same shared figures on the same relative masks.
@@ -236,15 +297,7 @@ const homeRounds = 8
 
 // turnClasses deals homes and turns the classes, those with most area at stake first.
 func (d *dealer) turnClasses() {
-	order := make([]int32, len(d.classes))
-	for i := range order {
-		order[i] = int32(i)
-	}
-	slices.SortFunc(order, func(i, j int32) int {
-		a, b := &d.classes[i], &d.classes[j]
-		return cmp.Or(-cmp.Compare(boolInt(a.fixed), boolInt(b.fixed)), -cmp.Compare(math.Abs(a.delta), math.Abs(b.delta)),
-			-cmp.Compare(a.count, b.count), cmp.Compare(a.low, b.low), cmp.Compare(a.high, b.high))
-	})
+	order := d.classOrder()
 	d.homes = map[uint32]int8{}
 	imbalance := 0.0
 	for g, x := range d.delta {
@@ -293,6 +346,44 @@ func (d *dealer) turnClasses() {
 			break
 		}
 	}
+}
+
+// classOrder gives the classes, those that are fixed first, then by the area at stake, by number, and by what they hold.
+func (d *dealer) classOrder() []int32 {
+	order := make([]int32, len(d.classes))
+	for i := range order {
+		order[i] = int32(i)
+	}
+	slices.SortFunc(order, func(i, j int32) int {
+		a, b := &d.classes[i], &d.classes[j]
+		return cmp.Or(-cmp.Compare(boolInt(a.fixed), boolInt(b.fixed)), -cmp.Compare(math.Abs(a.delta), math.Abs(b.delta)),
+			-cmp.Compare(a.count, b.count), cmp.Compare(a.low, b.low), cmp.Compare(a.high, b.high))
+	})
+	return order
+}
+
+// standing gives the area on A less that on B of all that is decided, the whole area, and the area of the groups that are free still
+// and will be used to balance.
+func (d *dealer) standing(c *contexts) (imbalance, total, spare float64) {
+	d.now = make([]float64, len(d.classes))
+	for g, x := range d.delta {
+		if c.bit[g] == 1 {
+			x = -x
+		}
+		switch k := d.classOf[g]; {
+		case k >= 0:
+			d.now[k] += x
+			imbalance += x
+		case d.a.free[g]:
+			spare += math.Abs(x)
+		default:
+			imbalance += x
+		}
+	}
+	for _, area := range d.l.area {
+		total += area
+	}
+	return imbalance, total, spare
 }
 
 // agree tells how many more figures of a class are home in the canonical way than turned over.

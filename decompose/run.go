@@ -135,7 +135,9 @@ func (r *Run) layer(ctx context.Context, i int, orders Orderer) error {
 		return err
 	}
 	r.opt.stage("choose")
-	l.deal(a)
+	if err := l.deal(ctx, a, s, r.opt.jobs()); err != nil {
+		return err
+	}
 	r.masks = append(r.masks, a.mask.Data)
 	r.opt.stage("report")
 	res := r.summarise(l, a, o)

@@ -1,0 +1,183 @@
+package decompose
+
+import (
+	"context"
+	"math"
+
+	"golang.org/x/sync/errgroup"
+
+	"maskpair/decompose/exact"
+)
+
+// This file chooses among the equally good solutions of broken groups. A group with an odd cycle has many, and which one it takes
+// should not cost variants: so it is solved again with a cheapest aim behind all others, that its figures be on their home masks.
+
+// usualMasks gives for each figure of a shared structure the mask that it has where the structure comes out as it does most often:
+// +1 for A, -1 for B, 0 where the figure is not shared.
+func (d *dealer) usualMasks() []int8 {
+	l := d.l
+	f := l.flat
+	tables := make([]variantTable, len(f.lib.Structures))
+	node, mask := l.nodeOf.Data, d.a.mask.Data
+	var words []uint32
+	for top := range f.h.tops {
+		f.visit(top, func(s int32, _ placement, _ bool, first uint32) {
+			if !d.shared[s] {
+				return
+			}
+			words = words[:0]
+			nodes := node[first : first+f.own[s]]
+			for len(nodes) > 0 {
+				n := min(len(nodes), 32)
+				w := uint32(0)
+				for i, u := range nodes[:n] {
+					w |= uint32(mask[u]) << i
+				}
+				words = append(words, w)
+				nodes = nodes[n:]
+			}
+			tables[s].intern(words)
+		})
+	}
+	usual := make([]int8, len(f.lib.Figures))
+	for _, s := range f.h.bottom {
+		t := &tables[s]
+		if t.ways() == 0 {
+			continue
+		}
+		best, bestSign := int32(-1), uint64(0)
+		for i := range int32(t.ways()) {
+			if best >= 0 && t.uses[i] < t.uses[best] {
+				continue
+			}
+			sign := uint64(0)
+			f.ownFigures(s, func(k, figure uint32) { sign += mix(d.hash[figure], uint64(t.way(i)[k/32]>>(k%32)&1)) })
+			if best < 0 || t.uses[i] > t.uses[best] || sign < bestSign {
+				best, bestSign = i, sign
+			}
+		}
+		f.ownFigures(s, func(k, figure uint32) {
+			usual[figure] = 1 - 2*int8(t.way(best)[k/32]>>(k%32)&1)
+		})
+	}
+	return usual
+}
+
+// solveNear solves the broken groups again, nearest to the usual masks among all that is as good.
+func (s *solver) solveNear(ctx context.Context, d *dealer, usual []int8, bias float64, jobs int) error {
+	start := make([]int32, len(s.groups)+1)
+	local := map[uint32]int32{}
+	for i := range s.groups {
+		b := &s.groups[i]
+		start[i+1] = start[i] + int32(len(b.nodes))
+		for k, u := range b.nodes {
+			local[u] = start[i] + int32(k)
+		}
+	}
+	off := make([][2]int64, start[len(s.groups)])
+	node, group := s.l.nodeOf.Data, s.a.group.Data
+	d.eachShared(func(ordinal, figure uint32) {
+		n := node[ordinal]
+		if _, ok := s.index[int32(group[n])]; !ok {
+			return
+		}
+		switch k := local[n]; usual[figure] {
+		case 1:
+			off[k][1]++
+		case -1:
+			off[k][0]++
+		}
+	})
+	s.lean(off, local, bias)
+	for i := range s.groups {
+		s.groups[i].comeHome(off[start[i]:start[i+1]])
+	}
+	s.findSame()
+	var g errgroup.Group
+	g.SetLimit(max(jobs, 1))
+	for i := range s.groups {
+		b := &s.groups[i]
+		if b.same != i || !b.homing {
+			continue
+		}
+		g.Go(func() error {
+			b.near = exact.Solve(b.problem, exact.DefaultBudget())
+			return ctx.Err()
+		})
+	}
+	if err := g.Wait(); err != nil {
+		return err
+	}
+	for i := range s.groups {
+		b := &s.groups[i]
+		if !b.homing {
+			continue
+		}
+		near := s.groups[b.same].near
+		// A solution that is worse in what counts (where the budget ran out) is not taken.
+		if near.Cost/b.homeUnit > b.solution.Cost {
+			continue
+		}
+		for k, u := range b.nodes {
+			s.a.mask.Data[u] = b.mask(near.Masks, k)
+		}
+	}
+	return nil
+}
+
+// leanScale is what a figure away from home costs, so that the area of a node can count as a fraction of it.
+const leanScale = 64
+
+// lean makes the fuller mask dearer: bias is what the area of an average node on A costs more than on B, in figures away from home.
+func (s *solver) lean(off [][2]int64, local map[uint32]int32, bias float64) {
+	sum := 0.0
+	for u := range local {
+		sum += s.l.area[u]
+	}
+	for u, k := range local {
+		off[k][0] *= leanScale
+		off[k][1] *= leanScale
+		if lean := int64(math.Round(leanScale * bias * s.l.area[u] * float64(len(local)) / sum)); lean > 0 {
+			off[k][0] += lean
+		} else {
+			off[k][1] -= lean
+		}
+	}
+}
+
+// comeHome adds the cheapest aim to the problem of a group; off tells what each mask costs each node.
+func (b *brokenGroup) comeHome(off [][2]int64) {
+	sum := int64(1)
+	for _, o := range off {
+		sum += o[0] + o[1]
+	}
+	worst := int64(1)
+	for _, e := range b.weighed.Edges {
+		worst += e.Weight
+	}
+	for _, c := range b.weighed.Cost {
+		worst += c[0] + c[1]
+	}
+	b.homing = worst < 1<<61/sum
+	if !b.homing {
+		return
+	}
+	b.homeUnit = sum
+	p := &exact.Problem{Nodes: b.weighed.Nodes, Edges: make([]exact.Edge, len(b.weighed.Edges)), Fixed: b.weighed.Fixed, Cost: make([][2]int64, b.weighed.Nodes)}
+	for i, e := range b.weighed.Edges {
+		e.Weight *= sum
+		p.Edges[i] = e
+	}
+	for k, c := range b.weighed.Cost {
+		p.Cost[k] = [2]int64{c[0] * sum, c[1] * sum}
+	}
+	for k, o := range off {
+		n, flip := int32(k), uint8(0)
+		if b.rep != nil {
+			n, flip = b.rep[k], b.flip[k]
+		}
+		p.Cost[n][flip] += o[0]
+		p.Cost[n][flip^1] += o[1]
+	}
+	b.problem = p
+}
