@@ -20,10 +20,7 @@ import (
 func CopyStream(dst io.Writer, src io.ReaderAt, lib *Library, want Interest, plan Plan, progress func(bytes int64)) error {
 	c := &copier{dst: dst, src: src, lib: lib, plan: plan, table: newClasses(want.Figures), progress: progress,
 		window: make([]byte, bufferSize), out: make([]byte, 0, bufferSize+1<<17)}
-	if err := c.run(); err != nil {
-		return err
-	}
-	return c.flush()
+	return c.run()
 }
 
 // copier is the state of pass 2.
@@ -94,7 +91,7 @@ func (c *copier) run() error {
 	} else if err != nil && err != io.EOF {
 		return err
 	}
-	return nil
+	return c.flush()
 }
 
 // begin makes [from, to) of src the part that is being copied.

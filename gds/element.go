@@ -119,7 +119,7 @@ func (e *element) parse(b []byte) (size int, err error) {
 			return at + length, nil
 		}
 		if rule.allowed&bit == 0 {
-			return 0, faultf(ErrOrder, "%v cannot stand in a %v, which has no ENDEL yet", kind, e.kind)
+			return 0, faultf(ErrOrder, "%v cannot stand in %v, which has no ENDEL yet", kind, e.kind)
 		}
 		if e.seen&bit&^repeatable != 0 {
 			return 0, faultf(ErrOrder, "%v stands twice", kind)
@@ -207,7 +207,7 @@ func (e *element) takeXY(rule *rule, last Kind, data []byte, at int) error {
 	e.xyRecords++
 	e.points += len(data) / 8
 	if rule.points != 0 && e.points != rule.points {
-		return faultf(ErrLength, "XY of a %v has %d points, not %d", e.kind, e.points, rule.points)
+		return faultf(ErrLength, "XY of %v has %d points, not %d", e.kind, e.points, rule.points)
 	}
 	if e.points == 0 {
 		return faultf(ErrLength, "XY has no points")

@@ -62,8 +62,8 @@ func newIndexer(r io.Reader, size int64, want Interest) *indexer {
 
 // grow gives a full arena more room. Where the size of the stream is known it looks ahead: what the rest of the stream
 // holds if it is like what was read; room that stays untouched costs no memory. least is the fewest bytes that an item
-// takes in the stream.
-func grow[T any](s []T, read, size, least int64) []T {
+// takes in the stream. There is room for at least need more.
+func grow[T any](s []T, need int, read, size, least int64) []T {
 	have := int64(len(s))
 	room := have + have/2 + 1024
 	if size > read && read > 0 {
@@ -71,6 +71,7 @@ func grow[T any](s []T, read, size, least int64) []T {
 		room = max(room, min(ahead, 64*have))
 		room = min(room, have+(size-read)/least+bufferSize/least+1024)
 	}
+	room = max(room, have+int64(need))
 	grown := arena.Make[T](len(s), int(room))
 	copy(grown, s)
 	return grown
@@ -357,7 +358,7 @@ func (x *indexer) moreFigures(unread int) error {
 	if len(lib.Figures) >= x.limit {
 		return faultf(ErrTooMany, "more than %d figures on the layers of interest", x.limit)
 	}
-	lib.Figures = grow(lib.Figures, x.s.base+int64(x.s.end-unread), x.size, 32)
+	lib.Figures = grow(lib.Figures, 1, x.s.base+int64(x.s.end-unread), x.size, 32)
 	if cap(lib.Figures) > x.limit {
 		lib.Figures = lib.Figures[:len(lib.Figures):x.limit]
 	}
@@ -486,7 +487,7 @@ func (x *indexer) outline(class uint8, o Outline, xy, rest []byte, more int) {
 	}
 	o.Count = uint32(len(points))
 	if len(lib.Outlines) == cap(lib.Outlines) {
-		lib.Outlines = grow(lib.Outlines, x.s.place(), x.size, 32)
+		lib.Outlines = grow(lib.Outlines, 1, x.s.place(), x.size, 32)
 	}
 	lib.Outlines = append(lib.Outlines, o)
 	lib.Figures = append(lib.Figures, Figure{Box: bounds(points), Outline: uint32(len(lib.Outlines)), Class: class})
@@ -495,8 +496,8 @@ func (x *indexer) outline(class uint8, o Outline, xy, rest []byte, more int) {
 // addPoints appends the points of an XY record to the arena.
 func (x *indexer) addPoints(xy []byte) {
 	points := x.lib.Points
-	for cap(points)-len(points) < len(xy)/8 {
-		points = grow(points, x.s.place(), x.size, 8)
+	if need := len(xy) / 8; cap(points)-len(points) < need {
+		points = grow(points, need, x.s.place(), x.size, 8)
 	}
 	at := len(points)
 	points = points[:at+len(xy)/8]
@@ -556,7 +557,7 @@ func (x *indexer) reference() error {
 		ref.Extra = uint32(len(lib.Placements))
 	}
 	if len(lib.Refs) == cap(lib.Refs) {
-		lib.Refs = grow(lib.Refs, x.s.place(), x.size, 26)
+		lib.Refs = grow(lib.Refs, 1, x.s.place(), x.size, 26)
 	}
 	lib.Refs = append(lib.Refs, ref)
 	return nil
