@@ -21,7 +21,7 @@ func (s *solver) arrange() {
 		s.groups[i].first = ^uint32(0)
 	}
 	for o, n := range l.nodeOf.Data {
-		if i, ok := s.index[int32(s.a.group.Data[n])]; ok {
+		if i, ok := s.of(n); ok {
 			b := &s.groups[i]
 			b.first, b.last = min(b.first, uint32(o)), uint32(o)
 		}
@@ -32,6 +32,9 @@ func (s *solver) arrange() {
 		s.groups[i].arrange(l, fr, boxes)
 	}
 }
+
+// manyNodes is the size from which a group is taken as it lies in its cell: large groups hardly recur in another orientation.
+const manyNodes = 4096
 
 func (b *brokenGroup) arrange(l *layout, fr *frames, boxes []Box) {
 	top := l.topOf(b.nodes[0])
@@ -45,7 +48,11 @@ func (b *brokenGroup) arrange(l *layout, fr *frames, boxes []Box) {
 	}
 	var best []entry
 	list := make([]entry, len(b.nodes))
-	for turn := range uint8(8) {
+	turns := uint8(8)
+	if len(b.nodes) > manyNodes {
+		turns = 1
+	}
+	for turn := range turns {
 		p := placement{turn: orientation(turn)}.compose(home)
 		low := emptyBox
 		for k, u := range b.nodes {

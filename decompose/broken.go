@@ -47,25 +47,36 @@ type solver struct {
 	o      *Orders
 	groups []brokenGroup
 	index  map[int32]int // group number to index in groups
+	broken []uint64      // bit by group number
 }
 
 // newSolver gathers the nodes of the broken groups.
 func newSolver(l *layout, a *assignment, o *Orders) *solver {
-	s := &solver{l: l, a: a, o: o, index: map[int32]int{}}
+	s := &solver{l: l, a: a, o: o, index: map[int32]int{}, broken: make([]uint64, (a.groups+63)/64)}
 	for i, g := range a.broken {
 		s.groups = append(s.groups, brokenGroup{group: g})
 		s.index[g] = i
+		s.broken[g>>6] |= 1 << (g & 63)
 	}
 	if len(s.groups) == 0 {
 		return s
 	}
 	for u := range uint32(l.nodes) {
-		if i, ok := s.index[int32(a.group.Data[u])]; ok {
+		if i, ok := s.of(u); ok {
 			s.groups[i].nodes = append(s.groups[i].nodes, u)
 		}
 	}
 	s.arrange()
 	return s
+}
+
+// of gives the index of the broken group of a node; false where its group is not broken.
+func (s *solver) of(node uint32) (int, bool) {
+	g := s.a.group.Data[node]
+	if s.broken[g>>6]>>(g&63)&1 == 0 {
+		return 0, false
+	}
+	return s.index[int32(g)], true
 }
 
 // solve gives every broken group its masks.
@@ -126,12 +137,12 @@ func (s *solver) solve(ctx context.Context, jobs int) error {
 func (s *solver) byNode() (fixed map[uint32]Mask, wishes map[uint32][2]int64) {
 	fixed, wishes = map[uint32]Mask{}, map[uint32][2]int64{}
 	for _, an := range s.o.Anchors {
-		if _, ok := s.index[int32(s.a.group.Data[an.Node])]; ok {
+		if _, ok := s.of(an.Node); ok {
 			fixed[an.Node] = an.Mask
 		}
 	}
 	for _, w := range s.o.Wishes {
-		if _, ok := s.index[int32(s.a.group.Data[w.Node])]; ok {
+		if _, ok := s.of(w.Node); ok {
 			n := wishes[w.Node]
 			n[w.Mask.Other()]++
 			wishes[w.Node] = n

@@ -68,8 +68,17 @@ func (e *explainer) gather() {
 func (e *explainer) sign() {
 	e.local = map[uint32]uint32{}
 	owner := []int32{}
+	sizes := map[[2]int]int{} // groups of one size: only these can be equal
+	size := func(b *brokenGroup) [2]int { return [2]int{len(b.nodes), len(b.edges)} }
 	for i := range e.solver.groups {
-		for _, u := range e.solver.groups[i].nodes {
+		sizes[size(&e.solver.groups[i])]++
+	}
+	for i := range e.solver.groups {
+		b := &e.solver.groups[i]
+		if sizes[size(b)] == 1 && !e.a.tied {
+			continue
+		}
+		for _, u := range b.nodes {
 			e.local[u] = uint32(len(owner))
 			owner = append(owner, int32(i))
 		}
@@ -82,7 +91,13 @@ func (e *explainer) sign() {
 	l := e.l
 	node := l.nodeOf.Data
 	for top := range l.flat.h.tops {
-		l.eachFigure(top, func(o uint32) bool { _, ok := e.solver.index[int32(e.a.group.Data[node[o]])]; return ok },
+		l.eachFigure(top, func(o uint32) bool {
+			if _, ok := e.of(node[o]); !ok {
+				return false
+			}
+			_, ok := e.local[node[o]]
+			return ok
+		},
 			func(o, fig uint32, at placement, odd *oddFigure) {
 				k := e.local[node[o]]
 				back := e.solver.groups[owner[k]].canon.back
@@ -299,7 +314,9 @@ func (e *explainer) entry(b *brokenGroup, p *componentPart, component uint32) Un
 	low := b.canon.back.applyBox(box)
 	for _, k := range p.nodes {
 		n := b.nodes[k]
-		sign = mix(sign, e.shape[e.local[n]])
+		if k, ok := e.local[n]; ok {
+			sign = mix(sign, e.shape[k])
+		}
 		sign = mix(sign, hashBox(b.canon.back.applyBox(e.boxes[n]).shift(-low.X1, -low.Y1)))
 	}
 	for _, ed := range p.edges {
@@ -400,13 +417,29 @@ func (e *explainer) pair(b *brokenGroup, p *componentPart, x int, top string) Pa
 		u, v = v, u
 	}
 	scale := float64(e.l.flat.forms.scale)
-	from, to, sq := geom.Closest(*e.parts[u], *e.parts[v])
+	from, to, sq := geom.Closest(e.reach(u, v), e.reach(v, u))
 	k := 2 / e.l.flat.forms.scale
 	out := Pair{A: e.l.half(e.boxes[u]), B: e.l.half(e.boxes[v]), DistanceSq: sq / (scale * scale), Top: top,
 		From: Spot{from.X * k, from.Y * k}, To: Spot{to.X * k, to.Y * k}, Mask: Mask(p.masks[ed.U]), Rule: "same_mask_spacing"}
 	out.Gap = gapBox(out.A, out.B, out.From, out.To)
 	out.Widen = e.l.rules.Spacing - int64(math.Sqrt(out.DistanceSq))
 	return out
+}
+
+// reach gives the parts of a node that can be near to another: those within the largest spacing of its box.
+func (e *explainer) reach(n, of uint32) geom.Parts {
+	all := e.parts[n]
+	if len(all.Rects) < 8 {
+		return *all
+	}
+	box, s := e.boxes[of], e.l.rules.Reach()*e.l.flat.forms.scale
+	near := geom.Parts{Polygons: all.Polygons}
+	for _, r := range all.Rects {
+		if r.X1-box.X2 < s && box.X1-r.X2 < s && r.Y1-box.Y2 < s && box.Y1-r.Y2 < s {
+			near.Rects = append(near.Rects, r)
+		}
+	}
+	return near
 }
 
 // waived words a pair that the user accepts.

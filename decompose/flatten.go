@@ -42,12 +42,13 @@ type flat struct {
 	lib   *gds.Library
 	sel   *selection
 	forms *forms
-	own   []uint32 // figures with area, by structure
-	all   []uint64 // flat figures, by structure
-	items []uint64 // flat items of what is placed exactly, by structure
-	bands []uint64 // the bands among them
-	box   []Box    // of the flat figures, by structure, in work units of the structure; only where all > 0
-	first []uint64 // ordinal of the first figure, by top
+	own   []uint32   // figures with area, by structure
+	all   []uint64   // flat figures, by structure
+	items []uint64   // flat items of what is placed exactly, by structure
+	bands []uint64   // the bands among them
+	box   []Box      // of the flat figures, by structure, in work units of the structure; only where all > 0
+	first []uint64   // ordinal of the first figure, by top
+	list  [][]uint32 // own figures with area, by structure; only of those placed more than once
 	total uint64
 
 	polygons    []*geom.Polygon
@@ -71,6 +72,7 @@ func newFlat(h *hierarchy, sel *selection) (*flat, error) {
 	for _, s := range h.bottom {
 		f.count(s)
 	}
+	f.listShared()
 	f.first = make([]uint64, len(h.tops))
 	for i, t := range h.tops {
 		f.first[i] = f.total
@@ -86,6 +88,24 @@ func newFlat(h *hierarchy, sel *selection) (*flat, error) {
 		}
 	}
 	return f, nil
+}
+
+// listShared lists the own figures of structures that are placed often, since their figures are gone through often.
+func (f *flat) listShared() {
+	f.list = make([][]uint32, len(f.own))
+	for _, s := range f.h.bottom {
+		if f.own[s] == 0 || f.h.placed[s] < 2 {
+			continue
+		}
+		st := &f.lib.Structures[s]
+		own := make([]uint32, 0, f.own[s])
+		for i := st.FirstFigure; i < st.EndFigure; i++ {
+			if f.figure(i) {
+				own = append(own, i)
+			}
+		}
+		f.list[s] = own
+	}
 }
 
 func countText(n uint64) string {

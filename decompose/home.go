@@ -121,8 +121,8 @@ type dealer struct {
 	h0, h1  []uint64 // by group: its shared figures with their masks as they are now, and turned over
 	classOf []int32  // by group; -1: no shared figures
 	classes []class
-	homes   map[uint32]int8 // by figure: +1 A, -1 B
-	now     []float64       // by class: area on A less that on B, before the descent
+	homes   []int8    // by figure: +1 A, -1 B
+	now     []float64 // by class: area on A less that on B, before the descent
 }
 
 // class is a set of groups with the same shared figures on the same relative masks.
@@ -298,7 +298,8 @@ const homeRounds = 8
 // turnClasses deals homes and turns the classes, those with most area at stake first.
 func (d *dealer) turnClasses() {
 	order := d.classOrder()
-	d.homes = map[uint32]int8{}
+	d.homes = make([]int8, len(d.hash))
+	votes := make([]int64, len(d.hash))
 	imbalance := 0.0
 	for g, x := range d.delta {
 		if !d.a.free[g] && d.classOf[g] < 0 {
@@ -323,7 +324,7 @@ func (d *dealer) turnClasses() {
 		}
 	}
 	for range homeRounds {
-		votes := map[uint32]int64{}
+		clear(votes)
 		for i := range d.classes {
 			c := &d.classes[i]
 			for _, m := range c.members {

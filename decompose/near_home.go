@@ -66,7 +66,7 @@ func (d *dealer) usualMasks() []int8 {
 // solveNear solves the broken groups again, nearest to the usual masks among all that is as good.
 func (s *solver) solveNear(ctx context.Context, d *dealer, usual []int8, bias float64, jobs int) error {
 	start := make([]int32, len(s.groups)+1)
-	local := map[uint32]int32{}
+	local := make(map[uint32]int32, s.nodes())
 	for i := range s.groups {
 		b := &s.groups[i]
 		start[i+1] = start[i] + int32(len(b.nodes))
@@ -75,10 +75,10 @@ func (s *solver) solveNear(ctx context.Context, d *dealer, usual []int8, bias fl
 		}
 	}
 	off := make([][2]int64, start[len(s.groups)])
-	node, group := s.l.nodeOf.Data, s.a.group.Data
+	node := s.l.nodeOf.Data
 	d.eachShared(func(ordinal, figure uint32) {
 		n := node[ordinal]
-		if _, ok := s.index[int32(group[n])]; !ok {
+		if _, ok := s.of(n); !ok {
 			return
 		}
 		switch k := local[n]; usual[figure] {
@@ -123,6 +123,15 @@ func (s *solver) solveNear(ctx context.Context, d *dealer, usual []int8, bias fl
 		}
 	}
 	return nil
+}
+
+// nodes is the number of nodes of all broken groups.
+func (s *solver) nodes() int {
+	n := 0
+	for i := range s.groups {
+		n += len(s.groups[i].nodes)
+	}
+	return n
 }
 
 // leanScale is what a figure away from home costs, so that the area of a node can count as a fraction of it.

@@ -54,6 +54,12 @@ func (f *flat) visitIn(s int32, at placement, placed bool, ordinal uint64, fn vi
 
 // ownFigures calls fn for the figures with area of a structure, in the order of their ordinals.
 func (f *flat) ownFigures(s int32, fn func(k uint32, figure uint32)) {
+	if own := f.list[s]; own != nil {
+		for k, i := range own {
+			fn(uint32(k), i)
+		}
+		return
+	}
 	st := &f.lib.Structures[s]
 	k := uint32(0)
 	for i := st.FirstFigure; i < st.EndFigure; i++ {
