@@ -338,7 +338,7 @@ func appendText(b []byte, kind Kind, text string) ([]byte, error) {
 // appendXY appends points as one XY record, or as several where one does not hold them. closed adds the first point again.
 func appendXY(b []byte, points []Point, closed bool) []byte {
 	total := len(points)
-	if closed {
+	if closed && total > 0 {
 		total++
 	}
 	for at := 0; at < total; {
@@ -359,7 +359,8 @@ func appendPoint(b []byte, p Point) []byte {
 	return binary.BigEndian.AppendUint64(b, uint64(uint32(p.X))<<32|uint64(uint32(p.Y)))
 }
 
-// AppendBoundary appends a BOUNDARY element to b, for Copy.Tail. points, at least one, come without the closing one.
+// AppendBoundary appends a BOUNDARY element to b, for Copy.Tail. points come without the closing one; without any
+// the element is none that a reader takes.
 func AppendBoundary(b []byte, layer LayerType, points []Point) []byte {
 	b = appendHead(b, BOUNDARY, 0)
 	b = appendLayer(b, layer, DATATYPE)
