@@ -7,7 +7,6 @@ import (
 	"errors"
 	"fmt"
 	"io"
-	"math"
 	"os"
 	"strings"
 	"testing"
@@ -322,7 +321,7 @@ func TestUsageErrors(t *testing.T) {
 		{[]string{"demo", "@a", "@b"}, "one folder too many"},
 		{[]string{"demo", "@"}, "holds something already"},
 		{[]string{"demo", "@in.gds"}, "new or empty"},
-		{[]string{"demo", "--force", "@a"}, "no option --force"},
+		{[]string{"demo", "--quiet", "@a"}, "no option --quiet"},
 	} {
 		t.Run(strings.Join(c.args, " "), func(t *testing.T) {
 			b := newBench(t)
@@ -597,70 +596,6 @@ func TestParseSize(t *testing.T) {
 		got, ok := parseSize(c.text)
 		if ok != (c.want > 0) || ok && got != c.want {
 			t.Errorf("%q is %d, %v; want %d", c.text, got, ok, c.want)
-		}
-	}
-}
-
-func TestDemo(t *testing.T) {
-	b := newBench(t)
-	b.step = b.copies(1)
-	b.want(0, b.run("demo", "@new"), "does not fit on two masks")
-	entries, err := os.ReadDir(b.path("new"))
-	if err != nil {
-		t.Fatal(err)
-	}
-	var names []string
-	for _, e := range entries {
-		names = append(names, e.Name())
-	}
-	if got := strings.Join(names, " "); got != "anchors.toml deck.toml layout.gds masks.gds report.json" {
-		t.Errorf("the folder holds %s", got)
-	}
-	if !strings.Contains(b.out.String(), "maskpair decompose ") || !strings.Contains(b.out.String(), caution) {
-		t.Errorf("it said %q", b.out.String())
-	}
-	rules, err := b.seen.Deck.Resolve(1e-9)
-	if err != nil {
-		t.Fatal(err)
-	}
-	if f, err := b.seen.ParseAnchors(rules); err != nil || len(f.Anchors) != 2 {
-		t.Errorf("the anchor file of the demo: %+v, %v", f, err)
-	}
-	b.want(2, b.run("demo", "@new"), "holds something already")
-}
-
-func TestDemoLayout(t *testing.T) {
-	var stream bytes.Buffer
-	if err := writeDemoLayout(&stream); err != nil {
-		t.Fatal(err)
-	}
-	wire := gds.LayerType{Layer: 10, Type: 0}
-	lib, err := gds.Index(bytes.NewReader(stream.Bytes()), int64(stream.Len()), gds.Interest{Figures: map[gds.LayerType]uint8{wire: 1}}, nil)
-	if err != nil {
-		t.Fatal(err)
-	}
-	if math.Abs(lib.DBU-1e-9) > 1e-15 || len(lib.Missing) != 0 {
-		t.Errorf("a unit is %g m, want a nanometre; missing are %v, want none", lib.DBU, lib.Missing)
-	}
-	var cells []string
-	for _, s := range lib.Structures {
-		cells = append(cells, fmt.Sprintf("%s %d %d", s.Name, s.EndFigure-s.FirstFigure, s.EndRef-s.FirstRef))
-	}
-	if got := strings.Join(cells, ", "); got != "line 1 0, amplifier 3 0, knot 5 0, demo 0 5" {
-		t.Errorf("cells, their figures and references are %s", got)
-	}
-	// The knot must be an odd cycle under the spacing of the deck: each wire is near the next in the ring, and no other.
-	knot := lib.Figures[lib.Structures[2].FirstFigure:lib.Structures[2].EndFigure]
-	near := func(a, b gds.Rect) bool {
-		dx := max(0, int64(a.X1)-int64(b.X2), int64(b.X1)-int64(a.X2))
-		dy := max(0, int64(a.Y1)-int64(b.Y2), int64(b.Y1)-int64(a.Y2))
-		return dx*dx+dy*dy < 40*40
-	}
-	for i := range knot {
-		for j := range i {
-			if next := i-j == 1 || i-j == len(knot)-1; near(knot[i].Box, knot[j].Box) != next {
-				t.Errorf("wires %d and %d of the knot: near is %v, want %v", j, i, !next, next)
-			}
 		}
 	}
 }

@@ -1,7 +1,7 @@
 package cli
 
 import (
-	"bufio"
+	"bytes"
 	"context"
 	"errors"
 	"fmt"
@@ -10,67 +10,56 @@ import (
 	"os"
 	"path/filepath"
 	"runtime"
-	"strings"
-	"time"
 
 	"github.com/urfave/cli/v2"
 
+	"maskpair/cli/picture"
+	"maskpair/cli/report"
 	"maskpair/decompose"
-	"maskpair/gds"
 )
 
-// This file is the command demo: an invented layout with deck and anchors in a folder, decomposed at once, so that a person
-// can look at each file and change it. The layout has what usual ones have: an array that alternates, a cell whose masks are
-// anchored, and one place that two masks cannot do.
+// This file is the command demo: an invented layout with its deck in a folder, decomposed at once by the way that every layout
+// goes, and shown in letters and pictures, so that a person can look at each file and change it.
 
 const demoFolder = "maskpair-demo"
 
 const demoDeck = `# Two masks for the wires of the demo layout.
-unit = "nm"
+unit = "nm"                    # of every length below
 
 [[layer]]
 name = "wire"
-drawn = "10/0"
-mask_a = "10/1"
+drawn = "10/0"                 # layer/datatype of what is drawn
+mask_a = "10/1"                # where it goes
 mask_b = "10/2"
-same_mask_spacing = 40     # the wires are drawn 20 nm apart
-
-[layer.stitch]
-min_overlap = 20
-min_piece = 40
-apply = false              # true: the knot is cut where that resolves it
+same_mask_spacing = 40         # two shapes nearer than this must be on opposite masks; wires are drawn 20 apart
 
 [marks]
-unresolved = "90/0"        # what stays unresolved is marked on these layers
-cycle = "90/1"
+unresolved = "90/0"            # a box in each gap that two masks cannot do
 `
 
-const demoAnchors = `# The outer wires of the amplifier carry a matched pair: both must be printed by mask A.
-[[anchor]]
-layer = "wire"
-mask = "A"
-at = [10, 100]
-cell = "amplifier"
-name = "left of the pair"
+const demoHelp = `Makes the folder DIR (default ` + demoFolder + `) with an invented layout and its rule deck, runs decompose on them, and shows
+what came out. One kind of place in the layout cannot be done on two masks: the summary names it.
 
-[[anchor]]
-layer = "wire"
-mask = "A"
-at = [90, 100]
-cell = "amplifier"
-name = "right of the pair"
+Example:
+   maskpair demo
+
+Exit status:
+   0  done
+   2  the folder holds something already and --force is not given
+   4  it could not be written, or was interrupted
 `
 
 func demoCommand(con *console, s steps) *cli.Command {
 	return &cli.Command{
-		Name:      "demo",
-		Usage:     "write a small layout with deck and anchors to a folder, and decompose it",
-		UsageText: "maskpair demo [DIR]",
-		Description: "Makes the folder DIR (default " + demoFolder + ") with an invented layout, its rule deck and anchor file, and runs\n" +
-			"decompose on them. One place of the layout cannot be done on two masks: the summary names it, and the way out.\n" +
-			"Exit status: 0 done; 2 the folder holds something already; 4 it could not be written.",
+		Name:            "demo",
+		Usage:           "write a small layout and its deck to a folder, decompose it, and show what came out",
+		UsageText:       "maskpair demo [DIR]",
+		Description:     demoHelp,
 		HideHelpCommand: true,
 		OnUsageError:    asUsageError,
+		Flags: []cli.Flag{
+			&cli.BoolFlag{Name: "force", DisableDefaultText: true, Usage: "replace the files of an earlier demo"},
+		},
 		Action: func(c *cli.Context) error {
 			if c.Args().Len() > 1 {
 				return usagef("%q is one folder too many; give one", c.Args().Get(1))
@@ -79,13 +68,70 @@ func demoCommand(con *console, s steps) *cli.Command {
 			if c.Args().Present() {
 				dir = c.Args().First()
 			}
-			return demo(c.Context, dir, con, s)
+			return demo(c.Context, dir, c.Bool("force"), con, s)
 		},
 	}
 }
 
-// demo writes the input files and decomposes them.
-func demo(ctx context.Context, dir string, con *console, s steps) error {
+// demoPaths are the places of the files.
+type demoPaths struct{ dir, layout, deck, masks, report, drawnPicture, masksPicture string }
+
+func newDemoPaths(dir string) *demoPaths {
+	path := func(name string) string { return filepath.Join(dir, name) }
+	return &demoPaths{dir, path("layout.gds"), path("deck.toml"), path("masks.gds"), path("report.json"), path("layout.svg"), path("masks.svg")}
+}
+
+// demo writes the input files, decomposes them and shows the result.
+func demo(ctx context.Context, dir string, force bool, con *console, s steps) error {
+	if err := demoFolderFor(dir, force); err != nil {
+		return err
+	}
+	f := newDemoPaths(dir)
+	deck, err := decompose.ParseDeck(f.deck, []byte(demoDeck))
+	if err != nil {
+		return err
+	}
+	var layout bytes.Buffer
+	if err := writeDemoLayout(&layout); err != nil {
+		return err
+	}
+	scene, err := demoPicture(bytes.NewReader(layout.Bytes()))
+	if err != nil {
+		return err
+	}
+	err = writeDemo(ctx, force, []demoFile{
+		{f.layout, func(w io.Writer) error { _, err := w.Write(layout.Bytes()); return err }},
+		{f.deck, func(w io.Writer) error { _, err := io.WriteString(w, demoDeck); return err }},
+		{f.drawnPicture, demoSVG(scene, "the demo layout as drawn")},
+	})
+	if err != nil {
+		return err
+	}
+	o := &Options{Input: f.layout, DeckPath: f.deck, Deck: deck, Output: f.masks, Report: f.report, Jobs: runtime.GOMAXPROCS(0), Force: force}
+	r, err := decomposeTo(ctx, o, con, s)
+	if err != nil {
+		return err
+	}
+	masks, err := os.ReadFile(f.masks)
+	if err != nil {
+		return err
+	}
+	if scene, err = demoPicture(bytes.NewReader(masks)); err != nil {
+		return err
+	}
+	title := "the demo layout on two masks: A hatched, B dotted, gaps that stay unresolved in a ring"
+	err = writeDemo(ctx, force, []demoFile{{f.masksPicture, demoSVG(scene, title)}})
+	if err != nil {
+		return err
+	}
+	if err := demoTell(con.out, f, scene, r); err != nil {
+		return &writeError{"standard output", err}
+	}
+	return nil
+}
+
+// demoFolderFor makes the folder, or sees to it that nothing in it is lost.
+func demoFolderFor(dir string, force bool) error {
 	entries, err := os.ReadDir(dir)
 	switch {
 	case errors.Is(err, fs.ErrNotExist):
@@ -94,53 +140,29 @@ func demo(ctx context.Context, dir string, con *console, s steps) error {
 		}
 	case err != nil:
 		return usagef("%s: %v; give a folder that is new or empty", dir, reason(err))
-	case len(entries) > 0:
-		return usagef("%s: holds something already; give a folder that is new or empty", dir)
-	}
-	path := func(name string) string { return filepath.Join(dir, name) }
-	o := &Options{
-		Input:    path("layout.gds"),
-		DeckPath: path("deck.toml"),
-		Anchors:  path("anchors.toml"),
-		Output:   path("masks.gds"),
-		Report:   path("report.json"),
-		Jobs:     runtime.GOMAXPROCS(0),
-		anchors:  []byte(demoAnchors),
-	}
-	if o.Deck, err = decompose.ParseDeck(o.DeckPath, []byte(demoDeck)); err != nil {
-		return err
-	}
-	if err := writeDemo(ctx, o); err != nil {
-		return err
-	}
-	r, err := decomposeTo(ctx, o, con, s)
-	if err != nil {
-		return err
-	}
-	command := fmt.Sprintf("%s decompose %s --deck %s --anchors %s --output %s --report %s --force", program, o.Input, o.DeckPath, o.Anchors, o.Output, o.Report)
-	lines := []string{"The files are in " + dir + ". This was", "   " + command}
-	if r.UnresolvedPairs() > 0 {
-		lines = append(lines, "and its exit status is 1, since something is unresolved. Set apply = true in "+o.DeckPath+" and run it again.")
-	}
-	if _, err := fmt.Fprintln(con.out, strings.Join(append(lines, caution), "\n")); err != nil {
-		return &writeError{"standard output", err}
+	case len(entries) > 0 && !force:
+		return usagef("%s: holds something already; give a folder that is new or empty, or --force to replace the files of an earlier demo", dir)
 	}
 	return nil
 }
 
-// writeDemo writes layout, deck and anchor file.
-func writeDemo(ctx context.Context, o *Options) error {
+// demoSVG draws a picture.
+func demoSVG(scene *picture.Scene, title string) func(io.Writer) error {
+	return func(w io.Writer) error { return scene.WriteSVG(w, picture.SVG{Title: title, Unit: 20, Scale: 0.7}) }
+}
+
+// demoFile is a file to be written.
+type demoFile struct {
+	path  string
+	write func(io.Writer) error
+}
+
+// writeDemo writes files, all or none.
+func writeDemo(ctx context.Context, force bool, list []demoFile) error {
 	var files outputs
 	defer files.discard()
-	for _, f := range []struct {
-		path  string
-		write func(io.Writer) error
-	}{
-		{o.DeckPath, text(demoDeck)},
-		{o.Anchors, text(demoAnchors)},
-		{o.Input, writeDemoLayout},
-	} {
-		out, err := files.add("demo", f.path, false, nil, nil)
+	for _, f := range list {
+		out, err := files.add("demo", f.path, force, nil, nil)
 		if err != nil {
 			return err
 		}
@@ -154,50 +176,39 @@ func writeDemo(ctx context.Context, o *Options) error {
 	return files.settle(ctx)
 }
 
-// text gives a function that writes s.
-func text(s string) func(io.Writer) error {
-	return func(w io.Writer) error {
-		_, err := io.WriteString(w, s)
+// demoTell shows the masks in letters and says what to look at and what to do next.
+func demoTell(w io.Writer, f *demoPaths, scene *picture.Scene, r *report.Report) error {
+	var b bytes.Buffer
+	fmt.Fprintf(&b, "\nThe layout on its two masks; a character is %d by %d nm:\n\n", demoStepX, demoStepY)
+	if err := scene.WriteLetters(&b, demoStepX, demoStepY); err != nil {
 		return err
 	}
-}
-
-// writeDemoLayout writes the demo layout; one database unit is a nanometre.
-func writeDemoLayout(dst io.Writer) error {
-	wire := gds.LayerType{Layer: 10, Type: 0}
-	buffered := bufio.NewWriter(dst)
-	w := gds.NewWriter(buffered, gds.WriterOptions{
-		LibName: "DEMO", UserUnit: 1e-3, DBU: 1e-9,
-		Time: time.Date(2000, 1, 1, 0, 0, 0, 0, time.UTC),
-	})
-	cell := func(name string, wires ...gds.Rect) {
-		w.BeginStructure(name)
-		for _, r := range wires {
-			w.Rectangle(wire, r)
-		}
-		w.EndStructure()
+	b.WriteString(`
+   lines       alternate; the array of the layout became arrays of double pitch
+   pads        have nothing near; they even out the areas of the masks
+   amplifiers  have two wires that stood on mask A in the layout, and stay there
+   gates       come out right in all orientations, rails shared by two rows included
+   knots       are rings of five wires, each near the next. Going round, the masks would have to alternate, and five is odd:
+               no choice can do it. One gap of each stays, and is marked on layer 90/0
+`)
+	fmt.Fprintf(&b, "\nFiles in %s:\n", f.dir)
+	for _, l := range [][2]string{
+		{f.layout, "the layout as drawn, on layer 10/0"},
+		{f.deck, "its rule deck, with comments"},
+		{f.masks, "the layout with each figure on mask A (10/1) or B (10/2)"},
+		{f.report, "all numbers, and each place that is unresolved"},
+		{f.drawnPicture, "pictures for a browser: as drawn,"},
+		{f.masksPicture, "and on the masks"},
+	} {
+		fmt.Fprintf(&b, "   %-12s %s\n", filepath.Base(l[0]), l[1])
 	}
-	cell("line", gds.Rect{X1: 0, Y1: 0, X2: 20, Y2: 400})
-	cell("amplifier",
-		gds.Rect{X1: 0, Y1: 0, X2: 20, Y2: 200},
-		gds.Rect{X1: 40, Y1: 0, X2: 60, Y2: 200},
-		gds.Rect{X1: 80, Y1: 0, X2: 100, Y2: 200})
-	cell("knot", // five wires in a ring, each 20 nm from the next: an odd cycle, which a cut of the long one opens
-		gds.Rect{X1: 0, Y1: 0, X2: 600, Y2: 20},
-		gds.Rect{X1: 0, Y1: 40, X2: 100, Y2: 60},
-		gds.Rect{X1: 60, Y1: 80, X2: 290, Y2: 100},
-		gds.Rect{X1: 310, Y1: 80, X2: 540, Y2: 100},
-		gds.Rect{X1: 500, Y1: 40, X2: 600, Y2: 60})
-	w.BeginStructure("demo")
-	none := gds.Strans{}
-	w.ARef("line", none, 16, 2, gds.Point{}, gds.Point{X: 16 * 40}, gds.Point{Y: 2 * 500})
-	w.SRef("amplifier", none, gds.Point{X: 900})
-	w.SRef("amplifier", gds.Strans{Angle: 90}, gds.Point{X: 1400})
-	w.SRef("amplifier", gds.Strans{Mirror: true}, gds.Point{X: 900, Y: 800})
-	w.SRef("knot", none, gds.Point{Y: 1200})
-	w.EndStructure()
-	if err := w.Close(); err != nil {
-		return err
+	fmt.Fprintf(&b, "\nThe same once more, by hand:\n   %s decompose %s --deck %s --output again.gds\n", program, f.layout, f.deck)
+	if n := r.UnresolvedPairs(); n > 0 {
+		fmt.Fprintf(&b, "Its exit status is 1, since %d pairs are unresolved. Say same_mask_spacing = 20 in the deck, and it is 0.\n", n)
 	}
-	return buffered.Flush()
+	fmt.Fprintf(&b, "\nNext, a layout of your own. Copy the deck, give it your layers and your spacing, and ask first whether two masks can do it:\n"+
+		"   %s decompose YOURS.gds --deck YOUR-DECK.toml\n"+
+		"Add --output MASKS.gds to get the masks, and --report REPORT.json for the full account.\n\n%s\n", program, caution)
+	_, err := w.Write(b.Bytes())
+	return err
 }
