@@ -38,6 +38,7 @@ func run(ctx context.Context, args []string, con *console, s steps) int {
 	status := statusDone
 	app := newApp(con, []*cli.Command{
 		decomposeCommand(con, s, &status),
+		verifyCommand(con, &status),
 		demoCommand(con, s),
 	})
 	args, err := orderArguments(app, args)
