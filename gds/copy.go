@@ -19,7 +19,7 @@ import (
 // only with its longest element.
 func CopyStream(dst io.Writer, src io.ReaderAt, lib *Library, want Interest, plan Plan, progress func(bytes int64)) error {
 	c := &copier{dst: dst, src: src, lib: lib, plan: plan, table: newClasses(want.Figures), progress: progress,
-		window: make([]byte, bufferSize), out: make([]byte, 0, bufferSize+1<<17)}
+		window: make([]byte, max(64, min(bufferSize, lib.Bytes)))}
 	return c.run()
 }
 

@@ -9,7 +9,8 @@ import (
 // This file cuts a stream into records, in the manner of bufio.Scanner. It knows the four bytes at the head of a record
 // and the end of a stream; the grammar is the matter of index.go.
 
-// bufferSize is the size of the read buffer; one of about a mebibyte reads fastest and stays in the cache.
+// bufferSize is the size of the read buffer, once a stream has filled smaller ones: about a mebibyte reads fastest and stays
+// in the cache.
 const bufferSize = 1 << 20
 
 // Record is one record of a stream.
@@ -41,7 +42,7 @@ type Scanner struct {
 
 // NewScanner gives a scanner over the stream that r reads.
 func NewScanner(r io.Reader) *Scanner {
-	return &Scanner{r: r, buf: make([]byte, bufferSize)}
+	return &Scanner{r: r, buf: make([]byte, 1<<13)}
 }
 
 // Record gives the record of the last Scan that said true.
@@ -142,15 +143,17 @@ func (s *Scanner) fill() bool {
 		s.sum = crc32.Update(s.sum, castagnoli, s.buf[s.from:s.pos])
 		s.from = 0
 	}
-	if s.pos > 0 {
-		copy(s.buf, s.buf[s.pos:s.end])
+	full := s.end == len(s.buf)
+	to := s.buf
+	if full && (s.pos == 0 || len(s.buf) < bufferSize) {
+		to = make([]byte, 2*len(s.buf))
+	}
+	if full || s.pos > 0 {
+		copy(to, s.buf[s.pos:s.end])
+		s.buf = to
 		s.base += int64(s.pos)
 		s.end -= s.pos
 		s.pos, s.last = 0, 0
-	} else if s.end == len(s.buf) {
-		grown := make([]byte, 2*len(s.buf))
-		copy(grown, s.buf)
-		s.buf = grown
 	}
 	for tries := 0; tries < 100; tries++ {
 		n, err := s.r.Read(s.buf[s.end:])
