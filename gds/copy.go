@@ -19,7 +19,7 @@ import (
 // only with its longest element.
 func CopyStream(dst io.Writer, src io.ReaderAt, lib *Library, want Interest, plan Plan, progress func(bytes int64)) error {
 	c := &copier{dst: dst, src: src, lib: lib, plan: plan, table: newClasses(want.Figures), progress: progress,
-		window: make([]byte, max(64, min(bufferSize, lib.Bytes)))}
+		window: make([]byte, max(64, min(bufferSize, lib.Bytes))), out: make([]byte, 0, min(bufferSize, lib.Bytes)+direct)}
 	return c.run()
 }
 
@@ -240,9 +240,9 @@ func (c *copier) rewrite(what string, st *Structure, cp *Copy) error {
 			}
 			continue
 		}
-		kind := Kind(b[2])
-		length := int(binary.BigEndian.Uint16(b))
-		if checkRecord(length, kind, DataType(b[3])) != nil {
+		head := binary.BigEndian.Uint32(b)
+		length, kind := int(head>>16), Kind(head>>8)
+		if checkRecord(head) != nil {
 			return c.changed()
 		}
 		if kind == ENDSTR {

@@ -70,8 +70,26 @@ var rules = [kinds]rule{
 	BOX:  {anyElement | 1<<LAYER | 1<<BOXTYPE, 1<<LAYER | 1<<BOXTYPE, 1 << XY, 0},
 }
 
-// checkRecord checks the head of a record against the table.
-func checkRecord(length int, kind Kind, data DataType) error {
+// heads is the only head that a record of fixed length can have, by kind; 0 for the others. It is never written to.
+var heads = func() (heads [256]uint32) {
+	for k := range Kind(kinds) {
+		if n, fixed := k.Length(); fixed && !formats[k].old {
+			heads[k] = uint32(4+n)<<16 | uint32(k)<<8 | uint32(k.Type())
+		}
+	}
+	return heads
+}()
+
+// checkRecord checks the head of a record, its first four bytes, against the table.
+func checkRecord(head uint32) error {
+	if kind := Kind(head >> 8); head == heads[kind] {
+		return nil
+	}
+	return checkHead(int(head>>16), Kind(head>>8), DataType(head))
+}
+
+// checkHead is checkRecord for records of any length, and for what is wrong.
+func checkHead(length int, kind Kind, data DataType) error {
 	if err := checkLength(length); err != nil {
 		return err
 	}
@@ -95,43 +113,56 @@ func checkRecord(length int, kind Kind, data DataType) error {
 // begins with the whole record that opens an element.
 func (e *element) parse(b []byte) (size int, err error) {
 	*e = element{kind: Kind(b[2]), magnification: 1}
+	at, whole, err := e.walk(b)
+	if err != nil {
+		e.faultAt, e.faultRecord = at, Kind(b[at+2])
+		return 0, err
+	}
+	if !whole {
+		return 0, nil
+	}
+	return at, nil
+}
+
+// walk goes through the records of the element. It gives where it ends (whole), where b ends before it, or which record is
+// wrong.
+func (e *element) walk(b []byte) (at int, whole bool, err error) {
 	rule := &rules[e.kind]
-	at := 4
+	at = 4
 	last := e.kind
 	for {
 		if len(b)-at < 4 {
-			return 0, nil
+			return at, false, nil
 		}
-		length := int(binary.BigEndian.Uint16(b[at:]))
-		kind, data := Kind(b[at+2]), DataType(b[at+3])
-		e.faultAt, e.faultRecord = at, kind
-		if err := checkRecord(length, kind, data); err != nil {
-			return 0, err
+		head := binary.BigEndian.Uint32(b[at:])
+		length, kind := int(head>>16), Kind(head>>8)
+		if err := checkRecord(head); err != nil {
+			return at, false, err
 		}
 		if last == PROPATTR && kind != PROPVALUE {
-			return 0, faultf(ErrMissing, "PROPATTR must be followed by PROPVALUE, not by %v", kind)
+			return at, false, faultf(ErrMissing, "PROPATTR must be followed by PROPVALUE, not by %v", kind)
 		}
 		bit := kind.bit()
 		if kind == ENDEL {
 			if missing := rule.last &^ e.seen; missing != 0 {
-				return 0, faultf(ErrMissing, "%v is missing", firstKind(missing))
+				return at, false, faultf(ErrMissing, "%v is missing", firstKind(missing))
 			}
-			return at + length, nil
+			return at + length, true, nil
 		}
 		if rule.allowed&bit == 0 {
-			return 0, faultf(ErrOrder, "%v cannot stand in %v, which has no ENDEL yet", kind, e.kind)
+			return at, false, faultf(ErrOrder, "%v cannot stand in %v, which has no ENDEL yet", kind, e.kind)
 		}
 		if e.seen&bit&^repeatable != 0 {
-			return 0, faultf(ErrOrder, "%v stands twice", kind)
+			return at, false, faultf(ErrOrder, "%v stands twice", kind)
 		}
 		if e.seen&(1<<XY) != 0 && behindXY&bit == 0 {
-			return 0, faultf(ErrOrder, "%v stands behind XY", kind)
+			return at, false, faultf(ErrOrder, "%v stands behind XY", kind)
 		}
 		if len(b)-at < length {
-			return 0, nil
+			return at, false, nil
 		}
 		if err := e.record(rule, kind, last, b[at+4:at+length], at); err != nil {
-			return 0, err
+			return at, false, err
 		}
 		e.seen |= bit
 		last = kind

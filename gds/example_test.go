@@ -35,10 +35,10 @@ func ExampleScanner() {
 	}
 	fmt.Println(s.Err())
 	// Output:
-	// 92 STRNAME 4
-	// 250 STRNAME 4
-	// 258 SREF 0
-	// 286 SREF 0
+	// 90 STRNAME 4
+	// 242 STRNAME 4
+	// 250 SREF 0
+	// 278 SREF 0
 	// <nil>
 }
 

@@ -108,12 +108,12 @@ func (x *indexer) library() error {
 
 // next peeks at the next record between structures: BGNSTR or ENDLIB.
 func (x *indexer) next() (Kind, error) {
-	length, ok := x.s.head()
+	head, ok := x.s.head()
 	if !ok {
 		return 0, x.s.err
 	}
-	kind, data := Kind(x.s.buf[x.s.pos+2]), DataType(x.s.buf[x.s.pos+3])
-	err := checkRecord(length, kind, data)
+	kind := Kind(head >> 8)
+	err := checkRecord(head)
 	if err == nil && kind != BGNSTR && kind != ENDLIB {
 		err = faultf(ErrOrder, "%v stands where a structure (BGNSTR) or the end of the library (ENDLIB) must follow", kind)
 	}
@@ -142,13 +142,13 @@ func (x *indexer) header() error {
 	)
 	seen := uint64(0)
 	for {
-		length, ok := s.head()
+		head, ok := s.head()
 		if !ok {
 			return s.err
 		}
 		offset := s.place()
-		kind, data := Kind(s.buf[s.pos+2]), DataType(s.buf[s.pos+3])
-		err := checkRecord(length, kind, data)
+		kind := Kind(head >> 8)
+		err := checkRecord(head)
 		bit := kind.bit()
 		switch {
 		case err != nil:
@@ -217,12 +217,12 @@ func (x *indexer) structure() error {
 		if err != nil {
 			return x.elementFault(err, BOUNDARY, 0, BOUNDARY)
 		}
-		length, ok := s.head()
+		head, ok := s.head()
 		if !ok {
 			return x.inStructure(s.err)
 		}
-		kind, data := Kind(s.buf[s.pos+2]), DataType(s.buf[s.pos+3])
-		if err := checkRecord(length, kind, data); err != nil {
+		kind := Kind(head >> 8)
+		if err := checkRecord(head); err != nil {
 			return x.fault(err, kind)
 		}
 		switch {
@@ -246,13 +246,13 @@ func (x *indexer) structure() error {
 // strname reads STRNAME and gives the number of the name.
 func (x *indexer) strname() (int32, error) {
 	s := x.s
-	length, ok := s.head()
+	head, ok := s.head()
 	if !ok {
 		return 0, s.err
 	}
 	offset := s.place()
-	kind := Kind(s.buf[s.pos+2])
-	if err := checkRecord(length, kind, DataType(s.buf[s.pos+3])); err != nil {
+	kind := Kind(head >> 8)
+	if err := checkRecord(head); err != nil {
 		return 0, x.fault(err, kind)
 	}
 	if kind != STRNAME {
@@ -376,11 +376,11 @@ func (x *indexer) element() error {
 			}
 			return x.cutElement()
 		}
-		if err == nil {
-			err = x.keep(s.buf[s.pos : s.pos+size])
-		}
 		if err != nil {
 			return x.elementFault(err, e.kind, e.faultAt, e.faultRecord)
+		}
+		if err := x.keep(s.buf[s.pos : s.pos+size]); err != nil {
+			return x.elementFault(err, e.kind, 0, e.kind)
 		}
 		x.elements++
 		s.pos += size

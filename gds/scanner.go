@@ -87,10 +87,11 @@ func (s *Scanner) scan() bool {
 		s.padding()
 		return false
 	}
-	length, ok := s.head()
+	head, ok := s.head()
 	if !ok {
 		return false
 	}
+	length := int(head >> 16)
 	for s.end-s.pos < length {
 		if !s.fill() {
 			s.cutOff(length)
@@ -103,21 +104,20 @@ func (s *Scanner) scan() bool {
 	return true
 }
 
-// head makes sure that the head of the next record is in the buffer, and gives the record's length, with the head.
-func (s *Scanner) head() (length int, ok bool) {
+// head makes sure that the head of the next record is in the buffer, and gives it: length, kind, data type.
+func (s *Scanner) head() (head uint32, ok bool) {
 	for s.end-s.pos < 4 {
 		if !s.fill() {
 			s.cutOff(4)
 			return 0, false
 		}
 	}
-	b := s.buf[s.pos:s.end]
-	length = int(binary.BigEndian.Uint16(b))
-	if err := checkLength(length); err != nil {
-		s.fail(&SyntaxError{Offset: s.place(), Record: Kind(b[2]), Err: err})
+	head = binary.BigEndian.Uint32(s.buf[s.pos:s.end])
+	if err := checkLength(int(head >> 16)); err != nil {
+		s.fail(&SyntaxError{Offset: s.place(), Record: Kind(head >> 8), Err: err})
 		return 0, false
 	}
-	return length, true
+	return head, true
 }
 
 // checkLength says what is wrong with the length of a record.
