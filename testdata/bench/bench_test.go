@@ -40,11 +40,11 @@ func TestReadHeadStopsEarly(t *testing.T) {
 }
 
 func TestParse(t *testing.T) {
-	o, err := parse([]string{"--figures", "1e3,2000", "--layouts", "hard"})
+	o, err := parse([]string{"--figures", "1e3,2000", "--layouts", "flat,hard"})
 	if err != nil {
 		t.Fatal(err)
 	}
-	if len(o.figures) != 2 || o.figures[1] != 2000 || len(o.layouts) < 5 {
+	if len(o.figures) != 2 || o.figures[1] != 2000 || len(o.layouts) < 6 || o.layouts[0] != "flat" {
 		t.Errorf("parsed %+v", o)
 	}
 	for _, args := range [][]string{{"--figures", "many"}, {"--runs", "0"}, {"flat"}} {

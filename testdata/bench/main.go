@@ -52,7 +52,7 @@ func parse(args []string) (*options, error) {
 	o := &options{}
 	f := flag.NewFlagSet("bench", flag.ContinueOnError)
 	figures := f.String("figures", "1e4,1e5,1e6", "flat figures of each layout; several, with commas, show how cost grows")
-	names := f.String("layouts", "flat,cells", "names of layouts, or plain, hard, all, none; -list tells them")
+	names := f.String("layouts", "flat,cells", "names of layouts, with commas; plain, hard, all and none are groups, -list tells the names")
 	list := f.Bool("list", false, "list the layouts and stop")
 	f.IntVar(&o.jobs, "jobs", runtime.NumCPU(), "workers to compare one worker with")
 	f.IntVar(&o.runs, "runs", 3, "runs of each kind, of which the fastest counts")
@@ -67,20 +67,14 @@ func parse(args []string) (*options, error) {
 	if f.NArg() > 0 {
 		return nil, fmt.Errorf("%q is no option", f.Arg(0))
 	}
-	for _, e := range layouts.Catalogue() {
-		if *list {
+	if *list {
+		for _, e := range layouts.Catalogue() {
 			fmt.Printf("%-8s %s\n", e.Name, e.Says)
 		}
-		switch {
-		case *names == "all", *names == "hard" && e.Hard, *names == "plain" && !e.Hard:
-			o.layouts = append(o.layouts, e.Name)
-		}
+		return o, nil
 	}
-	if *list {
-		return &options{}, nil
-	}
-	if len(o.layouts) == 0 && *names != "none" {
-		o.layouts = strings.Split(*names, ",")
+	for _, word := range strings.Split(*names, ",") {
+		o.layouts = append(o.layouts, named(word)...)
 	}
 	for _, word := range strings.Split(*figures, ",") {
 		n, err := strconv.ParseFloat(word, 64)
@@ -93,4 +87,21 @@ func parse(args []string) (*options, error) {
 		return nil, fmt.Errorf("-runs and -jobs: give 1 or more")
 	}
 	return o, nil
+}
+
+// named gives the layouts that a word of -layouts stands for.
+func named(word string) []string {
+	if word == "none" {
+		return nil
+	}
+	var list []string
+	for _, e := range layouts.Catalogue() {
+		if word == "all" || word == "hard" && e.Hard || word == "plain" && !e.Hard {
+			list = append(list, e.Name)
+		}
+	}
+	if list == nil {
+		return []string{word}
+	}
+	return list
 }
