@@ -16,11 +16,14 @@ import (
 
 // solver is the workspace and the account of one call of Solve.
 type solver struct {
-	budget Budget
-	work   int64 // spent
-	width  int
+	budget  Budget
+	work    int64 // spent
+	width   int
+	quick   bool  // what is beyond the budget gets a descent only
+	crossed int64 // work of crossing assignments
 
 	order  minFill
+	sweep  sweeper
 	plan   plan
 	tables tables
 	local  []int32 // node of the kernel -> node of the piece in hand, or -1
@@ -256,7 +259,7 @@ func (s *solver) balanced(g *graph, f *forest, top int32, below []int32) (energy
 func (s *solver) planned(work int64) bool {
 	work = min(work, s.budget.Work-s.work)
 	limit := min(bits.Len64(uint64(max(0, work)))-2, bits.Len64(uint64(max(0, s.budget.Memory)))-5)
-	if limit < 0 || !s.order.run(&s.sub, limit, work) {
+	if limit < 0 || !s.narrow(&s.sub, limit, work) {
 		return false
 	}
 	s.plan.make(&s.sub, &s.order)

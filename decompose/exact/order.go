@@ -56,13 +56,27 @@ type minFill struct {
 // run orders all nodes of g. It gives up, answering false, where no node has at most limit neighbours any more or the work passes the given number. The width is then
 // the least degree met that was too high, or the largest width so far.
 func (o *minFill) run(g *graph, limit int, work int64) bool {
+	return o.eliminateAll(g, limit, work, nil)
+}
+
+// follow is run with a given order.
+func (o *minFill) follow(g *graph, limit int, work int64, order []int32) bool {
+	return o.eliminateAll(g, limit, work, order)
+}
+
+func (o *minFill) eliminateAll(g *graph, limit int, work int64, given []int32) bool {
 	limit = min(limit, maxWidth)
 	o.load(g)
 	n := g.nodes()
 	o.order, o.bag, o.bagStart = resize(o.order, n)[:0], resize(o.bag, len(g.adj))[:0], append(resize(o.bagStart, n+1)[:0], 0)
 	o.width, o.work = 0, 0
 	for len(o.order) < n {
-		v := o.pick(int32(limit))
+		var v int32
+		if given == nil {
+			v = o.pick(int32(limit))
+		} else if v = given[len(o.order)]; int(o.node[v].degree) > limit {
+			v = -1
+		}
 		if v < 0 {
 			o.width = max(o.width, limit+1)
 			return false

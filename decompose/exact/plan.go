@@ -205,7 +205,7 @@ func (t *tables) solve(p *plan, s, h []int64) int64 {
 	t.back = resize(t.back, int(p.back[len(p.back)-1]))
 	var total int64
 	top := 0
-	for r := range p.node {
+	for r := range p.span {
 		bag := p.bag[p.bagStart[r]:p.bagStart[r+1]]
 		d := len(bag)
 		size := 1 << d
@@ -262,18 +262,23 @@ func (t *tables) own(p *plan, r, d int, s []int64, h int64) {
 func (t *tables) take(m []int64, rest, bag []int32) {
 	size := 1 << len(bag)
 	off, on := t.off[:size], t.on[:size]
-	if len(rest) == len(bag) {
-		for i := range off {
-			off[i] += m[2*i]
-			on[i] += m[2*i+1]
+	// Where rest begins like the bag, the message is read in runs. Between runs, step[b] is what a carry into bit b of the table's index adds to the message's: the weight of the bit
+	// less those of the bits between the run and it, which go back to 0.
+	same := 0
+	for same < len(rest) && rest[same] == bag[same] {
+		same++
+	}
+	if same == len(rest) && len(rest) < len(bag) {
+		// The whole message again and again.
+		for i := 0; i < size; i += 1 << same {
+			addPairs(off[i:i+1<<same], on[i:i+1<<same], m)
 		}
 		return
 	}
-	// step[b] is what a carry into bit b of the table's index adds to the message's: the weight of the bit less those of the bits below it, which go back to 0.
-	sum, k := 0, 0
-	for b, w := range bag {
+	sum, k := 0, same
+	for b := same; b < len(bag); b++ {
 		weight := 0
-		if k < len(rest) && rest[k] == w {
+		if k < len(rest) && rest[k] == bag[b] {
 			weight = 2 << k
 			k++
 		}
@@ -282,10 +287,38 @@ func (t *tables) take(m []int64, rest, bag []int32) {
 	}
 	t.step[len(bag)] = 0
 	at := 0
+	if same == 0 {
+		for i := range off {
+			off[i] += m[at]
+			on[i] += m[at+1]
+			at += t.step[bits.TrailingZeros(uint(i+1))]
+		}
+		return
+	}
+	run := 1 << same
+	for i := 0; i < size; i += run {
+		addPairs(off[i:i+run], on[i:i+run], m[at:at+2*run])
+		at += t.step[bits.TrailingZeros(uint(i+run))]
+	}
+}
+
+// addPairs adds the even entries of m to off, the odd ones to on.
+func addPairs(off, on, m []int64) {
+	on, m = on[:len(off)], m[:2*len(off)]
+	for len(off) >= 4 && len(on) >= 4 && len(m) >= 8 {
+		off[0] += m[0]
+		on[0] += m[1]
+		off[1] += m[2]
+		on[1] += m[3]
+		off[2] += m[4]
+		on[2] += m[5]
+		off[3] += m[6]
+		on[3] += m[7]
+		off, on, m = off[4:], on[4:], m[8:]
+	}
 	for i := range off {
-		off[i] += m[at]
-		on[i] += m[at+1]
-		at += t.step[bits.TrailingZeros(uint(i+1))]
+		off[i] += m[2*i]
+		on[i] += m[2*i+1]
 	}
 }
 
@@ -298,11 +331,8 @@ func choose(off, on, m []int64, back []uint64) {
 		hi := min(lo+64, len(off))
 		for i := lo; i < hi; i++ {
 			a, b := off[i], on[i]
-			if b < a {
-				a = b
-				word |= 1 << (i - lo)
-			}
-			m[i] = a
+			m[i] = min(a, b)
+			word |= uint64(b-a) >> 63 << (i - lo) // the sign of the difference, which is below 2^63
 		}
 		back[w] = word
 	}
@@ -310,7 +340,7 @@ func choose(off, on, m []int64, back []uint64) {
 
 // decode writes the masks by rank.
 func (t *tables) decode(p *plan, x []uint8) {
-	for r := len(p.node) - 1; r >= 0; r-- {
+	for r := len(p.span) - 1; r >= 0; r-- {
 		idx := 0
 		for i, w := range p.bag[p.bagStart[r]:p.bagStart[r+1]] {
 			idx |= int(x[w]) << i

@@ -1,0 +1,310 @@
+package exact
+
+import "slices"
+
+// This file covers a graph that is too wide for elimination with overlapping parts that are not: windows of consecutive levels of a breadth-first walk, as wide as the limit
+// allows and each begun in the middle of the one before, and, for edges that no window holds, clusters grown round them. They serve the search, which solves one part exactly with
+// the rest held, and the lower bound, which shares the weights among the parts.
+
+// cluster is a part of a graph with the plan that solves it.
+type cluster struct {
+	plan plan
+	node []int32 // of the graph, by rank
+	half []int32 // entry of the graph's rows, by place in plan.ref
+}
+
+// cover is a set of clusters of one graph.
+type cover struct {
+	g        *graph
+	edge     []int32 // entry of a row -> number of the edge
+	edges    int
+	clusters []cluster
+	held     []int32 // per edge: clusters that hold it
+	work     int64   // of carrying out all plans once
+	memory   int64
+	width    int
+}
+
+// maker builds a cover.
+type maker struct {
+	s     *solver
+	c     *cover
+	limit int   // width that a cluster may have
+	room  int64 // bytes that the cover may take
+	local []int32
+	sub   graph
+	half  []int32 // entry of sub's rows -> entry of the graph's
+	nodes []int32
+	level []int32
+	first []int32 // per level: first entry in walk
+	walk  []int32
+	met   []bool
+	score []int32
+	full  bool // out of room
+}
+
+// numberEdges gives each edge of g a number, in the order of the rows of the lesser ends.
+func numberEdges(g *graph) (edge []int32, count int) {
+	n := g.nodes()
+	edge = make([]int32, len(g.adj))
+	// In ascending order of the greater end, its entry takes the numbers from those of the lesser ends; pending[j] lists them.
+	next := make([]int32, n)
+	copy(next, g.start[:n])
+	at := int32(0)
+	type twin struct{ to, half int32 }
+	back := make([]twin, len(g.adj))
+	for i := range int32(n) {
+		for h := g.start[i]; h < g.start[i+1]; h++ {
+			j := g.adj[h]
+			back[next[j]] = twin{i, h}
+			next[j]++
+		}
+	}
+	// back holds the rows in ascending order of neighbours, with the entry at the other end.
+	mark := make([]int32, n)
+	for i := range int32(n) {
+		for h := g.start[i]; h < g.start[i+1]; h++ {
+			mark[g.adj[h]] = h
+		}
+		for _, t := range back[g.start[i]:g.start[i+1]] {
+			if t.to > i {
+				edge[mark[t.to]], edge[t.half] = at, at
+				at++
+			}
+		}
+	}
+	return edge, int(at)
+}
+
+// coverWith covers g with clusters of at most the given width.
+func (s *solver) coverWith(g *graph, edge []int32, edges, limit int) *cover {
+	n := g.nodes()
+	m := &maker{s: s, limit: limit, room: s.budget.Memory / 2, local: make([]int32, n), level: make([]int32, n), met: make([]bool, n), score: make([]int32, n)}
+	for i := range m.local {
+		m.local[i] = -1
+	}
+	m.c = &cover{g: g, edge: edge, edges: edges, held: make([]int32, edges)}
+	m.windows()
+	m.grow()
+	return m.c
+}
+
+// try plans the subgraph that nodes span, and tells whether it is narrow enough.
+func (m *maker) try(nodes []int32) bool {
+	m.load(nodes)
+	return m.s.narrow(&m.sub, m.limit, unlimited)
+}
+
+// load makes m.sub the graph that nodes span.
+func (m *maker) load(nodes []int32) {
+	g := m.c.g
+	halves := 0
+	for i, v := range nodes {
+		m.local[v] = int32(i)
+		halves += int(g.start[v+1] - g.start[v])
+	}
+	m.sub.reset(len(nodes), halves)
+	m.half = resize(m.half, halves)[:0]
+	for _, v := range nodes {
+		for h := g.start[v]; h < g.start[v+1]; h++ {
+			if l := m.local[g.adj[h]]; l >= 0 {
+				m.sub.adj = append(m.sub.adj, l)
+				m.half = append(m.half, h)
+			}
+		}
+		m.sub.start = append(m.sub.start, int32(len(m.sub.adj)))
+		m.sub.h = append(m.sub.h, 0)
+	}
+	for _, v := range nodes {
+		m.local[v] = -1
+	}
+}
+
+// add makes a cluster of nodes, whose plan the last try left in m.s.plan; there is none when it is out of room.
+func (m *maker) add(nodes []int32) {
+	p := &m.s.plan
+	p.make(&m.sub, &m.s.order)
+	c := cluster{plan: p.compact(), node: make([]int32, len(nodes)), half: make([]int32, len(p.ref))}
+	for r, v := range p.node {
+		c.node[r] = nodes[v]
+	}
+	for k, ref := range p.ref {
+		c.half[k] = m.half[ref.half]
+	}
+	m.keep(c)
+}
+
+// keep puts a cluster in the cover if there is room.
+func (m *maker) keep(c cluster) {
+	size := c.bytes()
+	if m.c.memory+size > m.room {
+		m.full = true
+		return
+	}
+	m.c.memory += size
+	for _, h := range c.half {
+		m.c.held[m.c.edge[h]]++
+	}
+	m.c.work += c.plan.work
+	m.c.width = max(m.c.width, c.plan.width)
+	m.c.clusters = append(m.c.clusters, c)
+}
+
+// bytes is the memory that a cluster takes, with what the lower bound keeps for it.
+func (c *cluster) bytes() int64 {
+	p := &c.plan
+	return int64(len(p.span))*48 + int64(len(p.bag))*4 + int64(len(p.ref))*24
+}
+
+// compact copies what solve and decode need.
+func (p *plan) compact() plan {
+	return plan{
+		bagStart: slices.Clone(p.bagStart), bag: slices.Clone(p.bag), span: slices.Clone(p.span), refStart: slices.Clone(p.refStart), ref: slices.Clone(p.ref),
+		back: slices.Clone(p.back), work: p.work, peak: p.peak, width: p.width,
+	}
+}
+
+// windows covers the graph by levels of a breadth-first walk from the end of another walk.
+func (m *maker) windows() {
+	g := m.c.g
+	n := g.nodes()
+	w := &m.s.sweep
+	for i := range m.level {
+		m.level[i] = -1
+	}
+	for start := range int32(n) {
+		if m.level[start] >= 0 {
+			continue
+		}
+		m.levels(w.far(g, start))
+		m.slide()
+	}
+}
+
+// levels walks over the component of a node.
+func (m *maker) levels(from int32) {
+	g := m.c.g
+	m.walk, m.first = append(m.walk[:0], from), append(m.first[:0], 0)
+	m.level[from] = 0
+	last := int32(0)
+	for at := 0; at < len(m.walk); at++ {
+		v := m.walk[at]
+		if m.level[v] > last {
+			last = m.level[v]
+			m.first = append(m.first, int32(at))
+		}
+		adj, _ := g.row(v)
+		for _, x := range adj {
+			if m.level[x] < 0 {
+				m.level[x] = m.level[v] + 1
+				m.walk = append(m.walk, x)
+			}
+		}
+	}
+	m.first = append(m.first, int32(len(m.walk)))
+}
+
+// slide cuts the walk into windows.
+func (m *maker) slide() {
+	levels := len(m.first) - 1
+	span := 2 // levels of the last window
+	for at := 0; !m.full; {
+		fits := func(k int) bool { return m.try(m.walk[m.first[at]:m.first[min(at+k, levels)]]) }
+		k := min(span, levels-at)
+		if fits(k) {
+			for at+k < levels && fits(k+1) {
+				k++
+			}
+		} else {
+			for k--; k > 0 && !fits(k); k-- {
+			}
+		}
+		if k < 2 && at+1 < levels {
+			// Not even two levels: the edges here are left for grow.
+			at++
+			span = 2
+			continue
+		}
+		nodes := m.walk[m.first[at]:m.first[at+k]]
+		m.try(nodes)
+		m.add(nodes)
+		if at+k >= levels {
+			return
+		}
+		span = k
+		at += k / 2 // at most the last level of this window, so that the edges to the next level are in the next one
+	}
+}
+
+// grow makes clusters round edges that no cluster holds: always the node with most such edges to the cluster, then with most edges, then the least.
+func (m *maker) grow() {
+	g := m.c.g
+	for v := range int32(g.nodes()) {
+		for h := g.start[v]; h < g.start[v+1]; h++ {
+			if m.full {
+				return
+			}
+			if g.adj[h] > v && m.c.held[m.c.edge[h]] == 0 {
+				m.around(v, g.adj[h])
+			}
+		}
+	}
+}
+
+// around makes the largest cluster that begins with two nodes.
+func (m *maker) around(u, v int32) {
+	g := m.c.g
+	most := 3 * (m.limit + 1)
+	m.nodes = m.nodes[:0]
+	var border []int32
+	take := func(v int32) {
+		m.met[v] = true
+		m.nodes = append(m.nodes, v)
+		for h := g.start[v]; h < g.start[v+1]; h++ {
+			x := g.adj[h]
+			if m.met[x] {
+				continue
+			}
+			if m.score[x] == 0 {
+				border = append(border, x)
+			}
+			m.score[x]++
+			if m.c.held[m.c.edge[h]] == 0 {
+				m.score[x] += 1 << 16
+			}
+		}
+	}
+	take(u)
+	take(v)
+	for len(m.nodes) < most {
+		best := -1
+		for i, x := range border {
+			if !m.met[x] && (best < 0 || m.score[x] > m.score[border[best]] || m.score[x] == m.score[border[best]] && x < border[best]) {
+				best = i
+			}
+		}
+		if best < 0 {
+			break
+		}
+		take(border[best])
+	}
+	for _, x := range border {
+		m.score[x] = 0
+	}
+	for _, x := range m.nodes {
+		m.met[x] = false
+		m.score[x] = 0
+	}
+	// limit+1 nodes always fit; find the longest prefix that does, by bisection.
+	lo, hi := min(m.limit+1, len(m.nodes)), len(m.nodes)
+	for lo < hi {
+		mid := (lo + hi + 1) / 2
+		if m.try(m.nodes[:mid]) {
+			lo = mid
+		} else {
+			hi = mid - 1
+		}
+	}
+	m.try(m.nodes[:lo])
+	m.add(m.nodes[:lo])
+}
