@@ -5,8 +5,6 @@ import (
 	"encoding/json"
 	"io"
 	"strconv"
-	"strings"
-	"unicode/utf8"
 )
 
 // This file writes JSON piece by piece, so that a list of a million entries never stands in memory. Objects and lists open
@@ -142,7 +140,7 @@ func (j *jsonWriter) str(s string) {
 		j.w.WriteByte('"')
 		return
 	}
-	quoted, err := json.Marshal(text(s))
+	quoted, err := json.Marshal(Text(s))
 	if err != nil {
 		quoted = []byte(`""`)
 	}
@@ -157,16 +155,4 @@ func plain(s string) bool {
 		}
 	}
 	return true
-}
-
-// text gives s as UTF-8.
-func text(s string) string {
-	if utf8.ValidString(s) {
-		return s
-	}
-	var b strings.Builder
-	for i := range len(s) {
-		b.WriteRune(rune(s[i]))
-	}
-	return b.String()
 }

@@ -316,7 +316,7 @@ func TestSummaryOfSuccess(t *testing.T) {
 
 func TestAmounts(t *testing.T) {
 	for n, want := range map[int64]string{0: "0", 7: "7", 999: "999", 1000: "1,000", 12345: "12,345", 1234567: "1,234,567", math.MaxInt64: "9,223,372,036,854,775,807"} {
-		if got := number(n); got != want {
+		if got := Count(n); got != want {
 			t.Errorf("number %d is %q, want %q", n, got, want)
 		}
 	}

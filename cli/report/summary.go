@@ -45,7 +45,7 @@ func (s *summary) verdict() {
 	var bad []string
 	for i := range s.r.Result.Layers {
 		if l := &s.r.Result.Layers[i]; l.UnresolvedPairs > 0 {
-			bad = append(bad, fmt.Sprintf("%s %s", l.Name, number(l.UnresolvedPairs)))
+			bad = append(bad, fmt.Sprintf("%s %s", l.Name, Count(l.UnresolvedPairs)))
 		}
 	}
 	name := s.r.Input.Name
@@ -68,7 +68,7 @@ func (s *summary) table() {
 		cell   func(l *decompose.LayerResult) string
 	}
 	tally := func(label string, always bool, n func(l *decompose.LayerResult) int64) row {
-		return row{label, always, func(l *decompose.LayerResult) string { return number(n(l)) }}
+		return row{label, always, func(l *decompose.LayerResult) string { return Count(n(l)) }}
 	}
 	rows := []row{
 		{"same-mask spacing", true, func(l *decompose.LayerResult) string { return s.r.Rules.Length(float64(l.Spacing)) }},
@@ -92,7 +92,7 @@ func (s *summary) table() {
 			if l.Wishes == 0 {
 				return "0"
 			}
-			return number(l.WishesKept) + " of " + number(l.Wishes)
+			return Count(l.WishesKept) + " of " + Count(l.Wishes)
 		}},
 		{"area on A", true, func(l *decompose.LayerResult) string { return s.area(l.AreaA) }},
 		{"area on B", true, func(l *decompose.LayerResult) string { return s.area(l.AreaB) }},
@@ -100,7 +100,7 @@ func (s *summary) table() {
 	}
 	table := [][]string{{""}}
 	for i := range layers {
-		table[0] = append(table[0], text(layers[i].Name))
+		table[0] = append(table[0], Text(layers[i].Name))
 	}
 	for _, row := range rows {
 		line, some := []string{row.label}, row.always
@@ -114,7 +114,7 @@ func (s *summary) table() {
 		}
 	}
 	s.line("")
-	s.aligned(table)
+	WriteTable(s.w, table, "l"+strings.Repeat("r", len(layers)))
 }
 
 // leastPossible words what is proved about the number of unresolved pairs.
@@ -125,25 +125,7 @@ func leastPossible(l *decompose.LayerResult) string {
 	case l.ProvedOptimal:
 		return "proved"
 	}
-	return "not proved, at least " + number(l.LowerBound)
-}
-
-// aligned prints a table, the first column to the left, the others to the right.
-func (s *summary) aligned(table [][]string) {
-	widths := make([]int, len(table[0]))
-	for _, line := range table {
-		for i, c := range line {
-			widths[i] = max(widths[i], len([]rune(c)))
-		}
-	}
-	for _, line := range table {
-		var b strings.Builder
-		fmt.Fprintf(&b, "  %-*s", widths[0], line[0])
-		for i, c := range line[1:] {
-			fmt.Fprintf(&b, "  %*s", widths[i+1], c)
-		}
-		s.line("%s", b.String())
-	}
+	return "not proved, at least " + Count(l.LowerBound)
 }
 
 // group is a number of components that are equal, and what they leave.
@@ -161,15 +143,15 @@ func (s *summary) layer(l *decompose.LayerResult) {
 	groups := groupsOf(l.Unresolved)
 	s.line("")
 	if len(groups) == 1 {
-		s.line("%s: the unresolved components are all of one kind", text(l.Name))
+		s.line("%s: the unresolved components are all of one kind", Text(l.Name))
 	} else {
-		s.line("%s: %s kinds of unresolved components, worst first", text(l.Name), number(int64(len(groups))))
+		s.line("%s: %s kinds of unresolved components, worst first", Text(l.Name), Count(int64(len(groups))))
 	}
 	for _, g := range groups[:min(len(groups), groupsShown)] {
 		s.group(g)
 	}
 	if more := len(groups) - groupsShown; more > 0 {
-		s.line("  %s more kinds: write a --report for the full list", number(int64(more)))
+		s.line("  %s more kinds: write a --report for the full list", Count(int64(more)))
 	}
 }
 
@@ -202,7 +184,7 @@ func (s *summary) group(g *group) {
 	}
 	s.line("  %s: %s, %s left on one mask", times(g.times), what, count(len(u.Pairs), "pair"))
 	if u.Cell != "" {
-		s.line("      at (%s) in cell %s", s.place(u.CellPlace), text(u.Cell))
+		s.line("      at (%s) in cell %s", s.place(u.CellPlace), Text(u.Cell))
 	}
 	if len(u.Pairs) > 0 {
 		p := &u.Pairs[0]
@@ -210,7 +192,7 @@ func (s *summary) group(g *group) {
 		if len(u.Pairs) > 1 {
 			first = "the first pair"
 		}
-		line := fmt.Sprintf("      %s: from (%s) to (%s) in top %s, on mask %v", first, s.place(p.From), s.place(p.To), text(u.Top), p.Mask)
+		line := fmt.Sprintf("      %s: from (%s) to (%s) in top %s, on mask %v", first, s.place(p.From), s.place(p.To), Text(u.Top), p.Mask)
 		if p.Widen > 0 {
 			line += "; widen the gap by " + s.r.Rules.Length(float64(p.Widen))
 		}
@@ -260,20 +242,6 @@ func Bytes(n int64) string {
 	return fmt.Sprintf("%d B", n)
 }
 
-// number words a count, with commas between thousands.
-func number(n int64) string {
-	digits := strconv.FormatInt(n, 10)
-	from := len(digits) % 3
-	parts := []string{}
-	if from > 0 {
-		parts = append(parts, digits[:from])
-	}
-	for i := from; i < len(digits); i += 3 {
-		parts = append(parts, digits[i:i+3])
-	}
-	return strings.Join(parts, ",")
-}
-
 // count words a number of things.
 func count(n int, thing string) string {
 	if n == 1 {
@@ -282,7 +250,7 @@ func count(n int, thing string) string {
 	if strings.HasSuffix(thing, "ch") {
 		thing += "e"
 	}
-	return number(int64(n)) + " " + thing + "s"
+	return Count(int64(n)) + " " + thing + "s"
 }
 
 // times words how often a thing occurs.
@@ -290,7 +258,7 @@ func times(n int64) string {
 	if n == 1 {
 		return "once"
 	}
-	return number(n) + " times"
+	return Count(n) + " times"
 }
 
 // area words an area that is given in square database units.
