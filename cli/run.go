@@ -39,6 +39,7 @@ func run(ctx context.Context, args []string, con *console, s steps) int {
 	app := newApp(con, []*cli.Command{
 		decomposeCommand(con, s, &status),
 		verifyCommand(con, &status),
+		surveyCommand(con),
 		demoCommand(con, s),
 	})
 	args, err := orderArguments(app, args)
