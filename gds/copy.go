@@ -18,14 +18,18 @@ import (
 // dst where these fail, and says what is wrong with a plan that does not fit lib. Memory does not grow with the stream,
 // only with its longest element.
 func CopyStream(dst io.Writer, src io.ReaderAt, lib *Library, want Interest, plan Plan, progress func(bytes int64)) error {
-	c := &copier{dst: dst, src: src, lib: lib, plan: plan, table: newClasses(want.Figures), progress: progress,
-		window: make([]byte, max(64, min(bufferSize, lib.Bytes))), out: make([]byte, 0, min(bufferSize, lib.Bytes)+direct)}
-	return c.run()
+	return newCopier(dst, src, lib, want, plan, progress, bufferSize).run()
+}
+
+// newCopier makes a copier with a window of at most the given size.
+func newCopier(dst io.Writer, src io.ReaderAt, lib *Library, want Interest, plan Plan, progress func(bytes int64), window int) *copier {
+	return &copier{dst: newBehind(dst), src: src, lib: lib, plan: plan, table: newClasses(want.Figures), progress: progress,
+		window: make([]byte, max(16, min(int64(window), lib.Bytes))), out: make([]byte, 0, min(bufferSize, lib.Bytes)+1<<16)}
 }
 
 // copier is the state of pass 2.
 type copier struct {
-	dst      io.Writer
+	dst      *behind
 	src      io.ReaderAt
 	lib      *Library
 	plan     Plan
@@ -50,6 +54,18 @@ type copier struct {
 
 // run copies the whole stream.
 func (c *copier) run() error {
+	err := c.stream()
+	if err == nil {
+		err = c.flush()
+	}
+	if late := c.dst.close(); err == nil {
+		err = late
+	}
+	return err
+}
+
+// stream copies part by part.
+func (c *copier) stream() error {
 	lib := c.lib
 	first := lib.End
 	if len(lib.Structures) > 0 {
@@ -91,7 +107,7 @@ func (c *copier) run() error {
 	} else if err != nil && err != io.EOF {
 		return err
 	}
-	return c.flush()
+	return nil
 }
 
 // begin makes [from, to) of src the part that is being copied.
@@ -175,25 +191,21 @@ func (c *copier) raw(what string, from, to int64, sum uint32) error {
 	}
 }
 
-// direct is the length from which a run is written from where it lies.
-const direct = 1 << 16
-
 // emit writes the run up to the given place in the window.
 func (c *copier) emit(to int) error {
 	run := c.window[c.run0:to]
 	c.run0 = to
-	if len(run) < direct {
-		c.out = append(c.out, run...)
-		return c.spill()
+	for {
+		if err := c.spill(); err != nil || len(run) == 0 {
+			return err
+		}
+		n := min(len(run), bufferSize-len(c.out))
+		c.out = append(c.out, run[:n]...)
+		run = run[n:]
 	}
-	if err := c.flush(); err != nil {
-		return err
-	}
-	_, err := c.dst.Write(run)
-	return err
 }
 
-// spill writes out the buffer once it is full.
+// spill hands the buffer over once it is full.
 func (c *copier) spill() error {
 	if len(c.out) < bufferSize {
 		return nil
@@ -201,12 +213,9 @@ func (c *copier) spill() error {
 	return c.flush()
 }
 
-func (c *copier) flush() error {
-	if len(c.out) == 0 {
-		return nil
-	}
-	_, err := c.dst.Write(c.out)
-	c.out = c.out[:0]
+// flush hands the buffer over.
+func (c *copier) flush() (err error) {
+	c.out, err = c.dst.put(c.out)
 	return err
 }
 
@@ -380,15 +389,15 @@ func (w *rewriter) plain() error {
 			switch a.Op {
 			case Keep:
 			case Relayer:
-				at := len(c.out) + c.pos - c.run0
-				c.out = append(c.out, c.window[c.run0:c.pos+size]...)
-				c.run0 = c.pos + size
-				binary.BigEndian.PutUint64(c.out[at+8:], uint64(a.Layer.Layer)<<48|plainType|uint64(a.Layer.Type))
-				if len(c.out) >= bufferSize {
-					if err := c.flush(); err != nil {
+				if c.run0 < c.pos || len(c.out) >= bufferSize {
+					if err := c.emit(c.pos); err != nil {
 						return err
 					}
 				}
+				at := len(c.out)
+				c.out = append(c.out, b[:size]...)
+				c.run0 = c.pos + size
+				binary.BigEndian.PutUint64(c.out[at+8:], uint64(a.Layer.Layer)<<48|plainType|uint64(a.Layer.Type))
 			default:
 				w.figure--
 				return nil

@@ -2,14 +2,12 @@ package gds
 
 import (
 	"bytes"
-	"encoding/binary"
 	"errors"
 	"fmt"
 	"io"
 	"math/rand/v2"
 	"os"
 	"runtime"
-	"slices"
 	"strings"
 	"testing"
 	"testing/iotest"
@@ -18,203 +16,8 @@ import (
 // copied runs a plan over a stream in memory, through a window of the given size.
 func copied(data []byte, lib *Library, want Interest, plan Plan, window int) ([]byte, error) {
 	var out bytes.Buffer
-	c := &copier{dst: &out, src: bytes.NewReader(data), lib: lib, plan: plan, table: newClasses(want.Figures), window: make([]byte, window)}
-	err := c.run()
+	err := newCopier(&out, bytes.NewReader(data), lib, want, plan, nil, window).run()
 	return out.Bytes(), err
-}
-
-// slowRecord writes a record as it is.
-func slowRecord(out []byte, r Record) []byte {
-	out = append(out, byte((len(r.Data)+4)>>8), byte(len(r.Data)+4), byte(r.Kind), byte(r.Type))
-	return append(out, r.Data...)
-}
-
-// padded is a name as the format wants it.
-func padded(name string) []byte {
-	b := []byte(name)
-	if len(b)%2 != 0 {
-		b = append(b, 0)
-	}
-	return b
-}
-
-// slowCopy is the slow twin of CopyStream: it holds the stream as records, and goes through them element by element.
-func slowCopy(t testing.TB, data []byte, want Interest, plan Plan) []byte {
-	var out []byte
-	records := slowRecords(t, data)
-	structure := -1
-	for i := 0; i < len(records); {
-		if records[i].Kind != BGNSTR {
-			out = slowRecord(out, records[i])
-			i++
-			continue
-		}
-		structure++
-		end := i
-		for records[end].Kind != ENDSTR {
-			end++
-		}
-		copies := plan.Copies(structure)
-		if len(copies) == 0 {
-			copies = []Copy{{}}
-		}
-		for k := range copies {
-			out = slowStructure(out, records[i:end+1], want, plan, &copies[k])
-		}
-		i = end + 1
-	}
-	last := records[len(records)-1]
-	return append(out, data[last.Offset+4:]...)
-}
-
-func slowStructure(out []byte, records []Record, want Interest, plan Plan, cp *Copy) []byte {
-	figure, ref := uint32(0), int32(0)
-	var element []Record
-	for _, r := range records {
-		if element == nil && elementKinds&r.Kind.bit() == 0 {
-			if r.Kind == STRNAME && cp.Name != "" {
-				r.Data = padded(cp.Name)
-			}
-			if r.Kind == ENDSTR {
-				out = append(out, cp.Tail...)
-			}
-			out = slowRecord(out, r)
-			continue
-		}
-		element = append(element, r)
-		if r.Kind != ENDEL {
-			continue
-		}
-		get := func(kind Kind) []byte {
-			for _, r := range element {
-				if r.Kind == kind {
-					return r.Data
-				}
-			}
-			return nil
-		}
-		write := func(change func(r Record) []Record) {
-			for _, r := range element {
-				for _, c := range change(r) {
-					out = slowRecord(out, c)
-				}
-			}
-		}
-		same := func(r Record) []Record { return []Record{r} }
-		var done bool
-		if k := element[0].Kind; k == BOUNDARY || k == PATH {
-			layer := LayerType{binary.BigEndian.Uint16(get(LAYER)), binary.BigEndian.Uint16(get(DATATYPE))}
-			if want.Figures[layer] != 0 {
-				if cp.Figures != nil {
-					done = true
-					a := plan.Actions[cp.Figures[figure]]
-					onto := func(r Record) []Record {
-						switch r.Kind {
-						case LAYER:
-							r.Data = binary.BigEndian.AppendUint16(nil, a.Layer.Layer)
-						case DATATYPE:
-							r.Data = binary.BigEndian.AppendUint16(nil, a.Layer.Type)
-						}
-						return []Record{r}
-					}
-					if a.Op == Keep || a.Op == KeepAndCopy || a.Op == KeepAndReplace {
-						write(same)
-					}
-					if a.Op == Relayer || a.Op == KeepAndCopy {
-						write(onto)
-					}
-					if a.Op == Replace || a.Op == KeepAndReplace {
-						pick := func(kinds ...Kind) {
-							for _, r := range element {
-								if slices.Contains(kinds, r.Kind) {
-									out = slowRecord(out, r)
-								}
-							}
-						}
-						for _, p := range cp.Pieces[figure] {
-							out = slowRecord(out, Record{Kind: BOUNDARY})
-							pick(ELFLAGS, PLEX)
-							out = slowPiece(out, p)
-							pick(PROPATTR, PROPVALUE)
-							out = slowRecord(out, Record{Kind: ENDEL})
-						}
-					}
-				}
-				figure++
-			}
-		}
-		if k := element[0].Kind; k == SREF || k == AREF {
-			for _, c := range cp.Refs {
-				if c.Index != ref {
-					continue
-				}
-				done = true
-				if c.Split == nil {
-					write(func(r Record) []Record {
-						if r.Kind == SNAME && c.Name != "" {
-							r.Data = padded(c.Name)
-						}
-						return []Record{r}
-					})
-				}
-				for _, p := range c.Split {
-					name := p.Name
-					if name == "" {
-						name = c.Name
-					}
-					single := p.Columns == 1 && p.Rows == 1
-					write(func(r Record) []Record {
-						points := []Point{p.At, p.ColumnEnd, p.RowEnd}
-						switch r.Kind {
-						case SREF, AREF:
-							r.Kind = AREF
-							if single {
-								r.Kind = SREF
-							}
-						case SNAME:
-							if name != "" {
-								r.Data = padded(name)
-							}
-						case COLROW:
-							return nil
-						case XY:
-							if single {
-								points = points[:1]
-							}
-							r.Data = nil
-							for _, q := range points {
-								r.Data = binary.BigEndian.AppendUint32(r.Data, uint32(q.X))
-								r.Data = binary.BigEndian.AppendUint32(r.Data, uint32(q.Y))
-							}
-							if !single {
-								colrow := binary.BigEndian.AppendUint16(nil, uint16(p.Columns))
-								return []Record{{Kind: COLROW, Type: Int2, Data: binary.BigEndian.AppendUint16(colrow, uint16(p.Rows))}, r}
-							}
-						}
-						return []Record{r}
-					})
-				}
-			}
-			ref++
-		}
-		if !done {
-			write(same)
-		}
-		element = nil
-	}
-	return out
-}
-
-// slowPiece writes layer, datatype and points of a piece.
-func slowPiece(out []byte, p Piece) []byte {
-	out = slowRecord(out, Record{Kind: LAYER, Type: Int2, Data: binary.BigEndian.AppendUint16(nil, p.Layer.Layer)})
-	out = slowRecord(out, Record{Kind: DATATYPE, Type: Int2, Data: binary.BigEndian.AppendUint16(nil, p.Layer.Type)})
-	var xy []byte
-	for _, q := range append(append([]Point{}, p.Points...), p.Points[0]) {
-		xy = binary.BigEndian.AppendUint32(xy, uint32(q.X))
-		xy = binary.BigEndian.AppendUint32(xy, uint32(q.Y))
-	}
-	return slowRecord(out, Record{Kind: XY, Type: Int4, Data: xy})
 }
 
 // randomPlan makes a plan that does a bit of everything.
@@ -561,8 +364,8 @@ func (r readerAt) ReadAt(b []byte, _ int64) (int, error) { return r.r.Read(b) }
 
 // TestCopyMemory holds that a copy takes no more memory for a longer stream.
 func TestCopyMemory(t *testing.T) {
-	allocated := func(n int) uint64 {
-		data := flatStream(t, n, 100)
+	allocated := func(n, share int) uint64 {
+		data := flatStream(t, n, share)
 		lib := mustIndex(t, data, nineteen())
 		figures := make([]uint8, len(lib.Figures))
 		plan := Plan{Actions: []Action{{Op: Relayer, Layer: LayerType{19, 1}}}, Copies: func(int) []Copy { return []Copy{{Figures: figures}} }}
@@ -574,8 +377,10 @@ func TestCopyMemory(t *testing.T) {
 		runtime.ReadMemStats(&after)
 		return after.TotalAlloc - before.TotalAlloc
 	}
-	if a, b := allocated(40000), allocated(200000); b > a+1<<18 {
-		t.Errorf("%d bytes for 2.5 MB, %d for 13 MB", a, b)
+	for _, share := range []int{1, 100} {
+		if a, b := allocated(100000, share), allocated(300000, share); b > a+1<<18 {
+			t.Errorf("%d bytes for 6 MB, %d for 19 MB", a, b)
+		}
 	}
 }
 

@@ -41,7 +41,7 @@ type Input struct {
 // Open opens an input. The path "-" is stdin; gzip is recognised by its content. With spool, an input that cannot be read
 // twice (stdin, a pipe, gzip) is kept unpacked in a temporary file, for ReaderAt; that file is gone after Close.
 //
-// Errors of Open and Index begin with the name of the input.
+// Errors of Open, Index and Changed begin with the name of the input.
 func Open(path string, spool bool, stdin io.Reader) (*Input, error) {
 	in := &Input{name: path, given: -1, hash: sha256.New()}
 	var src io.Reader = stdin
@@ -180,7 +180,7 @@ func (in *Input) finish() error {
 	}
 	in.hash.Sum(in.sum[:0])
 	in.length = in.source.read.Load()
-	return in.Changed()
+	return in.changed()
 }
 
 // Sum gives the SHA-256 and the length in bytes of the file as given, once Index is done.
@@ -197,8 +197,16 @@ func (in *Input) ReaderAt() io.ReaderAt {
 	return nil
 }
 
-// Changed is ErrChanged where size or time of the file are not what they were when it was opened.
+// Changed is an error of the kind ErrChanged where size or time of the file are not what they were when it was opened. Index
+// asks this by itself at its end; ask again when the second pass is through.
 func (in *Input) Changed() error {
+	if err := in.changed(); err != nil {
+		return fmt.Errorf("%s: %w", in.name, err)
+	}
+	return nil
+}
+
+func (in *Input) changed() error {
 	if in.file == nil || in.given < 0 {
 		return nil
 	}

@@ -10,24 +10,6 @@ import (
 	"testing/iotest"
 )
 
-// slowRecords is the slow twin of Scanner: it cuts a whole stream into records. It takes streams without fault only.
-func slowRecords(t testing.TB, data []byte) []Record {
-	t.Helper()
-	var records []Record
-	for at := 0; ; {
-		if len(data)-at < 4 {
-			t.Fatalf("the stream ends at byte %d", at)
-		}
-		n := int(data[at])*256 + int(data[at+1])
-		r := Record{Kind: Kind(data[at+2]), Type: DataType(data[at+3]), Offset: int64(at), Data: data[at+4 : at+n]}
-		records = append(records, r)
-		at += n
-		if r.Kind == ENDLIB {
-			return records
-		}
-	}
-}
-
 // scanAll reads a stream through Scanner; data is copied.
 func scanAll(r io.Reader) ([]Record, error) {
 	var records []Record

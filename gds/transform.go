@@ -378,7 +378,13 @@ func (t Transform) applyOdd(x, y int64) (int64, int64) {
 }
 
 // ApplyFloat places a point without rounding it to whole units.
-func (t Transform) ApplyFloat(x, y float64) (float64, float64) { return t.float().place(x, y) }
+func (t Transform) ApplyFloat(x, y float64) (float64, float64) {
+	if !t.Exact() {
+		return t.odd.place(x, y)
+	}
+	m, k := &axes[t.Orientation&7], float64(t.Magnification())
+	return float64(t.X) + k*(float64(m.a)*x+float64(m.b)*y), float64(t.Y) + k*(float64(m.c)*x+float64(m.d)*y)
+}
 
 // round gives the nearest whole number, ties to even; what lies outside of int64's middle is held at its border.
 func round(f float64) int64 {

@@ -158,6 +158,9 @@ func TestComposeExact(t *testing.T) {
 		if x.Cmp(big.NewInt(gx)) != 0 || y.Cmp(big.NewInt(gy)) != 0 {
 			t.Fatalf("%v takes (%d, %d) to (%d, %d), not (%v, %v)", transform, x0, y0, gx, gy, x, y)
 		}
+		if fx, fy := transform.ApplyFloat(float64(x0), float64(y0)); fx != float64(gx) || fy != float64(gy) {
+			t.Fatalf("%v takes (%d, %d) to (%v, %v), not (%d, %d)", transform, x0, y0, fx, fy, gx, gy)
+		}
 		if transform.Scale() != scale {
 			t.Fatalf("%v has scale %v, not %v", transform, transform.Scale(), scale)
 		}
