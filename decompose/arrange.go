@@ -59,6 +59,9 @@ func (b *brokenGroup) arrange(l *layout, fr *frames, boxes []Box) {
 			list[k] = entry{p.applyBox(boxes[u]), u}
 			low = low.join(list[k].box)
 		}
+		// Whole database units stay whole.
+		low.X1 -= low.X1 & (l.flat.forms.scale - 1)
+		low.Y1 -= low.Y1 & (l.flat.forms.scale - 1)
 		p.x, p.y = p.x-low.X1, p.y-low.Y1
 		for k := range list {
 			list[k].box = list[k].box.shift(-low.X1, -low.Y1)

@@ -11,8 +11,9 @@ import (
 	"maskpair/decompose/exact"
 )
 
-// This file hands the groups that parity does not settle to package exact, and takes back masks and bounds. Aims are packed in one
-// 64-bit weight each, the dearer above the cheaper: pairs that are not waived, all pairs, moved shapes, wishes.
+// This file hands the groups that parity does not settle to package exact, and takes back masks and bounds. What gets a mask there is
+// an atom: a node, or one of the pieces into which a node can be cut (see pieces.go). Aims are packed in one 64-bit weight each, the
+// dearer above the cheaper: pairs that are not waived, all pairs, stitches, moved shapes, wishes.
 
 // brokenGroup is a group that two masks cannot do, with its nodes in an order that depends on the geometry of its cells alone.
 type brokenGroup struct {
@@ -20,24 +21,30 @@ type brokenGroup struct {
 	nodes       []uint32 // canonical order
 	first, last uint32   // least and greatest ordinal
 	canon       canon
-	edges       []exact.Edge   // near pairs by place in nodes, ascending
-	waived      []bool         // by edge
-	problem     *exact.Problem // to be solved next
-	weighed     *exact.Problem // with the aims that count
-	rep         []int32        // by node, where ties merge nodes: node of the problem; else nil
-	flip        []uint8        // by node, with rep: on the other mask than that
-	units       units
-	same        int            // index of the group whose problem is the same, possibly its own
-	solution    exact.Solution // of weighed
-	homing      bool           // solved again, nearest to the usual masks
-	homeUnit    int64          // by which the aims that count are weighed then
-	near        exact.Solution
+	edges       []exact.Edge // near pairs by place in nodes, ascending
+	waived      []bool       // by edge
+	fixed       []int8       // by node: mask that an anchor holds it on, or -1; nil: no anchors
+	pieces      *pieces      // where nodes can be cut; nil: nowhere, or the deck has no stitches
+	cutting     bool         // what is cut is cut in the output
+
+	problem  *exact.Problem // to be solved next
+	weighed  *exact.Problem // with the aims that count
+	rep      []int32        // by atom, where ties merge atoms: node of the problem; else nil
+	flip     []uint8        // by atom, with rep: on the other mask than that
+	units    units
+	same     int            // index of the group whose problem is the same, possibly its own
+	solution exact.Solution // of weighed
+	masks    []uint8        // by atom, as solved last; the group may have been turned over since
+	homing   bool           // solved again, nearest to the usual masks
+	homeUnit int64          // by which the aims that count are weighed then
+	near     exact.Solution
+	least    *[]int // least set of cuts that resolves the group, once it is known
 }
 
-// units are the weights of one group.
-type units struct{ wish, moved, waived, pair int64 }
+// units are the weights of one group. Each is even, so that halves are whole.
+type units struct{ wish, moved, stitch, waived, pair int64 }
 
-// pairsOf takes the number of pairs out of a cost.
+// pairsOf takes the number of pairs that are not waived out of a cost.
 func (u units) pairsOf(cost int64) int64 { return cost / u.pair }
 
 // solver solves the broken groups of one layout.
@@ -79,6 +86,25 @@ func (s *solver) of(node uint32) (int, bool) {
 	return s.index[int32(g)], true
 }
 
+// each calls work for every broken group, some at a time.
+func (s *solver) each(ctx context.Context, jobs int, work func(b *brokenGroup)) error {
+	var g errgroup.Group
+	g.SetLimit(max(jobs, 1))
+	for i := range s.groups {
+		g.Go(func() error {
+			if err := ctx.Err(); err != nil {
+				return err
+			}
+			work(&s.groups[i])
+			return nil
+		})
+	}
+	if err := g.Wait(); err != nil {
+		return err
+	}
+	return ctx.Err()
+}
+
 // solve gives every broken group its masks.
 func (s *solver) solve(ctx context.Context, jobs int) error {
 	if len(s.groups) == 0 {
@@ -89,48 +115,100 @@ func (s *solver) solve(ctx context.Context, jobs int) error {
 	for _, w := range s.o.Waivers {
 		waived[[2]uint32{min(w.A, w.B), max(w.A, w.B)}] = true
 	}
-	var g errgroup.Group
-	g.SetLimit(max(jobs, 1))
-	for i := range s.groups {
-		g.Go(func() error {
-			s.build(&s.groups[i], fixed, wishes, waived)
-			return ctx.Err()
-		})
+	if err := s.each(ctx, jobs, func(b *brokenGroup) { s.gather(b, fixed, waived) }); err != nil {
+		return err
 	}
-	if err := g.Wait(); err != nil {
+	if err := s.findPieces(ctx, jobs); err != nil {
+		return err
+	}
+	if err := s.each(ctx, jobs, func(b *brokenGroup) { s.weigh(b, wishes) }); err != nil {
 		return err
 	}
 	s.findSame()
-	for i := range s.groups {
-		if s.groups[i].same != i {
-			continue
+	err := s.each(ctx, jobs, func(b *brokenGroup) {
+		if &s.groups[b.same] == b {
+			b.solution = exact.Solve(b.problem, exact.DefaultBudget())
+			if b.crowded() && b.solution.LowerBound >= b.units.waived {
+				b.solution = s.solveCrowded(b, wishes)
+			}
 		}
-		g.Go(func() error {
-			s.groups[i].solution = exact.Solve(s.groups[i].problem, exact.DefaultBudget())
-			return ctx.Err()
-		})
-	}
-	if err := g.Wait(); err != nil {
+	})
+	if err != nil {
 		return err
 	}
 	for i := range s.groups {
 		b := &s.groups[i]
 		b.solution = s.groups[b.same].solution
 		b.weighed = b.problem
-		for k, u := range b.nodes {
-			s.a.mask.Data[u] = b.mask(b.solution.Masks, k)
-		}
-		// A solution that costs as much when it is turned over leaves the group free.
-		s.a.free[b.group] = b.problem.Fixed == nil && b.problem.Cost == nil
-		if b.problem.Fixed == nil && b.problem.Cost != nil {
-			turned := make([]uint8, len(b.solution.Masks))
-			for k, m := range b.solution.Masks {
-				turned[k] = m ^ 1
-			}
-			s.a.free[b.group] = b.problem.CostOf(turned) == b.solution.Cost
-		}
+		s.take(b, b.solution.Masks)
+		s.a.free[b.group] = b.turnable()
 	}
 	return nil
+}
+
+// crowded tells whether what is solved has crowded pairs.
+func (b *brokenGroup) crowded() bool { return b.cutting && b.pieces.crowded }
+
+// take gives the nodes of a group the masks of a solution.
+func (s *solver) take(b *brokenGroup, solved []uint8) {
+	b.masks = b.spread(solved)
+	for k, u := range b.nodes {
+		s.a.mask.Data[u] = b.masks[b.atom(k)]
+	}
+	s.cut(b)
+}
+
+// spread gives the masks of all atoms by a solution of the problem.
+func (b *brokenGroup) spread(solved []uint8) []uint8 {
+	masks := make([]uint8, b.atoms())
+	for k := range masks {
+		if b.rep == nil {
+			masks[k] = solved[k]
+		} else {
+			masks[k] = solved[b.rep[k]] ^ b.flip[k]
+		}
+	}
+	return masks
+}
+
+// turnable tells whether a solution costs as much when it is turned over.
+func (b *brokenGroup) turnable() bool {
+	p := b.weighed
+	if p.Fixed != nil {
+		return false
+	}
+	if p.Cost == nil {
+		return true
+	}
+	turned := make([]uint8, len(b.solution.Masks))
+	for k, m := range b.solution.Masks {
+		turned[k] = m ^ 1
+	}
+	return p.CostOf(turned) == b.solution.Cost
+}
+
+// atoms is the number of atoms of a group.
+func (b *brokenGroup) atoms() int {
+	if b.pieces == nil || !b.cutting {
+		return len(b.nodes)
+	}
+	return int(b.pieces.first[len(b.nodes)])
+}
+
+// atom gives the first atom of a node.
+func (b *brokenGroup) atom(k int) int {
+	if b.pieces == nil || !b.cutting {
+		return k
+	}
+	return int(b.pieces.first[k])
+}
+
+// atomsOf is the number of atoms of a node.
+func (b *brokenGroup) atomsOf(k int) int {
+	if b.pieces == nil || !b.cutting {
+		return 1
+	}
+	return int(b.pieces.first[k+1] - b.pieces.first[k])
 }
 
 // byNode spreads anchors and wishes over the nodes of broken groups.
@@ -151,82 +229,129 @@ func (s *solver) byNode() (fixed map[uint32]Mask, wishes map[uint32][2]int64) {
 	return fixed, wishes
 }
 
-// build makes the problem of one group.
-func (s *solver) build(b *brokenGroup, fixed map[uint32]Mask, wishes map[uint32][2]int64, waived map[[2]uint32]bool) {
+// gather finds the near pairs and anchors of a group.
+func (s *solver) gather(b *brokenGroup, fixed map[uint32]Mask, waived map[[2]uint32]bool) {
 	local := make(map[uint32]int32, len(b.nodes))
 	for k, u := range b.nodes {
 		local[u] = int32(k)
 	}
-	var memories, wished, accepted int64
+	type edge struct {
+		exact.Edge
+		waived bool
+	}
+	var edges []edge
 	for _, u := range b.nodes {
-		if s.o.Memory != nil && s.o.Memory[u] != NoMemory {
-			memories++
-		}
-		wished += wishes[u][0] + wishes[u][1]
 		for _, e := range s.l.near.of(u) {
 			v := e >> 1
-			w := waived[[2]uint32{u, v}]
-			if w {
-				accepted++
-			}
-			b.edges = append(b.edges, exact.Edge{U: min(local[u], local[v]), V: max(local[u], local[v])})
-			b.waived = append(b.waived, w)
+			edges = append(edges, edge{exact.Edge{U: min(local[u], local[v]), V: max(local[u], local[v])}, len(waived) > 0 && waived[[2]uint32{u, v}]})
 		}
 	}
-	b.units.wish = 1
-	b.units.moved = wished + 1
-	b.units.waived = b.units.moved * (memories + 1)
-	b.units.pair = b.units.waived * (accepted + 1)
-	order := make([]int, len(b.edges))
-	for i := range order {
-		order[i] = i
-	}
-	slices.SortFunc(order, func(i, j int) int {
-		if b.edges[i].U != b.edges[j].U {
-			return int(b.edges[i].U) - int(b.edges[j].U)
+	slices.SortFunc(edges, func(p, q edge) int {
+		if p.U != q.U {
+			return int(p.U) - int(q.U)
 		}
-		return int(b.edges[i].V) - int(b.edges[j].V)
+		return int(p.V) - int(q.V)
 	})
-	edges, accept := make([]exact.Edge, len(order)), make([]bool, len(order))
-	for k, i := range order {
-		edges[k], accept[k] = b.edges[i], b.waived[i]
-		edges[k].Weight = b.units.pair
-		if accept[k] {
-			edges[k].Weight = b.units.waived
-		}
+	b.edges, b.waived = make([]exact.Edge, len(edges)), make([]bool, len(edges))
+	for i, e := range edges {
+		b.edges[i], b.waived[i] = e.Edge, e.waived
 	}
-	b.edges, b.waived = edges, accept
-	p := &exact.Problem{Nodes: len(b.nodes), Edges: slices.Clone(edges)}
-	b.problem = p
 	for k, u := range b.nodes {
 		if m, ok := fixed[u]; ok {
-			if p.Fixed == nil {
-				p.Fixed = make([]int8, len(b.nodes))
-				for i := range p.Fixed {
-					p.Fixed[i] = -1
+			if b.fixed == nil {
+				b.fixed = make([]int8, len(b.nodes))
+				for i := range b.fixed {
+					b.fixed[i] = -1
 				}
 			}
-			p.Fixed[k] = int8(m)
+			b.fixed[k] = int8(m)
 		}
-		cost := wishes[u]
-		if s.o.Memory != nil && s.o.Memory[u] != NoMemory {
-			cost[2-s.o.Memory[u]] += b.units.moved
-		}
-		if cost != [2]int64{} {
-			if p.Cost == nil {
-				p.Cost = make([][2]int64, len(b.nodes))
-			}
-			p.Cost[k] = cost
-		}
-	}
-	if s.a.tied {
-		s.contract(b, local)
 	}
 }
 
-// contract merges what ties hold together: local node k then stands for node rep[k] of the problem, turned over where flip[k] is 1.
-func (s *solver) contract(b *brokenGroup, local map[uint32]int32) {
-	p := newParity(make([]uint32, len(b.nodes)))
+// memory gives the mask of a node in the baseline: NoMemory, or 1 + mask.
+func (s *solver) memory(u uint32) uint8 {
+	if s.o.Memory == nil {
+		return NoMemory
+	}
+	return s.o.Memory[u]
+}
+
+// weigh makes the problem of a group.
+func (s *solver) weigh(b *brokenGroup, wishes map[uint32][2]int64) {
+	var memories, wished, accepted, cuts int64
+	for _, u := range b.nodes {
+		if s.memory(u) != NoMemory {
+			memories++
+		}
+		wished += wishes[u][0] + wishes[u][1]
+	}
+	for _, w := range b.waived {
+		if w {
+			accepted++
+		}
+	}
+	if b.cutting {
+		cuts = int64(len(b.pieces.cuts))
+	}
+	b.units.wish = 2
+	b.units.moved = b.units.wish * (wished + 1)
+	b.units.stitch = b.units.moved * (memories + 1)
+	b.units.waived = b.units.stitch * (cuts + 1)
+	b.units.pair = b.units.waived * (accepted + 1)
+	p := &exact.Problem{Nodes: b.atoms()}
+	b.problem = p
+	if b.cutting {
+		b.pieces.edges(p, b, b.units)
+	} else {
+		p.Edges = slices.Clone(b.edges)
+		for i := range p.Edges {
+			p.Edges[i].Weight = b.weight(i, b.units)
+		}
+	}
+	if b.fixed != nil {
+		p.Fixed = make([]int8, p.Nodes)
+		for k, m := range b.fixed {
+			for n := range b.atomsOf(k) {
+				p.Fixed[b.atom(k)+n] = m
+			}
+		}
+	}
+	for k, u := range b.nodes {
+		cost := wishes[u]
+		cost[0], cost[1] = cost[0]*b.units.wish, cost[1]*b.units.wish
+		// A shape that is cut does not count as moved, so a memory weighs only on shapes that stay whole.
+		if m := s.memory(u); m != NoMemory && b.atomsOf(k) == 1 {
+			cost[2-m] += b.units.moved
+		}
+		if cost == [2]int64{} {
+			continue
+		}
+		if p.Cost == nil {
+			p.Cost = make([][2]int64, p.Nodes)
+		}
+		p.Cost[b.atom(k)] = cost
+	}
+	if s.a.tied {
+		s.contract(b)
+	}
+}
+
+// weight is what it costs to leave a near pair on one mask.
+func (b *brokenGroup) weight(edge int, u units) int64 {
+	if b.waived[edge] {
+		return u.waived
+	}
+	return u.pair
+}
+
+// contract merges what ties hold together. A node under a tie is never cut, so it is one atom.
+func (s *solver) contract(b *brokenGroup) {
+	local := make(map[uint32]uint32, len(b.nodes))
+	for k, u := range b.nodes {
+		local[u] = uint32(b.atom(k))
+	}
+	p := newParity(make([]uint32, b.atoms()))
 	for _, t := range s.o.Ties {
 		u, ok := local[t.A]
 		if !ok {
@@ -236,12 +361,12 @@ func (s *solver) contract(b *brokenGroup, local map[uint32]int32) {
 		if t.Opposite {
 			apart = 1
 		}
-		p.relate(uint32(u), uint32(local[t.B]), apart) // contradictions were refused before
+		p.relate(u, local[t.B], apart) // contradictions were refused before
 	}
-	b.rep, b.flip = make([]int32, len(b.nodes)), make([]uint8, len(b.nodes))
-	number := make([]int32, len(b.nodes))
+	b.rep, b.flip = make([]int32, b.atoms()), make([]uint8, b.atoms())
+	number := make([]int32, b.atoms())
 	reps := int32(0)
-	for k := range b.nodes {
+	for k := range b.rep {
 		root, other := p.find(uint32(k))
 		if root == uint32(k) {
 			number[k] = reps
@@ -252,7 +377,7 @@ func (s *solver) contract(b *brokenGroup, local map[uint32]int32) {
 	old := b.problem
 	made := &exact.Problem{Nodes: int(reps), Edges: make([]exact.Edge, len(old.Edges))}
 	for i, e := range old.Edges {
-		e.Same = b.flip[e.U] != b.flip[e.V]
+		e.Same = e.Same == (b.flip[e.U] == b.flip[e.V])
 		e.U, e.V = b.rep[e.U], b.rep[e.V]
 		if e.U > e.V {
 			e.U, e.V = e.V, e.U
@@ -278,14 +403,6 @@ func (s *solver) contract(b *brokenGroup, local map[uint32]int32) {
 		}
 	}
 	b.problem = made
-}
-
-// mask gives the mask of local node k by a solution of the problem.
-func (b *brokenGroup) mask(masks []uint8, k int) uint8 {
-	if b.rep == nil {
-		return masks[k]
-	}
-	return masks[b.rep[k]] ^ b.flip[k]
 }
 
 // findSame finds groups with equal problems, so that each is solved once.
@@ -316,14 +433,16 @@ func hashProblem(seed maphash.Seed, p *exact.Problem) uint64 {
 		binary.LittleEndian.PutUint32(buf[0:], uint32(e.U))
 		binary.LittleEndian.PutUint32(buf[4:], uint32(e.V))
 		binary.LittleEndian.PutUint64(buf[8:], uint64(e.Weight))
-		buf[16] = 0
-		if e.Same {
-			buf[16] = 1
-		}
+		buf[16] = uint8(boolInt(e.Same))
 		h.Write(buf[:])
 	}
 	for _, f := range p.Fixed {
 		h.WriteByte(byte(f))
+	}
+	for _, c := range p.Cost {
+		binary.LittleEndian.PutUint64(buf[0:], uint64(c[0]))
+		binary.LittleEndian.PutUint64(buf[8:], uint64(c[1]))
+		h.Write(buf[:16])
 	}
 	return h.Sum64()
 }

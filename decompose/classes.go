@@ -143,6 +143,22 @@ func (c *classes) selectLayer(i int) *selection {
 	return s
 }
 
+// selectMarkers gives the figures of the marker layers of deck layer i, with the tags of the masks that they stand for; nil where it
+// has none.
+func (c *classes) selectMarkers(i int) *selection {
+	a, anyA := c.selectRole(i, roleMarkerA, onA)
+	b, anyB := c.selectRole(i, roleMarkerB, onB)
+	if !anyA && !anyB {
+		return nil
+	}
+	for k, t := range b.tag {
+		if t != none {
+			a.tag[k] = t
+		}
+	}
+	return a
+}
+
 // selectRole gives the figures or labels of deck layer i in one role, all with the same tag.
 func (c *classes) selectRole(i int, want role, t tag) (*selection, bool) {
 	s, any := new(selection), false

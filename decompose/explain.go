@@ -15,11 +15,11 @@ import (
 // clashing orders, the pairs that stay on one mask and how far they are apart, and which components are the same thing again.
 
 // explain fills in what is unresolved.
-func (s *solver) explain(ctx context.Context, res *LayerResult) error {
+func (s *solver) explain(ctx context.Context, rules *Rules, res *LayerResult) error {
 	if len(s.groups) == 0 {
 		return nil
 	}
-	e := &explainer{solver: s, boxes: s.l.boxes(), groups: map[uint64]int64{}}
+	e := &explainer{solver: s, boxes: s.l.boxes(), groups: map[uint64]int64{}, rules: rules}
 	e.gather()
 	e.sign()
 	for i := range s.groups {
@@ -43,6 +43,7 @@ type explainer struct {
 	shape  []uint64               // by local index of node: what the node is, in the canonical frame of its group
 	local  map[uint32]uint32      // node to index in shape
 	groups map[uint64]int64       // signature to number
+	rules  *Rules
 }
 
 // gather finds the geometry of the nodes whose pairs stay on one mask.
@@ -50,9 +51,9 @@ func (e *explainer) gather() {
 	e.parts = map[uint32]*geom.Parts{}
 	for i := range e.solver.groups {
 		b := &e.solver.groups[i]
-		for _, ed := range b.edges {
+		for x, ed := range b.edges {
 			u, v := b.nodes[ed.U], b.nodes[ed.V]
-			if e.a.mask.Data[u] == e.a.mask.Data[v] {
+			if b.violated(x, b.masks) {
 				for _, n := range [2]uint32{u, v} {
 					if e.parts[n] == nil {
 						e.parts[n] = &geom.Parts{}
@@ -211,6 +212,7 @@ func (e *explainer) group(b *brokenGroup, res *LayerResult) {
 type componentPart struct {
 	nodes    []int32 // places in the group
 	edges    []exact.Edge
+	source   []int // by edge: its number in the group
 	masks    []uint8
 	stuck    bool  // its own near pairs contradict the orders
 	odd      bool  // it has an odd cycle
@@ -234,22 +236,14 @@ func (e *explainer) part(b *brokenGroup, nodes []int32, masks []uint8) *componen
 	orders := newParity(make([]uint32, reps+1)) // the last is mask A
 	held := func(i int) (uint32, uint32) {
 		if b.rep != nil {
-			return uint32(b.rep[nodes[i]]), uint32(b.flip[nodes[i]])
+			k := b.atom(int(nodes[i]))
+			return uint32(b.rep[k]), uint32(b.flip[k])
 		}
 		return uint32(i), 0
 	}
-	for i, k := range nodes {
+	for i := range nodes {
 		rep, flip := held(i)
-		f := int8(-1)
-		if b.weighed.Fixed != nil {
-			if b.rep != nil {
-				f = b.weighed.Fixed[rep]
-				flip = 0
-			} else {
-				f = b.weighed.Fixed[k]
-			}
-		}
-		if f >= 0 {
+		if f := b.holds(int(nodes[i])); f >= 0 {
 			orders.relate(rep, uint32(reps), uint32(f)^flip)
 		}
 	}
@@ -261,7 +255,8 @@ func (e *explainer) part(b *brokenGroup, nodes []int32, masks []uint8) *componen
 		k := at[ed.V]
 		n := len(p.edges)
 		p.edges = append(p.edges, exact.Edge{U: i, V: k, Weight: 1})
-		if p.masks[i] == p.masks[k] {
+		p.source = append(p.source, x)
+		if b.violated(x, b.masks) {
 			if b.waived[x] {
 				p.accepted = append(p.accepted, n)
 			} else {
@@ -302,6 +297,7 @@ func (e *explainer) entry(b *brokenGroup, p *componentPart, component uint32) Un
 		u.Pairs = append(u.Pairs, e.pair(b, p, x, u.Top))
 	}
 	slices.SortFunc(u.Pairs, func(a, b Pair) int { return cmp.Or(compareBoxes(a.A, b.A), compareBoxes(a.B, b.B)) })
+	e.candidates(b, p, ring, &u)
 	fr := b.canon.frame
 	u.Cell = l.flat.h.name(fr.structure)
 	box := emptyBox
@@ -330,27 +326,73 @@ func (e *explainer) entry(b *brokenGroup, p *componentPart, component uint32) Un
 	return u
 }
 
-// smallestCycle gives the smallest of the smallest odd cycles through the pairs that stay; where none stays, of all.
-func (p *componentPart) smallestCycle() []int32 {
-	left := p.left
-	if len(left) == 0 {
-		left = p.accepted
+// candidates words where the shapes of a component can be cut, and which cuts help.
+func (e *explainer) candidates(b *brokenGroup, p *componentPart, ring []int32, u *Unresolved) {
+	if b.pieces == nil {
+		return
 	}
-	// Through so many pairs the shortest cycle is looked for; a component with more has a short one among them.
-	const most = 256
-	var best []int32
-	for _, x := range left[:min(len(left), most)] {
-		if ring := tmpCycle(len(p.nodes), p.edges, x); len(ring) > 0 && (best == nil || len(ring) < len(best)) {
-			best = ring
-			if len(best) == 3 {
-				break
-			}
+	here := make(map[int32]bool, len(p.nodes))
+	for _, k := range p.nodes {
+		here[k] = true
+	}
+	// Alone, only a cut of a shape on every odd cycle (or clash) can resolve, so on this one.
+	onRing := map[int32]bool{}
+	for _, i := range ring {
+		onRing[p.nodes[i]] = true
+	}
+	forward := b.canon.back.inverse()
+	scale := e.l.flat.forms.scale
+	place := map[int]int{}
+	for i := range b.pieces.cuts {
+		c := &b.pieces.cuts[i]
+		if !here[c.node] {
+			continue
+		}
+		place[i] = len(u.Candidates)
+		u.Candidates = append(u.Candidates, StitchCandidate{Box: e.l.half(forward.applyBox(Box(c.box))), Overlap: c.length() / scale,
+			Resolves: onRing[c.node] && e.resolves(b, i)})
+	}
+	if len(u.Candidates) == 0 {
+		u.NoCandidate = b.pieces.forbids(p.nodes, e.rules, e.l.rules)
+		return
+	}
+	if b.least == nil {
+		set := e.leastCuts(b)
+		b.least = &set
+	}
+	for _, i := range *b.least {
+		if k, ok := place[i]; ok {
+			u.LeastStitches = append(u.LeastStitches, k)
 		}
 	}
-	if best == nil {
-		_ = 0
+}
+
+// holds gives the mask that orders hold a node on, through ties or by itself; -1 where none do.
+func (b *brokenGroup) holds(k int) int8 {
+	if b.rep == nil || b.weighed.Fixed == nil {
+		if b.fixed == nil {
+			return -1
+		}
+		return b.fixed[k]
 	}
-	return best
+	atom := b.atom(k)
+	if f := b.weighed.Fixed[b.rep[atom]]; f >= 0 {
+		return f ^ int8(b.flip[atom])
+	}
+	return -1
+}
+
+// smallestCycle gives the smallest of the smallest odd cycles through the pairs that stay; where none stays, of all.
+func (p *componentPart) smallestCycle() []int32 {
+	finder := newRingFinder(len(p.nodes), p.edges)
+	var left []exact.Edge
+	for _, x := range append(slices.Clone(p.left), p.accepted...) {
+		left = append(left, p.edges[x])
+	}
+	if ring := finder.smallest(left); ring != nil {
+		return ring
+	}
+	return finder.smallest(p.edges)
 }
 
 // clash gives the shortest path of near pairs between two anchored nodes whose masks it contradicts: breadth first from all anchored
@@ -359,22 +401,14 @@ func (p *componentPart) clash(b *brokenGroup) []int32 {
 	n := len(p.nodes)
 	fixed := make([]int8, n)
 	for i, k := range p.nodes {
-		fixed[i] = -1
-		if b.weighed.Fixed == nil {
-			continue
-		}
-		if b.rep == nil {
-			fixed[i] = b.weighed.Fixed[k]
-		} else if f := b.weighed.Fixed[b.rep[k]]; f >= 0 {
-			fixed[i] = f ^ int8(b.flip[k])
-		}
+		fixed[i] = b.holds(int(k))
 	}
 	next := make([][]int32, n)
 	for _, ed := range p.edges {
 		next[ed.U] = append(next[ed.U], ed.V)
 		next[ed.V] = append(next[ed.V], ed.U)
 	}
-	const unseen, source = -2, -1
+	const source = -1
 	back := make([]int32, 2*n)
 	for i := range back {
 		back[i] = unseen
@@ -417,13 +451,47 @@ func (e *explainer) pair(b *brokenGroup, p *componentPart, x int, top string) Pa
 		u, v = v, u
 	}
 	scale := float64(e.l.flat.forms.scale)
-	from, to, sq := geom.Closest(e.reach(u, v), e.reach(v, u))
+	from, to, sq := e.closest(b, p.source[x], u, v)
 	k := 2 / e.l.flat.forms.scale
 	out := Pair{A: e.l.half(e.boxes[u]), B: e.l.half(e.boxes[v]), DistanceSq: sq / (scale * scale), Top: top,
 		From: Spot{from.X * k, from.Y * k}, To: Spot{to.X * k, to.Y * k}, Mask: Mask(p.masks[ed.U]), Rule: "same_mask_spacing"}
 	out.Gap = gapBox(out.A, out.B, out.From, out.To)
 	out.Widen = e.l.rules.Spacing - int64(math.Sqrt(out.DistanceSq))
 	return out
+}
+
+// closest gives where two nodes come nearest; of a shape that is cut, the pieces count that are on the mask of the other.
+func (e *explainer) closest(b *brokenGroup, edge int, u, v uint32) (from, to geom.Point, sq float64) {
+	if !b.cutting || b.pieces.pairs[edge] == nil {
+		return geom.Closest(e.reach(u, v), e.reach(v, u))
+	}
+	forward := b.canon.back.inverse()
+	piece := func(atom int32, n, of uint32) geom.Parts {
+		rects := b.pieces.rects[atom]
+		if rects == nil {
+			return e.reach(n, of)
+		}
+		var p geom.Parts
+		for _, r := range rects {
+			p.Rects = append(p.Rects, geom.Rect(forward.applyBox(Box(r))))
+		}
+		return p
+	}
+	ends := b.edges[edge]
+	turned := b.nodes[ends.U] != u
+	sq = math.Inf(1)
+	for _, q := range b.pieces.pairs[edge] {
+		if b.masks[q[0]] != b.masks[q[1]] {
+			continue
+		}
+		if turned {
+			q[0], q[1] = q[1], q[0]
+		}
+		if f, t, d := geom.Closest(piece(q[0], u, v), piece(q[1], v, u)); d < sq {
+			from, to, sq = f, t, d
+		}
+	}
+	return from, to, sq
 }
 
 // reach gives the parts of a node that can be near to another: those within the largest spacing of its box.

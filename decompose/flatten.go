@@ -58,9 +58,9 @@ type flat struct {
 }
 
 // newFlat counts a selection under all tops. What is too much to number, or leaves the plane, is refused before anything is built.
-func newFlat(h *hierarchy, sel *selection) (*flat, error) {
+func newFlat(h *hierarchy, sel *selection, g grid) (*flat, error) {
 	n := len(h.lib.Structures)
-	f := &flat{h: h, lib: h.lib, sel: sel, forms: newForms(h.lib, sel),
+	f := &flat{h: h, lib: h.lib, sel: sel, forms: newForms(h.lib, sel, g),
 		own: make([]uint32, n), all: make([]uint64, n), items: make([]uint64, n), bands: make([]uint64, n), box: make([]Box, n)}
 	f.polygonOf = make([]uint32, len(h.lib.Outlines))
 	for i := range f.forms.of {
@@ -264,7 +264,7 @@ type oddFigures struct {
 
 // collectOdd finds the figures of a top that are placed by a magnification or an odd angle and works out their forms.
 func (f *flat) collectOdd(top int, odd *oddFigures) error {
-	odd.forms = forms{scale: f.forms.scale}
+	odd.forms = forms{grid: f.forms.grid}
 	odd.box = emptyBox
 	t := f.h.tops[top]
 	if !f.h.odd[t] {
@@ -355,7 +355,7 @@ func (f *flat) placeOdd(odd *oddFigures, s int32, i uint32, at gds.Transform, or
 				return &InputError{Structure: f.h.name(s), Msg: "a figure under a magnification or an odd angle leaves the 32-bit plane; move the layout nearer to the origin"}
 			}
 		}
-		wx, wy := nearestWork(x, scale), nearestWork(y, scale)
+		wx, wy := f.forms.nearest(x), f.forms.nearest(y)
 		rounded = rounded || math.Abs(float64(wx)-x*scale) > 1e-6 || math.Abs(float64(wy)-y*scale) > 1e-6
 		points[k] = geom.Point{X: wx, Y: wy}
 	}
@@ -370,14 +370,14 @@ func (f *flat) placeOdd(odd *oddFigures, s int32, i uint32, at gds.Transform, or
 	return nil
 }
 
-// nearestWork rounds a coordinate to whole database units, in work units; a half that is exact stays where work units have halves.
-func nearestWork(v, scale float64) int64 {
-	if scale == 2 {
+// nearest rounds a coordinate to whole database units, in work units; a half that is exact stays where figures lie on halves.
+func (g grid) nearest(v float64) int64 {
+	if g.halves {
 		if half := math.RoundToEven(2 * v); math.Abs(2*v-half) < 1e-6 {
 			return int64(half)
 		}
 	}
-	return int64(math.RoundToEven(v)) * int64(scale)
+	return int64(math.RoundToEven(v)) * g.scale
 }
 
 // window is the part of a top that is worked on at once: coordinates relative to its origin fit 32 bits.
@@ -395,6 +395,8 @@ type flattener struct {
 	bands []band
 	nItem uint64
 	nBand uint64
+
+	polygonBase uint32 // added to the numbers of polygons
 }
 
 // task is a part of a top to be flattened, with where its items go: the own figures of a structure (no references), or some elements
@@ -596,7 +598,7 @@ func (w *flattener) form(fm *form, rects *[]geom.Rect, polygon uint32, at placem
 		n := w.nItem
 		w.rectangle(at.applyBox(Box(b.Box)), bandBit|uint32(w.nBand))
 		if w.nItem > n {
-			w.bands[w.nBand] = band{polygon - 1, uint32(k), ordinal, place}
+			w.bands[w.nBand] = band{w.polygonBase + polygon - 1, uint32(k), ordinal, place}
 			w.nBand++
 		}
 	}

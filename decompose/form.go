@@ -27,9 +27,25 @@ func (f *form) pieces() int64 {
 	return int64(f.count)
 }
 
+// grid says in which units a layer is worked on.
+type grid struct {
+	scale  int64 // work units per database unit: 2 where something lies on half units, else 1
+	halves bool  // figures lie on half units: what is placed there exactly is not rounded
+}
+
+// gridOf gives the grid of some figures: with halves where a path of odd width is among them.
+func gridOf(lib *gds.Library, sel *selection) grid {
+	for i := range lib.Figures {
+		if o := lib.Figures[i].Outline; o != 0 && sel.tag[lib.Figures[i].Class] != none && needsHalves(&lib.Outlines[o-1]) {
+			return grid{2, true}
+		}
+	}
+	return grid{scale: 1}
+}
+
 // forms holds the forms of all outlines of one selection.
 type forms struct {
-	scale   int64 // work units per database unit: 2 where a path of odd width needs half units, else 1
+	grid
 	of      []form
 	rects   []geom.Rect
 	rounded []bool // by outline: its own vertices were rounded
@@ -44,14 +60,8 @@ func needsHalves(o *gds.Outline) bool {
 const halfUnit = 2
 
 // newForms works out the forms of the selected figures.
-func newForms(lib *gds.Library, sel *selection) *forms {
-	f := &forms{scale: 1, of: make([]form, len(lib.Outlines)), rounded: make([]bool, len(lib.Outlines))}
-	for i := range lib.Figures {
-		if o := lib.Figures[i].Outline; o != 0 && sel.tag[lib.Figures[i].Class] != none && needsHalves(&lib.Outlines[o-1]) {
-			f.scale = 2
-			break
-		}
-	}
+func newForms(lib *gds.Library, sel *selection, g grid) *forms {
+	f := &forms{grid: g, of: make([]form, len(lib.Outlines)), rounded: make([]bool, len(lib.Outlines))}
 	var points []geom.Point
 	for i := range lib.Figures {
 		o := lib.Figures[i].Outline

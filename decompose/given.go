@@ -40,6 +40,15 @@ func (l *layout) shapeOf(node uint32) uint32 {
 	return node
 }
 
+// isGiven tells whether a node is a piece of a given stitch.
+func (l *layout) isGiven(node uint32) bool {
+	if l.given == nil {
+		return false
+	}
+	_, ok := l.given.shape[node]
+	return ok
+}
+
 // findTags notes what arrives on a mask; nothing is kept where nothing does.
 func (l *layout) findTags() {
 	f := l.flat

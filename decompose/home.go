@@ -64,13 +64,10 @@ const leanStep = 64
 // imbalance gives the area on A less that on B, as a share of the whole.
 func (d *dealer) imbalance() float64 {
 	difference, total := 0.0, 0.0
-	for u, area := range d.l.area {
-		total += area
-		if d.a.mask.Data[u] == 0 {
-			difference += area
-		} else {
-			difference -= area
-		}
+	for u := range d.l.area {
+		onA, onB := d.l.areaOn(uint32(u), d.a.mask.Data[u])
+		total += onA + onB
+		difference += onA - onB
 	}
 	return difference / max(total, 1)
 }
@@ -100,12 +97,9 @@ func (d *dealer) turn(shared bool) {
 // deltas gives for each group the area on A less that on B.
 func (l *layout) deltas(a *assignment) []float64 {
 	delta := make([]float64, a.groups)
-	for u, area := range l.area {
-		if a.mask.Data[u] == 0 {
-			delta[a.group.Data[u]] += area
-		} else {
-			delta[a.group.Data[u]] -= area
-		}
+	for u := range l.area {
+		onA, onB := l.areaOn(uint32(u), a.mask.Data[u])
+		delta[a.group.Data[u]] += onA - onB
 	}
 	return delta
 }

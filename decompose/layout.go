@@ -17,25 +17,23 @@ import (
 // stitched. Shapes are numbered top by top (tops by name), and within a top in the order in which the sweep meets them, so that
 // numbers depend on the geometry and not on the order of elements in the file.
 type layout struct {
-	rules  *LayerRules
-	number int // of the deck layer
-	flat   *flat
-	nodeOf *arena.Array[uint32] // by ordinal
-	shapes int
-	nodes  int
-	first  []uint32  // first node of each top, by rank of the top; one more at the end
-	area   []float64 // by node, square work units
-	near   *neighbours
-	box    *arena.Array[Box]   // by node, once boxes was called
-	odd    []oddFigures        // by top
-	tags   *arena.Array[uint8] // by ordinal: what arrived on a mask; nil where nothing did
-	given  *givenStitches      // nil: none
-	hits   []ProbeHit
-}
-
-// ProbeHit says that a probe touches a flat figure.
-type ProbeHit struct {
-	Probe, Figure uint32
+	rules   *LayerRules
+	number  int // of the deck layer
+	classes *classes
+	flat    *flat
+	nodeOf  *arena.Array[uint32] // by ordinal
+	shapes  int
+	nodes   int
+	first   []uint32  // first node of each top, by rank of the top; one more at the end
+	area    []float64 // by node, square work units
+	near    *neighbours
+	box     *arena.Array[Box]   // by node, once boxes was called
+	odd     []oddFigures        // by top
+	tags    *arena.Array[uint8] // by ordinal: what arrived on a mask; nil where nothing did
+	given   *givenStitches      // nil: none
+	cuts    *cuts               // nil: no shape of the layer can be cut
+	hits    []hit               // what looks for shapes, and the flat figures it touches
+	look    *lookout
 }
 
 // builder flattens and searches a deck layer. Its arrays are reused from top to top.
@@ -43,7 +41,6 @@ type builder struct {
 	ctx      context.Context
 	jobs     int
 	l        *layout
-	probes   []Probe
 	limit    atomic.Int64 // near pairs of figures that may still be kept
 	items    *arena.Array[item]
 	scratch  *arena.Array[item]
@@ -56,22 +53,25 @@ type builder struct {
 	opt      *Options
 }
 
-// Probe is a box (or a point, as a box without extent) in half database units of a top; it finds the shapes of a deck layer that it
-// touches.
-type Probe struct {
-	Top int // index into the tops
-	Box Box
-}
-
-// newLayout builds one deck layer.
-func newLayout(ctx context.Context, h *hierarchy, sel *selection, rules *LayerRules, number int, probes []Probe, opt *Options) (*layout, error) {
+// newLayout builds one deck layer; sought says what looks for its shapes, nil: nothing.
+func newLayout(ctx context.Context, h *hierarchy, sel *selection, rules *LayerRules, number int, sought *sought, opt *Options) (*layout, error) {
 	opt.stage("flatten")
-	f, err := newFlat(h, sel)
+	g := gridOf(h.lib, sel)
+	if sought.needsHalves(h) {
+		g.scale = 2
+	}
+	f, err := newFlat(h, sel, g)
 	if err != nil {
 		return nil, err
 	}
 	l := &layout{rules: rules, number: number, flat: f, odd: make([]oddFigures, len(h.tops)), first: make([]uint32, len(h.tops)+1)}
-	b := &builder{ctx: ctx, jobs: opt.jobs(), l: l, probes: probes, opt: opt}
+	if l.look, err = newLookout(h, sought, g); err != nil {
+		return nil, err
+	}
+	if err := l.look.number(f.total); err != nil {
+		return nil, err
+	}
+	b := &builder{ctx: ctx, jobs: opt.jobs(), l: l, opt: opt}
 	defer b.free()
 	b.limit.Store(opt.mostPairs())
 	l.nodeOf = arena.New[uint32](int(f.total))
@@ -154,12 +154,8 @@ func (b *builder) size(top int) (items, bands int) {
 			bands += int(fm.pieces())
 		}
 	}
-	for i := range b.probes {
-		if b.probes[i].Top == top {
-			items++
-		}
-	}
-	return items, bands
+	more, moreBands := b.l.look.size(top)
+	return items + more, bands + moreBands
 }
 
 // top searches one top and numbers its shapes from `shapes` on; it returns the next number.
@@ -249,34 +245,17 @@ func (b *builder) prepare(top int, win window) error {
 		return err
 	}
 	w := flattener{f: f, win: win, items: b.items.Data, bands: b.bands.Data, nItem: nItem, nBand: nBand}
-	b.polygons = f.polygons
+	b.polygons = slices.Clip(f.polygons)
 	odd := &b.l.odd[top]
 	at := placement{0, -win.originX, -win.originY}
 	for i := range odd.figures {
 		fig := &odd.figures[i]
 		if fig.form.polygon != nil {
-			b.polygons = append(slices.Clip(b.polygons), fig.form.polygon)
+			b.polygons = append(b.polygons, fig.form.polygon)
 		}
 		w.form(&fig.form, &odd.forms.rects, uint32(len(b.polygons)), at, fig.ordinal)
 	}
-	scale := f.forms.scale
-	for i := range b.probes {
-		if b.probes[i].Top != top {
-			continue
-		}
-		p := b.probes[i].Box
-		if scale == 1 {
-			// A probe between two whole units touches what reaches over both: whole boxes touch [ceil, floor] of it exactly then.
-			p = Box{(p.X1 + 1) >> 1, (p.Y1 + 1) >> 1, p.X2 >> 1, p.Y2 >> 1}
-			if p.X1 > p.X2 {
-				p.X1, p.X2 = p.X2, p.X1
-			}
-			if p.Y1 > p.Y2 {
-				p.Y1, p.Y2 = p.Y2, p.Y1
-			}
-		}
-		w.probe(at.applyBox(p), uint32(f.total)+uint32(i))
-	}
+	b.polygons = b.l.look.emit(top, &w, b.polygons)
 	b.opt.stage("sort")
 	sets := union(b.l.nodeOf.Data)
 	if b.joined {
@@ -284,14 +263,6 @@ func (b *builder) prepare(top int, win window) error {
 	}
 	b.sorted = dropCopies(sortItems(b.items.Data[:w.nItem], b.scratch.Data[:w.nItem], b.jobs), sets, uint32(f.total), b.l.keptTags())
 	return nil
-}
-
-// probe emits the item of a probe, cut to what 32 bits hold.
-func (w *flattener) probe(b Box, id uint32) {
-	b = Box{max(b.X1, math.MinInt32), max(b.Y1, math.MinInt32), min(b.X2, math.MaxInt32), min(b.Y2, math.MaxInt32)}
-	if b.X1 <= b.X2 && b.Y1 <= b.Y2 {
-		w.rectangle(b, id)
-	}
 }
 
 // dropCopies drops rectangles that are exact copies of one before them and joins the two figures. Copies stand side by side, or among
@@ -334,9 +305,7 @@ func (b *builder) search(sets union, win window) error {
 		return err
 	}
 	for i := range sinks {
-		for _, h := range sinks[i].hits {
-			b.l.hits = append(b.l.hits, ProbeHit{h.probe, h.figure})
-		}
+		b.l.hits = append(b.l.hits, sinks[i].hits...)
 		sinks[i].hits = nil
 	}
 	b.sinks = append(b.sinks, sinks...)

@@ -4,8 +4,6 @@ import (
 	"context"
 	"math"
 
-	"golang.org/x/sync/errgroup"
-
 	"maskpair/decompose/exact"
 )
 
@@ -93,19 +91,12 @@ func (s *solver) solveNear(ctx context.Context, d *dealer, usual []int8, bias fl
 		s.groups[i].comeHome(off[start[i]:start[i+1]])
 	}
 	s.findSame()
-	var g errgroup.Group
-	g.SetLimit(max(jobs, 1))
-	for i := range s.groups {
-		b := &s.groups[i]
-		if b.same != i || !b.homing {
-			continue
-		}
-		g.Go(func() error {
+	err := s.each(ctx, jobs, func(b *brokenGroup) {
+		if &s.groups[b.same] == b && b.homing {
 			b.near = exact.Solve(b.problem, exact.DefaultBudget())
-			return ctx.Err()
-		})
-	}
-	if err := g.Wait(); err != nil {
+		}
+	})
+	if err != nil {
 		return err
 	}
 	for i := range s.groups {
@@ -113,13 +104,9 @@ func (s *solver) solveNear(ctx context.Context, d *dealer, usual []int8, bias fl
 		if !b.homing {
 			continue
 		}
-		near := s.groups[b.same].near
 		// A solution that is worse in what counts (where the budget ran out) is not taken.
-		if near.Cost/b.homeUnit > b.solution.Cost {
-			continue
-		}
-		for k, u := range b.nodes {
-			s.a.mask.Data[u] = b.mask(near.Masks, k)
+		if near := s.groups[b.same].near; near.Cost/b.homeUnit <= b.solution.Cost {
+			s.take(b, near.Masks)
 		}
 	}
 	return nil
@@ -167,7 +154,8 @@ func (b *brokenGroup) comeHome(off [][2]int64) {
 	for _, c := range b.weighed.Cost {
 		worst += c[0] + c[1]
 	}
-	b.homing = worst < 1<<61/sum
+	// A crowded pair that is broken has no weight that counts it once, so such a group stays as it was solved.
+	b.homing = worst < 1<<61/sum && !(b.crowded() && b.solution.Cost >= b.units.waived)
 	if !b.homing {
 		return
 	}
@@ -181,12 +169,16 @@ func (b *brokenGroup) comeHome(off [][2]int64) {
 		p.Cost[k] = [2]int64{c[0] * sum, c[1] * sum}
 	}
 	for k, o := range off {
-		n, flip := int32(k), uint8(0)
-		if b.rep != nil {
-			n, flip = b.rep[k], b.flip[k]
+		n := int64(b.atomsOf(k))
+		for i := range n {
+			atom := b.atom(k) + int(i)
+			to, flip := int32(atom), uint8(0)
+			if b.rep != nil {
+				to, flip = b.rep[atom], b.flip[atom]
+			}
+			p.Cost[to][flip] += o[0] / n
+			p.Cost[to][flip^1] += o[1] / n
 		}
-		p.Cost[n][flip] += o[0]
-		p.Cost[n][flip^1] += o[1]
 	}
 	b.problem = p
 }

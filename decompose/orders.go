@@ -2,6 +2,7 @@ package decompose
 
 import (
 	"fmt"
+	"slices"
 	"strings"
 )
 
@@ -9,11 +10,13 @@ import (
 // nothing. Package anchor makes them; see its documentation for where they come from.
 type Orders struct {
 	Anchors []Anchor
-	Ties    []Tie
-	Wishes  []Anchor
+	Ties    []Tie    // a node may be tied to itself: it is under an order then
+	Wishes  []Anchor // each node and mask once
 	Waivers []Waiver
-	// Describe words where an order comes from ("anchors.toml:12, anchor bias, at (120, 340) nm"); it is called for messages only.
-	Describe func(source int32) string
+	// DescribeAnchor words where an anchor comes from ("anchors.toml:12: anchor "bias" puts (120, 340) nm in chip on A"), and so does
+	// DescribeTie. They are called for messages only.
+	DescribeAnchor func(Anchor) string
+	DescribeTie    func(Tie) string
 	// Memory is the mask of each node in the baseline: NoMemory, or 1 + mask. Nil: no baseline.
 	Memory []uint8
 }
@@ -21,18 +24,18 @@ type Orders struct {
 // NoMemory is the entry of a node that the baseline does not know.
 const NoMemory = 0
 
-// Anchor holds a node on a mask, or wishes it there.
+// Anchor holds a node on a mask, or wishes it there. Source is for whoever made it.
 type Anchor struct {
 	Node   uint32
 	Mask   Mask
-	Source int32
+	Source uint32
 }
 
 // Tie holds two nodes on the same mask, or on opposite ones.
 type Tie struct {
 	A, B     uint32
 	Opposite bool
-	Source   int32
+	Source   uint32
 }
 
 // Waiver accepts the near pair of two nodes.
@@ -46,63 +49,75 @@ func (o *Orders) contradiction(nodes int) error {
 	if len(o.Anchors)+len(o.Ties) == 0 {
 		return nil
 	}
-	// Orders as a graph: nodes and the two masks (numbered behind them), links with their sources. A link that contradicts what is
-	// known closes a chain: the way between its ends through earlier links, and itself.
-	p := newParity(make([]uint32, nodes+1))
-	ground := uint32(nodes)
-	type link struct {
-		to, apart uint32
-		source    int32
-	}
-	links := map[uint32][]link{}
-	add := func(a, b, apart uint32, source int32) error {
-		if p.relate(a, b, apart) {
-			if a != b {
-				links[a] = append(links[a], link{b, apart, source})
-				links[b] = append(links[b], link{a, apart, source})
-			}
-			return nil
-		}
-		// Breadth first from a to b.
-		type step struct {
-			from   uint32
-			source int32
-		}
-		back := map[uint32]step{a: {a, -1}}
-		queue := []uint32{a}
-		for len(queue) > 0 && a != b {
-			at := queue[0]
-			queue = queue[1:]
-			if at == b {
-				break
-			}
-			for _, l := range links[at] {
-				if _, seen := back[l.to]; !seen {
-					back[l.to] = step{at, l.source}
-					queue = append(queue, l.to)
-				}
+	// What ties relate is one set; the set's mask is that of its root. Only where an order contradicts what came before it is the chain
+	// looked for.
+	held := make([]uint8, nodes) // by root: 0, or 1 + mask
+	if len(o.Ties) == 0 {
+		for i, a := range o.Anchors {
+			if h := &held[a.Node]; *h == 0 {
+				*h = 1 + uint8(a.Mask)
+			} else if *h != 1+uint8(a.Mask) {
+				return o.chain(nodes, o.Anchors[:i], nil, a.Node, uint32(nodes), o.DescribeAnchor(a))
 			}
 		}
-		var chain []string
-		for at := b; at != a; at = back[at].from {
-			chain = append(chain, o.Describe(back[at].source))
-		}
-		chain = append(chain, o.Describe(source))
-		return &OrderError{Msg: fmt.Sprintf("these orders contradict each other: %s; drop or change one of them", strings.Join(chain, " - "))}
+		return nil
 	}
-	for _, t := range o.Ties {
-		apart := uint32(0)
-		if t.Opposite {
-			apart = 1
-		}
-		if err := add(t.A, t.B, apart, t.Source); err != nil {
-			return err
+	p := newParity(make([]uint32, nodes))
+	for i, t := range o.Ties {
+		if !p.relate(t.A, t.B, uint32(boolInt(t.Opposite))) {
+			return o.chain(nodes, nil, o.Ties[:i], t.A, t.B, o.DescribeTie(t))
 		}
 	}
-	for _, a := range o.Anchors {
-		if err := add(a.Node, ground, uint32(a.Mask), a.Source); err != nil {
-			return err
+	for i, a := range o.Anchors {
+		root, other := p.find(a.Node)
+		want := 1 + (uint8(a.Mask) ^ uint8(other))
+		if h := &held[root]; *h == 0 {
+			*h = want
+		} else if *h != want {
+			return o.chain(nodes, o.Anchors[:i], o.Ties, a.Node, uint32(nodes), o.DescribeAnchor(a))
 		}
 	}
 	return nil
+}
+
+// chain words the shortest chain of orders from a node to another, with the order that contradicts it. Node number `nodes` stands for
+// the masks themselves: an anchor leads from its node there.
+func (o *Orders) chain(nodes int, anchors []Anchor, ties []Tie, from, to uint32, last string) error {
+	type link struct {
+		to    uint32
+		order int // place in ties, or behind them in anchors
+	}
+	links := map[uint32][]link{}
+	join := func(a, b uint32, order int) {
+		links[a] = append(links[a], link{b, order})
+		links[b] = append(links[b], link{a, order})
+	}
+	for i, t := range ties {
+		join(t.A, t.B, i)
+	}
+	for i, a := range anchors {
+		join(a.Node, uint32(nodes), len(ties)+i)
+	}
+	back := map[uint32]link{from: {from, -1}}
+	queue := []uint32{from}
+	for len(queue) > 0 {
+		at := queue[0]
+		queue = queue[1:]
+		for _, l := range links[at] {
+			if _, seen := back[l.to]; !seen {
+				back[l.to] = link{at, l.order}
+				queue = append(queue, l.to)
+			}
+		}
+	}
+	var chain []string
+	for at := to; at != from; at = back[at].to {
+		if i := back[at].order; i < len(ties) {
+			chain = append(chain, o.DescribeTie(ties[i]))
+		} else {
+			chain = append(chain, o.DescribeAnchor(anchors[i-len(ties)]))
+		}
+	}
+	slices.Reverse(chain)
+	return &OrderError{Msg: fmt.Sprintf("these orders contradict each other: %s; drop or change one of them", strings.Join(append(chain, last), " - "))}
 }

@@ -23,6 +23,8 @@ type outputPlan struct {
 const (
 	actionKeep = iota
 	actionDrop
+	actionReplace
+	actionKeepAndReplace
 	actionMasks // + 2*layer + mask
 )
 
@@ -31,6 +33,8 @@ func newOutputPlan(rules *Rules, c *classes, v *variants, only string, tails map
 	p := &outputPlan{rules: rules, classes: c, v: v, tails: tails, top: only != ""}
 	p.actions = make([]gds.Action, actionMasks+2*len(rules.Layers))
 	p.actions[actionDrop].Op = gds.Drop
+	p.actions[actionReplace].Op = gds.Replace
+	p.actions[actionKeepAndReplace].Op = gds.KeepAndReplace
 	for i := range rules.Layers {
 		l := &rules.Layers[i]
 		p.actions[actionMasks+2*i] = gds.Action{Op: gds.Relayer, Layer: l.MaskA}
@@ -121,6 +125,7 @@ func (p *outputPlan) copies(structure int) []gds.Copy {
 			c.Name = p.names[s][rank]
 		}
 		c.Figures = p.figures(s, int32(i), drops)
+		c.Pieces = p.pieces(s, int32(i), c.Figures)
 		c.Refs = p.refs(s, int32(i))
 		c.Tail = p.tails[s]
 	}
@@ -187,6 +192,30 @@ func (p *outputPlan) figures(s, way int32, drops []uint8) []uint8 {
 	}
 	if !changed {
 		return nil
+	}
+	return out
+}
+
+// pieces gives the own figures of one way that come out in pieces, and sets their actions.
+func (p *outputPlan) pieces(s, way int32, actions []uint8) map[uint32][]gds.Piece {
+	cut := p.v.tables[s].inPieces(way)
+	if len(cut) == 0 {
+		return nil
+	}
+	out := map[uint32][]gds.Piece{}
+	for ; len(cut) > 0; cut = cut[3:] {
+		l := p.v.layers[cut[0]]
+		l.flat.ownFigures(s, func(i, figure uint32) {
+			if i != cut[1] {
+				return
+			}
+			k := figure - p.v.h.lib.Structures[s].FirstFigure
+			out[k] = l.cuts.forms[cut[2]].pieces
+			actions[k] = actionReplace
+			if l.rules.KeepDrawn && l.flat.sel.tag[p.v.h.lib.Figures[figure].Class] == drawn {
+				actions[k] = actionKeepAndReplace
+			}
+		})
 	}
 	return out
 }

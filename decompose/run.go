@@ -27,7 +27,7 @@ type Run struct {
 
 // Orderer says what the user, the layout and an earlier result order. Package anchor implements it.
 type Orderer interface {
-	// Probes gives the boxes that look for shapes of a deck layer.
+	// Probes gives the places that look for shapes of a deck layer.
 	Probes(layer int, v *View) ([]Probe, error)
 	// Orders turns what the probes hit into orders; it is called once the shapes of the layer are known.
 	Orders(layer int, v *View) (*Orders, error)
@@ -105,17 +105,18 @@ func (r *Run) Close() {
 func (r *Run) layer(ctx context.Context, i int, orders Orderer) error {
 	rules := &r.rules.Layers[i]
 	v := &View{run: r, layer: i}
-	var probes []Probe
+	want := &sought{markers: r.classes.selectMarkers(i)}
 	if orders != nil {
 		var err error
-		if probes, err = orders.Probes(i, v); err != nil {
+		if want.probes, err = orders.Probes(i, v); err != nil {
 			return err
 		}
 	}
-	l, err := newLayout(ctx, r.h, r.classes.selectLayer(i), rules, i, probes, &r.opt)
+	l, err := newLayout(ctx, r.h, r.classes.selectLayer(i), rules, i, want, &r.opt)
 	if err != nil {
 		return err
 	}
+	l.classes = r.classes
 	r.layers = append(r.layers, l)
 	v.layout = l
 	r.opt.stage("solve")
@@ -138,10 +139,13 @@ func (r *Run) layer(ctx context.Context, i int, orders Orderer) error {
 	if err := l.deal(ctx, a, s, r.opt.jobs()); err != nil {
 		return err
 	}
+	if err := l.cutFigures(a.mask.Data); err != nil {
+		return err
+	}
 	r.masks = append(r.masks, a.mask.Data)
 	r.opt.stage("report")
 	res := r.summarise(l, a, o)
-	if err := s.explain(ctx, &res); err != nil {
+	if err := s.explain(ctx, r.rules, &res); err != nil {
 		return err
 	}
 	r.mark(&res)
@@ -167,20 +171,21 @@ func (r *Run) summarise(l *layout, a *assignment, o *Orders) LayerResult {
 		r.warn("layer %s: %d drawn elements cover no area; they stay as they are and are not counted", l.rules.Name, l.flat.withoutArea)
 	}
 	unit := float64(l.flat.forms.scale * l.flat.forms.scale)
-	for u, area := range l.area {
-		if a.mask.Data[u] == 0 {
-			res.AreaA += area
-		} else {
-			res.AreaB += area
-		}
+	for u := range l.area {
+		onA, onB := l.areaOn(uint32(u), a.mask.Data[u])
+		res.AreaA += onA
+		res.AreaB += onB
 	}
 	res.AreaA /= unit
 	res.AreaB /= unit
-	anchored := map[uint32]bool{}
+	anchored := make([]uint64, (l.shapes+63)/64)
 	for _, an := range o.Anchors {
-		anchored[l.shapeOf(an.Node)] = true
+		shape := l.shapeOf(an.Node)
+		if bit := uint64(1) << (shape & 63); anchored[shape>>6]&bit == 0 {
+			anchored[shape>>6] |= bit
+			res.AnchoredShapes++
+		}
 	}
-	res.AnchoredShapes = int64(len(anchored))
 	for u, m := range o.Memory {
 		if m != NoMemory {
 			res.BaselineShapes++
@@ -195,8 +200,9 @@ func (r *Run) summarise(l *layout, a *assignment, o *Orders) LayerResult {
 			res.WishesKept++
 		}
 	}
+	res.Stitches = l.cuts.laps()
 	if l.given != nil {
-		res.Stitches = l.given.laps
+		res.Stitches += l.given.laps
 	}
 	return res
 }

@@ -23,7 +23,8 @@ type variants struct {
 }
 
 // variantTable holds the ways of one structure. A way is a list of words: first the masks of the own figures, layer by layer, 32 to a
-// word, then the way of each element of each active reference.
+// word, then the way of each element of each active reference, then for each own figure in pieces: deck layer, number of the figure,
+// and form.
 type variantTable struct {
 	words  []uint32
 	start  []uint32 // of way i in words; one more at the end
@@ -33,6 +34,7 @@ type variantTable struct {
 	rank   []int32 // by way: 0 keeps the name, 1 is the first variant, ...
 	drawn  int32   // rank of the structure as drawn; below 0: not needed
 	plain  int     // words of own figures
+	kids   int     // words of the elements of active references
 }
 
 func (t *variantTable) ways() int { return len(t.uses) }
@@ -40,7 +42,10 @@ func (t *variantTable) ways() int { return len(t.uses) }
 func (t *variantTable) way(i int32) []uint32 { return t.words[t.start[i]:t.start[i+1]] }
 
 // children are the ways of what the elements of the active references place, in order.
-func (t *variantTable) children(i int32) []uint32 { return t.way(i)[t.plain:] }
+func (t *variantTable) children(i int32) []uint32 { return t.way(i)[t.plain : t.plain+t.kids] }
+
+// inPieces are the own figures that come out in pieces, three words each.
+func (t *variantTable) inPieces(i int32) []uint32 { return t.way(i)[t.plain+t.kids:] }
 
 // newVariants walks all tops.
 func newVariants(h *hierarchy, layers []*layout, masks [][]uint8) *variants {
@@ -50,6 +55,12 @@ func newVariants(h *hierarchy, layers []*layout, masks [][]uint8) *variants {
 		for _, l := range layers {
 			v.active[s] = v.active[s] || l.flat.all[s] > 0
 			v.tables[s].plain += int(l.flat.own[s]+31) / 32
+		}
+		st := &h.lib.Structures[s]
+		for r := st.FirstRef; r < st.EndRef; r++ {
+			if ref := &h.lib.Refs[r]; ref.Target >= 0 && v.active[ref.Target] {
+				v.tables[s].kids += int(elements(h.lib, ref))
+			}
 		}
 	}
 	for i, top := range h.tops {
@@ -67,11 +78,14 @@ func newVariants(h *hierarchy, layers []*layout, masks [][]uint8) *variants {
 // walk gives the way of one placement of a structure; the cursors pass over its figures.
 func (v *variants) walk(s int32) uint32 {
 	begin := len(v.stack)
+	var cut []uint32
 	for k, l := range v.layers {
 		own := l.flat.own[s]
 		if own == 0 {
 			continue
 		}
+		at := len(v.stack)
+		first := uint32(v.cursor[k])
 		nodes := l.nodeOf.Data[v.cursor[k] : v.cursor[k]+uint64(own)]
 		v.cursor[k] += uint64(own)
 		masks := v.masks[k]
@@ -83,6 +97,9 @@ func (v *variants) walk(s int32) uint32 {
 			}
 			v.stack = append(v.stack, word)
 			nodes = nodes[n:]
+		}
+		if l.cuts != nil && len(l.cuts.figures) > 0 {
+			cut = v.cutFigures(cut, k, first, own, v.stack[at:])
 		}
 	}
 	st := &v.h.lib.Structures[s]
@@ -96,9 +113,29 @@ func (v *variants) walk(s int32) uint32 {
 			v.stack = append(v.stack, w)
 		}
 	}
+	v.stack = append(v.stack, cut...)
 	way := v.tables[s].intern(v.stack[begin:])
 	v.stack = v.stack[:begin]
 	return uint32(way)
+}
+
+// cutFigures corrects the masks of own figures of cut shapes, and appends what comes out in pieces.
+func (v *variants) cutFigures(cut []uint32, layer int, first, own uint32, words []uint32) []uint32 {
+	for i := range own {
+		form, ok := v.layers[layer].cuts.figures[first+i]
+		if !ok {
+			continue
+		}
+		words[i/32] &^= 1 << (i % 32)
+		switch form {
+		case -1:
+		case -2:
+			words[i/32] |= 1 << (i % 32)
+		default:
+			cut = append(cut, uint32(layer), i, uint32(form))
+		}
+	}
+	return cut
 }
 
 // intern gives the number of a way, a new one where it has not been met.
@@ -224,7 +261,10 @@ func (v *variants) sign(s, way int32, signs [][]uint64) uint64 {
 		})
 		word += (l.flat.own[s] + 31) / 32
 	}
-	children := words[t.plain:]
+	children := t.children(way)
+	for cut := t.inPieces(way); len(cut) > 0; cut = cut[3:] {
+		sum += mix(mix(uint64(cut[0]), uint64(cut[1])), v.layers[cut[0]].cuts.forms[cut[2]].sign)
+	}
 	st := &v.h.lib.Structures[s]
 	k := 0
 	for r := st.FirstRef; r < st.EndRef; r++ {

@@ -1,0 +1,197 @@
+package decompose
+
+import (
+	"fmt"
+	"math"
+
+	"maskpair/decompose/geom"
+)
+
+// This file lets places look for shapes: a box of the anchor file, a label, a figure of a marker layer. They go through the sweep with
+// the figures of the layer, as items whose IDs come behind those of the figures, and so cost no more than figures do.
+
+// Probe is a place that looks for shapes of a deck layer: it hits what it touches.
+type Probe struct {
+	Top     int            // index into the tops
+	Box     Box            // half database units of the top; a point is a box without extent
+	Outline *[4]geom.Point // corners, where the box lies at an odd angle (Box is then around them); else nil
+}
+
+// sought is what a layer is built for beside its masks.
+type sought struct {
+	probes  []Probe
+	markers *selection // the figures of the marker layers; nil: none
+}
+
+// lookout is all that looks for shapes of one layer.
+type lookout struct {
+	probes   []Probe
+	polygons []*geom.Polygon // of the probes with outlines that are at an angle, in order
+	markers  *flat           // nil: none
+	odd      []oddFigures    // of the markers, by top
+	figures  uint32          // probes have their IDs from here on, markers behind them
+	scale    int64
+}
+
+// newLookout prepares probes, and the figures of marker layers if there are any.
+func newLookout(h *hierarchy, want *sought, g grid) (*lookout, error) {
+	k := &lookout{scale: g.scale}
+	if want == nil {
+		return k, nil
+	}
+	k.probes = want.probes
+	for i := range k.probes {
+		if p := k.polygon(&k.probes[i]); p != nil {
+			k.polygons = append(k.polygons, p)
+		}
+	}
+	if want.markers == nil {
+		return k, nil
+	}
+	var err error
+	if k.markers, err = newFlat(h, want.markers, grid{g.scale, gridOf(h.lib, want.markers).halves}); err != nil {
+		return nil, err
+	}
+	k.odd = make([]oddFigures, len(h.tops))
+	for top := range k.odd {
+		if err := k.markers.collectOdd(top, &k.odd[top]); err != nil {
+			return nil, err
+		}
+	}
+	return k, nil
+}
+
+// needsHalves tells whether something that looks for shapes lies on half units.
+func (s *sought) needsHalves(h *hierarchy) bool {
+	if s == nil {
+		return false
+	}
+	for i := range s.probes {
+		b := &s.probes[i].Box
+		if (b.X1|b.Y1|b.X2|b.Y2)&1 != 0 {
+			return true
+		}
+		if o := s.probes[i].Outline; o != nil {
+			for _, p := range o {
+				if (p.X|p.Y)&1 != 0 {
+					return true
+				}
+			}
+		}
+	}
+	return s.markers != nil && gridOf(h.lib, s.markers).halves
+}
+
+// polygon gives the polygon of a probe at an angle, in work units; nil where the box will do.
+func (k *lookout) polygon(p *Probe) *geom.Polygon {
+	if p.Outline == nil {
+		return nil
+	}
+	points := make([]geom.Point, len(p.Outline))
+	for i, q := range p.Outline {
+		points[i] = geom.Point{X: q.X * k.scale / 2, Y: q.Y * k.scale / 2}
+	}
+	if made := geom.NewPolygon(points, geom.EvenOdd); made.HasArea() && !geom.IsManhattan(points) {
+		return made
+	}
+	return nil
+}
+
+// number deals the IDs behind those of the figures.
+func (k *lookout) number(figures uint64) error {
+	k.figures = uint32(figures)
+	total := figures + uint64(len(k.probes))
+	if k.markers != nil {
+		total += k.markers.total
+	}
+	if total > maxFlat {
+		return &LimitError{Msg: fmt.Sprintf("a deck layer has %d flat figures, anchors and markers, more than the %d that can be numbered: decompose its blocks one by one with --top", total, int64(maxFlat))}
+	}
+	return nil
+}
+
+// size gives the number of items and bands that look for shapes of a top.
+func (k *lookout) size(top int) (items, bands int) {
+	for _, p := range k.polygons {
+		items += len(p.Bands())
+		bands += len(p.Bands())
+	}
+	for i := range k.probes {
+		if k.probes[i].Top == top {
+			items++
+		}
+	}
+	if k.markers == nil || k.markers.all[k.markers.h.tops[top]] == 0 {
+		return items, bands
+	}
+	t := k.markers.h.tops[top]
+	items += int(k.markers.items[t])
+	bands += int(k.markers.bands[t])
+	for i := range k.odd[top].figures {
+		n := int(k.odd[top].figures[i].form.pieces())
+		items += n
+		if k.odd[top].figures[i].form.polygon != nil {
+			bands += n
+		}
+	}
+	return items, bands
+}
+
+// emit appends the items of all that looks for shapes of a top; polygons are appended to those of the layer.
+func (k *lookout) emit(top int, w *flattener, polygons []*geom.Polygon) []*geom.Polygon {
+	at := placement{0, -w.win.originX, -w.win.originY}
+	next := 0
+	for i := range k.probes {
+		p := &k.probes[i]
+		id := k.figures + uint32(i)
+		if p.Outline != nil {
+			if made := k.polygon(p); made != nil {
+				polygons = append(polygons, k.polygons[next])
+				next++
+				if p.Top == top {
+					box := made.Box()
+					w.form(&form{polygon: made, box: Box(box)}, nil, uint32(len(polygons)), at, id)
+				}
+				continue
+			}
+		}
+		if p.Top == top {
+			b := p.Box
+			if k.scale == 1 {
+				b = Box{b.X1 / 2, b.Y1 / 2, b.X2 / 2, b.Y2 / 2}
+			}
+			w.probe(at.applyBox(b), id)
+		}
+	}
+	if k.markers == nil || k.markers.all[k.markers.h.tops[top]] == 0 {
+		return polygons
+	}
+	m := k.markers
+	base := uint32(len(polygons))
+	polygons = append(polygons, m.polygons...)
+	f := *w
+	f.f = m
+	// The markers' numbers of polygons, and their ordinals, come behind those of the layer.
+	f.polygonBase = base
+	behind := k.figures + uint32(len(k.probes))
+	f.walk(m.h.tops[top], at, m.first[top]+uint64(behind))
+	for i := range k.odd[top].figures {
+		fig := &k.odd[top].figures[i]
+		number := uint32(0)
+		if fig.form.polygon != nil {
+			polygons = append(polygons, fig.form.polygon)
+			number = uint32(len(polygons)) - base
+		}
+		f.form(&fig.form, &k.odd[top].forms.rects, number, at, fig.ordinal+behind)
+	}
+	w.nItem, w.nBand = f.nItem, f.nBand
+	return polygons
+}
+
+// probe emits the item of a probe, cut to what 32 bits hold.
+func (w *flattener) probe(b Box, id uint32) {
+	b = Box{max(b.X1, math.MinInt32), max(b.Y1, math.MinInt32), min(b.X2, math.MaxInt32), min(b.Y2, math.MaxInt32)}
+	if b.X1 <= b.X2 && b.Y1 <= b.Y2 {
+		w.rectangle(b, id)
+	}
+}
