@@ -15,7 +15,8 @@ import (
 // The points are changed in place.
 func canonical(points []geom.Point) []geom.Point {
 	points = withoutIdle(points)
-	if len(points) < 3 {
+	if len(points) < 3 { // encloses nothing
+		slices.SortFunc(points, comparePoints)
 		return points
 	}
 	points = rotate(points, least(points))
@@ -36,15 +37,18 @@ func withoutIdle(points []geom.Point) []geom.Point {
 		changed = false
 		out := points[:0]
 		n := len(points)
-		first, last := points[0], points[n-1]
+		last := points[n-1]
 		for i := range n {
 			before := last
 			if len(out) > 0 {
 				before = out[len(out)-1]
 			}
-			p, after := points[i], first
+			p := points[i]
+			after := p
 			if i+1 < n {
 				after = points[i+1]
+			} else if len(out) > 0 {
+				after = out[0] // the first that is still there
 			}
 			if p == before || geom.Orient(before, p, after) == 0 && between(before, p, after) {
 				changed = true

@@ -50,9 +50,10 @@ func (o *overlay) add(points []geom.Point, fill geom.Fill, covers bool) {
 // covered says whether every point of the outlines to be covered, all within box, is in one that covers. Points on lines do
 // not count.
 func (o *overlay) covered(box geom.Rect) bool {
-	// What lies right of the box, or wholly above or below it, changes nothing in it.
+	// What lies right of the box, or wholly above or below it, changes nothing in it. Edges on its right side end what is
+	// to be covered.
 	o.edges = slices.DeleteFunc(o.edges, func(e slope) bool {
-		return e.b.Y <= box.Y1 || e.a.Y >= box.Y2 || min(e.a.X, e.b.X) >= box.X2
+		return e.b.Y <= box.Y1 || e.a.Y >= box.Y2 || min(e.a.X, e.b.X) > box.X2
 	})
 	slices.SortFunc(o.edges, func(e, f slope) int { return int(sign(e.a.Y - f.a.Y)) })
 	heights := o.heights(box)

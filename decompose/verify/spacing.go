@@ -155,7 +155,7 @@ func (j *judge) pairFault(c *Check, a, b geom.Rect, pr *pair, text string) {
 	}
 	box, other := decompose.Box(a), decompose.Box(b)
 	c.fault(Place{Top: j.topText(j.flat.topOf(pr.a.fig)), Box: &box, Other: &other,
-		Text: fmt.Sprintf(text, j.v.rules.Length(math.Round(j.distance(pr)*500)/1000))})
+		Text: fmt.Sprintf(text, j.v.rules.Length(math.Round(j.distance(pr)*1000)/1000))})
 }
 
 // distance measures, for a message, how far apart the two figures of a pair are where they come near, in database units.
