@@ -47,7 +47,8 @@ func runDecompose(ctx context.Context, o *Options, w *work) (*report.Report, err
 	if err != nil {
 		return nil, err
 	}
-	if _, err := o.ParseAnchors(rules); err != nil {
+	file, err := o.ParseAnchors(rules)
+	if err != nil {
 		return nil, err
 	}
 	run, err := decompose.New(lib, rules, decompose.Options{Jobs: o.Jobs, Memory: o.Memory, Top: o.Top, Stage: w.clock.Stage})
@@ -55,7 +56,7 @@ func runDecompose(ctx context.Context, o *Options, w *work) (*report.Report, err
 		return nil, err
 	}
 	defer run.Close()
-	result, err := run.Decompose(ctx, &anchor.Sources{})
+	result, err := run.Decompose(ctx, &anchor.Sources{File: file})
 	if err != nil {
 		return nil, err
 	}

@@ -17,23 +17,21 @@ import (
 // stitched. Shapes are numbered top by top (tops by name), and within a top in the order in which the sweep meets them, so that
 // numbers depend on the geometry and not on the order of elements in the file.
 type layout struct {
-	rules   *LayerRules
-	number  int // of the deck layer
-	classes *classes
-	flat    *flat
-	nodeOf  *arena.Array[uint32] // by ordinal
-	shapes  int
-	nodes   int
-	first   []uint32  // first node of each top, by rank of the top; one more at the end
-	area    []float64 // by node, square work units
-	near    *neighbours
-	box     *arena.Array[Box]   // by node, once boxes was called
-	odd     []oddFigures        // by top
-	tags    *arena.Array[uint8] // by ordinal: what arrived on a mask; nil where nothing did
-	given   *givenStitches      // nil: none
-	cuts    *cuts               // nil: no shape of the layer can be cut
-	hits    []hit               // what looks for shapes, and the flat figures it touches
-	look    *lookout
+	rules  *LayerRules
+	number int // of the deck layer
+	flat   *flat
+	nodeOf *arena.Array[uint32] // by ordinal
+	shapes int
+	nodes  int
+	first  []uint32  // first node of each top, by rank of the top; one more at the end
+	area   []float64 // by node, square work units
+	near   *neighbours
+	box    *arena.Array[Box]   // by node, once boxes was called
+	odd    []oddFigures        // by top
+	tags   *arena.Array[uint8] // by ordinal: what arrived on a mask; nil where nothing did
+	given  *givenStitches      // nil: none
+	hits   []hit               // what looks for shapes, and the flat figures it touches
+	look   *lookout
 }
 
 // builder flattens and searches a deck layer. Its arrays are reused from top to top.
