@@ -9,7 +9,6 @@ import (
 	"os"
 	"path/filepath"
 	"strings"
-	"syscall"
 	"testing"
 	"testing/iotest"
 	"time"
@@ -185,10 +184,6 @@ func TestOpenFaults(t *testing.T) {
 	if _, err := Open("-", true, bytes.NewReader(quirks(t))); !errors.Is(err, ErrSpool) {
 		t.Errorf("no folder for the spool file: %v", err)
 	}
-	in, err := Open("-", true, iotest.TimeoutReader(bytes.NewReader(nil)))
-	if err == nil {
-		in.Close()
-	}
 }
 
 // TestInputFullDisk holds that a spool file that cannot be written ends the first pass.
@@ -244,33 +239,6 @@ func TestInputChanged(t *testing.T) {
 	}
 	if _, err := in.Index(metal(), nil); !errors.Is(err, ErrChanged) {
 		t.Errorf("the error is %v", err)
-	}
-}
-
-// TestInputPipe reads from a named pipe, which has a path but cannot be read twice.
-func TestInputPipe(t *testing.T) {
-	path := filepath.Join(t.TempDir(), "pipe")
-	if err := syscall.Mkfifo(path, 0o600); err != nil {
-		t.Skip("no named pipes here:", err)
-	}
-	data := quirks(t)
-	wrote := make(chan error, 1)
-	go func() { wrote <- os.WriteFile(path, data, 0o600) }()
-	in, err := Open(path, true, nil)
-	if err != nil {
-		t.Fatal(err)
-	}
-	defer in.Close()
-	lib, err := in.Index(metal(), nil)
-	if err != nil {
-		t.Fatal(err)
-	}
-	if err := <-wrote; err != nil {
-		t.Fatal(err)
-	}
-	var out bytes.Buffer
-	if err := CopyStream(&out, in.ReaderAt(), lib, metal(), Plan{}, nil); err != nil || !bytes.Equal(out.Bytes(), data) {
-		t.Errorf("the copy differs: %v", err)
 	}
 }
 
