@@ -53,6 +53,7 @@ type flat struct {
 
 	polygons    []*geom.Polygon
 	polygonOf   []uint32 // by outline; 0: none, else 1 + index
+	polygonBase uint32   // where the polygons begin in a list that several selections share
 	rounded     int64    // flat figures that were rounded
 	withoutArea int64    // drawn figures that cover nothing
 }
@@ -302,8 +303,12 @@ func (f *flat) collectOddIn(odd *oddFigures, s int32, at gds.Transform, ordinal 
 			continue
 		}
 		p := f.lib.PlacementOf(ref)
-		for row := int32(0); row < p.Rows; row++ {
-			for column := int32(0); column < p.Columns; column++ {
+		columns, rows := int32(1), int32(1)
+		if p != nil {
+			columns, rows = p.Columns, p.Rows
+		}
+		for row := range rows {
+			for column := range columns {
 				if err := f.collectOddIn(odd, ref.Target, gds.Compose(at, ref, p, column, row), ordinal); err != nil {
 					return err
 				}
@@ -395,8 +400,6 @@ type flattener struct {
 	bands []band
 	nItem uint64
 	nBand uint64
-
-	polygonBase uint32 // added to the numbers of polygons
 }
 
 // task is a part of a top to be flattened, with where its items go: the own figures of a structure (no references), or some elements
@@ -598,7 +601,7 @@ func (w *flattener) form(fm *form, rects *[]geom.Rect, polygon uint32, at placem
 		n := w.nItem
 		w.rectangle(at.applyBox(Box(b.Box)), bandBit|uint32(w.nBand))
 		if w.nItem > n {
-			w.bands[w.nBand] = band{w.polygonBase + polygon - 1, uint32(k), ordinal, place}
+			w.bands[w.nBand] = band{w.f.polygonBase + polygon - 1, uint32(k), ordinal, place}
 			w.nBand++
 		}
 	}

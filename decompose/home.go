@@ -26,7 +26,7 @@ func (l *layout) deal(ctx context.Context, a *assignment, s *solver, jobs int) e
 	if !shared || len(s.groups) == 0 {
 		return nil
 	}
-	best, bestCost := slices.Clone(a.mask.Data), d.cost()
+	best, bestCost := s.keep(), d.cost()
 	bias := 0.0
 	for range solveRounds {
 		if err := s.solveNear(ctx, d, d.usualMasks(), bias, jobs); err != nil {
@@ -34,12 +34,11 @@ func (l *layout) deal(ctx context.Context, a *assignment, s *solver, jobs int) e
 		}
 		d.turn(shared)
 		if cost := d.cost(); cost < bestCost {
-			bestCost = cost
-			copy(best, a.mask.Data)
+			best, bestCost = s.keep(), cost
 		}
 		bias += leanStep * d.imbalance()
 	}
-	copy(a.mask.Data, best)
+	s.restore(best)
 	return nil
 }
 

@@ -17,21 +17,23 @@ import (
 // stitched. Shapes are numbered top by top (tops by name), and within a top in the order in which the sweep meets them, so that
 // numbers depend on the geometry and not on the order of elements in the file.
 type layout struct {
-	rules  *LayerRules
-	number int // of the deck layer
-	flat   *flat
-	nodeOf *arena.Array[uint32] // by ordinal
-	shapes int
-	nodes  int
-	first  []uint32  // first node of each top, by rank of the top; one more at the end
-	area   []float64 // by node, square work units
-	near   *neighbours
-	box    *arena.Array[Box]   // by node, once boxes was called
-	odd    []oddFigures        // by top
-	tags   *arena.Array[uint8] // by ordinal: what arrived on a mask; nil where nothing did
-	given  *givenStitches      // nil: none
-	hits   []hit               // what looks for shapes, and the flat figures it touches
-	look   *lookout
+	rules   *LayerRules
+	number  int // of the deck layer
+	classes *classes
+	flat    *flat
+	nodeOf  *arena.Array[uint32] // by ordinal
+	shapes  int
+	nodes   int
+	first   []uint32  // first node of each top, by rank of the top; one more at the end
+	area    []float64 // by node, square work units
+	near    *neighbours
+	box     *arena.Array[Box]   // by node, once boxes was called
+	odd     []oddFigures        // by top
+	tags    *arena.Array[uint8] // by ordinal: what arrived on a mask; nil where nothing did
+	given   *givenStitches      // nil: none
+	cuts    *cuts               // nil: no shape of the layer can be cut
+	hits    []hit               // what looks for shapes, and the flat figures it touches
+	look    *lookout
 }
 
 // builder flattens and searches a deck layer. Its arrays are reused from top to top.
@@ -45,8 +47,9 @@ type builder struct {
 	bands    *arena.Array[band]
 	sinks    []pairSink
 	areas    geom.AreaScratch
-	sorted   []item // of the window at hand
-	joined   bool   // the shapes of the top at hand are settled: a window is only looked at again
+	sorted   []item                 // of the window at hand
+	slanted  map[uint32]*geom.Parts // shapes of the top at hand that have slanted figures
+	joined   bool                   // the shapes of the top at hand are settled: a window is only looked at again
 	polygons []*geom.Polygon
 	opt      *Options
 }
@@ -178,6 +181,7 @@ func (b *builder) top(top int, sets union, shapes uint32) (uint32, error) {
 		return 0, err
 	}
 	begin := shapes
+	b.slanted = map[uint32]*geom.Parts{}
 	for _, win := range windows {
 		if len(windows) > 1 {
 			if err := b.prepare(top, win); err != nil {
@@ -197,6 +201,7 @@ func (b *builder) top(top int, sets union, shapes uint32) (uint32, error) {
 		}
 		b.measure(begin, shapes)
 	}
+	b.measureSlanted(top)
 	return shapes, b.ctx.Err()
 }
 
@@ -244,15 +249,7 @@ func (b *builder) prepare(top int, win window) error {
 	}
 	w := flattener{f: f, win: win, items: b.items.Data, bands: b.bands.Data, nItem: nItem, nBand: nBand}
 	b.polygons = slices.Clip(f.polygons)
-	odd := &b.l.odd[top]
-	at := placement{0, -win.originX, -win.originY}
-	for i := range odd.figures {
-		fig := &odd.figures[i]
-		if fig.form.polygon != nil {
-			b.polygons = append(b.polygons, fig.form.polygon)
-		}
-		w.form(&fig.form, &odd.forms.rects, uint32(len(b.polygons)), at, fig.ordinal)
-	}
+	b.polygons = w.oddFigures(&b.l.odd[top], placement{0, -win.originX, -win.originY}, 0, b.polygons)
 	b.polygons = b.l.look.emit(top, &w, b.polygons)
 	b.opt.stage("sort")
 	sets := union(b.l.nodeOf.Data)
@@ -348,43 +345,41 @@ func (b *builder) numberShapes(sets union, shapes uint32) uint32 {
 		if !ok {
 			continue
 		}
-		root := sets[o]
-		if root&numbered != 0 {
-			continue
+		number := sets[o]
+		if number&numbered == 0 {
+			root := number
+			if sets[root]&numbered == 0 {
+				sets[root] = shapes | numbered
+				shapes++
+			}
+			number = sets[root]
 		}
-		if sets[root]&numbered == 0 {
-			sets[root] = shapes | numbered
-			shapes++
+		if isBand(b.sorted[i].ID) && b.slanted[number&^numbered] == nil {
+			b.slanted[number&^numbered] = &geom.Parts{}
 		}
 	}
 	return shapes
 }
 
-// measure adds up the merged area of the shapes with numbers from begin to end.
+// measure adds up the merged area of the shapes with numbers from begin to end, but for those with slanted figures.
 func (b *builder) measure(begin, end uint32) {
 	count := arena.New[uint32](int(end-begin) + 1)
 	defer count.Free()
 	n := count.Data
-	slanted := map[uint32]*geom.Parts{}
 	node := b.l.nodeOf.Data
 	for i := range b.sorted {
-		it := &b.sorted[i]
-		o, ok := b.ordinal(it)
-		if !ok {
-			continue
-		}
-		n[node[o]-begin]++
-		if isBand(it.ID) && slanted[node[o]] == nil {
-			slanted[node[o]] = &geom.Parts{}
+		if o, ok := b.ordinal(&b.sorted[i]); ok {
+			n[node[o]-begin]++
 		}
 	}
-	// Shapes of several rectangles are gathered in the scratch array, each in a stretch of its own.
+	// Shapes of several rectangles are gathered, each in a stretch of its own.
+	const alone = math.MaxUint32
 	at := uint32(0)
 	for k := range n {
-		if n[k] > 1 {
+		if n[k] > 1 && b.slanted[begin+uint32(k)] == nil {
 			n[k], at = at, at+n[k]
 		} else {
-			n[k] = math.MaxUint32
+			n[k] = alone
 		}
 	}
 	group := make([]geom.Rect32, at)
@@ -394,36 +389,29 @@ func (b *builder) measure(begin, end uint32) {
 		if !ok {
 			continue
 		}
-		k := node[o] - begin
-		switch {
-		case len(slanted) > 0 && slanted[node[o]] != nil:
-			parts := slanted[node[o]]
-			if !isBand(it.ID) {
-				parts.Rects = append(parts.Rects, it.rect())
-			} else if bd := &b.bands.Data[it.ID&^bandBit]; bd.number == 0 {
-				parts.Polygons = append(parts.Polygons, geom.Placed{Polygon: b.polygons[bd.polygon], At: bd.at})
-			}
-		case n[k] == math.MaxUint32:
-			b.l.area[node[o]] += float64(int64(it.X2)-int64(it.X1)) * float64(int64(it.Y2)-int64(it.Y1))
-			continue
-		}
-		if n[k] != math.MaxUint32 {
+		if k := node[o] - begin; n[k] != alone {
 			group[n[k]] = geom.Rect32{X1: it.X1, Y1: it.Y1, X2: it.X2, Y2: it.Y2}
 			n[k]++
+		} else if len(b.slanted) == 0 || b.slanted[node[o]] == nil {
+			b.l.area[node[o]] += float64(int64(it.X2)-int64(it.X1)) * float64(int64(it.Y2)-int64(it.Y1))
 		}
 	}
 	from := uint32(0)
 	for k := range n {
-		if n[k] == math.MaxUint32 {
-			continue
+		if n[k] != alone {
+			b.l.area[begin+uint32(k)] += float64(b.areas.UnionArea32(group[from:n[k]]))
+			from = n[k]
 		}
-		shape := begin + uint32(k)
-		if slanted[shape] == nil {
-			b.l.area[shape] += float64(b.areas.UnionArea32(group[from:n[k]]))
-		}
-		from = n[k]
 	}
-	for shape, parts := range slanted {
-		b.l.area[shape] += geom.UnionAreaPolygons(*parts)
+}
+
+// measureSlanted gives the shapes of a top that have slanted figures their areas.
+func (b *builder) measureSlanted(top int) {
+	if len(b.slanted) == 0 {
+		return
+	}
+	b.l.geometryIn(top, b.slanted)
+	for shape, parts := range b.slanted {
+		b.l.area[shape] = geom.UnionAreaPolygons(*parts)
 	}
 }

@@ -3,6 +3,7 @@ package decompose
 import (
 	"context"
 	"math"
+	"slices"
 
 	"maskpair/decompose/exact"
 )
@@ -110,6 +111,28 @@ func (s *solver) solveNear(ctx context.Context, d *dealer, usual []int8, bias fl
 		}
 	}
 	return nil
+}
+
+// choice is an assignment that may be taken up again.
+type choice struct {
+	mask  []uint8
+	atoms [][]uint8 // by broken group
+}
+
+func (s *solver) keep() choice {
+	c := choice{slices.Clone(s.a.mask.Data), make([][]uint8, len(s.groups))}
+	for i := range s.groups {
+		c.atoms[i] = s.groups[i].masks
+	}
+	return c
+}
+
+func (s *solver) restore(c choice) {
+	copy(s.a.mask.Data, c.mask)
+	for i := range s.groups {
+		s.groups[i].masks = c.atoms[i]
+		s.cut(&s.groups[i])
+	}
 }
 
 // nodes is the number of nodes of all broken groups.

@@ -8,6 +8,8 @@ type Options struct {
 	Memory int64             // bytes that the run may use; 0: no limit of its own
 	Top    string            // take this structure alone; "": all tops
 	Stage  func(name string) // told when a stage begins, possibly again; may be nil
+	// Drawings is for how many groups of a layer the result is to hold pictures, besides its maps; 0: no LayerResult.Drawing.
+	Drawings int
 }
 
 func (o *Options) jobs() int {

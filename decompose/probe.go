@@ -172,19 +172,26 @@ func (k *lookout) emit(top int, w *flattener, polygons []*geom.Polygon) []*geom.
 	f := *w
 	f.f = m
 	// The markers' numbers of polygons, and their ordinals, come behind those of the layer.
-	f.polygonBase = base
+	m.polygonBase = base
 	behind := k.figures + uint32(len(k.probes))
 	f.walk(m.h.tops[top], at, m.first[top]+uint64(behind))
-	for i := range k.odd[top].figures {
-		fig := &k.odd[top].figures[i]
+	polygons = f.oddFigures(&k.odd[top], at, behind, polygons)
+	w.nItem, w.nBand = f.nItem, f.nBand
+	return polygons
+}
+
+// oddFigures emits figures under a magnification or an odd angle, their ordinals raised by behind; their polygons are appended to a list
+// in which those of the selection begin at polygonBase.
+func (w *flattener) oddFigures(odd *oddFigures, at placement, behind uint32, polygons []*geom.Polygon) []*geom.Polygon {
+	for i := range odd.figures {
+		fig := &odd.figures[i]
 		number := uint32(0)
 		if fig.form.polygon != nil {
 			polygons = append(polygons, fig.form.polygon)
-			number = uint32(len(polygons)) - base
+			number = uint32(len(polygons)) - w.f.polygonBase
 		}
-		f.form(&fig.form, &k.odd[top].forms.rects, number, at, fig.ordinal+behind)
+		w.form(&fig.form, &odd.forms.rects, number, at, fig.ordinal+behind)
 	}
-	w.nItem, w.nBand = f.nItem, f.nBand
 	return polygons
 }
 

@@ -53,6 +53,7 @@ type LayerResult struct {
 	Waived               []WaivedPair
 	AnyMask              []Pair
 	Moved                []MovedShape
+	Drawing              *Drawing // nil: not asked for
 }
 
 // Cause tells why a component is unresolved.

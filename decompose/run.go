@@ -116,6 +116,7 @@ func (r *Run) layer(ctx context.Context, i int, orders Orderer) error {
 	if err != nil {
 		return err
 	}
+	l.classes = r.classes
 	r.layers = append(r.layers, l)
 	v.layout = l
 	r.opt.stage("solve")
@@ -138,13 +139,19 @@ func (r *Run) layer(ctx context.Context, i int, orders Orderer) error {
 	if err := l.deal(ctx, a, s, r.opt.jobs()); err != nil {
 		return err
 	}
+	if err := l.cutFigures(a.mask.Data); err != nil {
+		return err
+	}
 	r.masks = append(r.masks, a.mask.Data)
 	r.opt.stage("report")
 	res := r.summarise(l, a, o)
-	if err := s.explain(ctx, &res); err != nil {
+	if err := s.explain(ctx, r.rules, &res); err != nil {
 		return err
 	}
 	r.mark(&res)
+	if r.opt.Drawings > 0 {
+		res.Drawing = l.draw(a, o, &res, r.opt.Drawings)
+	}
 	r.result.Layers = append(r.result.Layers, res)
 	return ctx.Err()
 }
@@ -167,12 +174,10 @@ func (r *Run) summarise(l *layout, a *assignment, o *Orders) LayerResult {
 		r.warn("layer %s: %d drawn elements cover no area; they stay as they are and are not counted", l.rules.Name, l.flat.withoutArea)
 	}
 	unit := float64(l.flat.forms.scale * l.flat.forms.scale)
-	for u, area := range l.area {
-		if a.mask.Data[u] == 0 {
-			res.AreaA += area
-		} else {
-			res.AreaB += area
-		}
+	for u := range l.area {
+		onA, onB := l.areaOn(uint32(u), a.mask.Data[u])
+		res.AreaA += onA
+		res.AreaB += onB
 	}
 	res.AreaA /= unit
 	res.AreaB /= unit
@@ -198,8 +203,9 @@ func (r *Run) summarise(l *layout, a *assignment, o *Orders) LayerResult {
 			res.WishesKept++
 		}
 	}
+	res.Stitches = l.cuts.laps()
 	if l.given != nil {
-		res.Stitches = l.given.laps
+		res.Stitches += l.given.laps
 	}
 	return res
 }

@@ -157,22 +157,27 @@ func (l *layout) geometryOf(wanted map[uint32]*geom.Parts) {
 	if len(wanted) == 0 {
 		return
 	}
+	for top := range l.flat.h.tops {
+		l.geometryIn(top, wanted)
+	}
+}
+
+// geometryIn gathers the geometry of wanted nodes from one top.
+func (l *layout) geometryIn(top int, wanted map[uint32]*geom.Parts) {
 	node := l.nodeOf.Data
-	want := make([]uint64, (l.nodes+63)/64)
+	want := make([]uint64, (l.nodes+len(l.area)+63)/64)
 	for n := range wanted {
 		want[n>>6] |= 1 << (n & 63)
 	}
-	for top := range l.flat.h.tops {
-		l.eachFigure(top, func(o uint32) bool { return want[node[o]>>6]>>(node[o]&63)&1 != 0 },
-			func(ordinal, figure uint32, at placement, odd *oddFigure) {
-				parts := wanted[node[ordinal]]
-				if odd != nil {
-					l.odd[top].forms.place(&odd.form, placement{}, parts)
-				} else {
-					l.flat.parts(figure, at, parts)
-				}
-			})
-	}
+	l.eachFigure(top, func(o uint32) bool { return want[node[o]>>6]>>(node[o]&63)&1 != 0 },
+		func(ordinal, figure uint32, at placement, odd *oddFigure) {
+			parts := wanted[node[ordinal]]
+			if odd != nil {
+				l.odd[top].forms.place(&odd.form, placement{}, parts)
+			} else {
+				l.flat.parts(figure, at, parts)
+			}
+		})
 }
 
 // frame is the lowest cell that holds some figures, as placed.
