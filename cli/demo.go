@@ -10,6 +10,7 @@ import (
 	"os"
 	"path/filepath"
 	"runtime"
+	"strings"
 
 	"github.com/urfave/cli/v2"
 
@@ -206,9 +207,20 @@ func demoTell(w io.Writer, f *demoPaths, scene *picture.Scene, r *report.Report)
 	if n := r.UnresolvedPairs(); n > 0 {
 		fmt.Fprintf(&b, "Its exit status is 1, since %d pairs are unresolved. Say same_mask_spacing = 20 in the deck, and it is 0.\n", n)
 	}
-	fmt.Fprintf(&b, "\nNext, a layout of your own. Copy the deck, give it your layers and your spacing, and ask first whether two masks can do it:\n"+
-		"   %s decompose YOURS.gds --deck YOUR-DECK.toml\n"+
-		"Add --output MASKS.gds to get the masks, and --report REPORT.json for the full account.\n\n%s\n", program, caution)
+	b.WriteString("\nNext, a layout of your own:\n")
+	for _, l := range [][2]string{
+		{"survey YOURS.gds", "which layers it has"},
+		{"survey YOURS.gds --layer L/D --deck-starter > deck.toml", "a deck to start from: look at its spacing"},
+		{"decompose YOURS.gds --deck deck.toml", "can two masks do it? Nothing is written"},
+		{"decompose YOURS.gds --deck deck.toml --output masks.gds --report report.json", ""},
+		{"verify masks.gds --deck deck.toml --drawn YOURS.gds", "a second opinion, from code of its own"},
+	} {
+		if l[1] != "" {
+			l[1] = "# " + l[1]
+		}
+		b.WriteString(strings.TrimRight(fmt.Sprintf("   %s %-56s %s", program, l[0], l[1]), " ") + "\n")
+	}
+	fmt.Fprintf(&b, "\n%s\n", caution)
 	_, err := w.Write(b.Bytes())
 	return err
 }
