@@ -368,10 +368,11 @@ func (f *flat) placeOdd(odd *oddFigures, s int32, i uint32, at gds.Transform, or
 		odd.rounded++
 	}
 	made := odd.forms.make(points, fill)
-	if made.hasArea() {
-		odd.box = odd.box.join(made.box)
-		odd.figures = append(odd.figures, oddFigure{ordinal, made})
+	if !made.hasArea() {
+		made = odd.forms.corners(points)
 	}
+	odd.box = odd.box.join(made.box)
+	odd.figures = append(odd.figures, oddFigure{ordinal, made})
 	return nil
 }
 

@@ -106,6 +106,17 @@ func (f *forms) make(points []geom.Point, fill geom.Fill) form {
 	return form{polygon: p, box: Box{b.X1, b.Y1, b.X2, b.Y2}}
 }
 
+// corners gives the form of a figure that loses its area when it is rounded at its place: it still is a figure, and is where its
+// corners are.
+func (f *forms) corners(points []geom.Point) form {
+	made := form{first: uint32(len(f.rects)), count: uint32(len(points))}
+	for _, p := range points {
+		f.rects = append(f.rects, geom.Rect{X1: p.X, Y1: p.Y, X2: p.X, Y2: p.Y})
+	}
+	made.box = boxAround(f.rects[made.first:])
+	return made
+}
+
 func boxAround(rects []geom.Rect) Box {
 	b := Box(rects[0])
 	for _, r := range rects[1:] {

@@ -29,23 +29,29 @@ const saturated = math.MaxUint64
 
 // newHierarchy orders the structures. only names the single top to take, or is empty.
 func newHierarchy(lib *gds.Library, only string) (*hierarchy, error) {
-	h := &hierarchy{lib: lib, placed: make([]uint64, len(lib.Structures)), odd: make([]bool, len(lib.Structures))}
-	if err := h.checkLoops(); err != nil {
-		return nil, err
-	}
 	under := make([]bool, len(lib.Structures))
 	for i := range lib.Refs {
 		if t := lib.Refs[i].Target; t >= 0 {
 			under[t] = true
 		}
 	}
+	var tops []int32
 	for i := range lib.Structures {
 		if only == "" && !under[i] || only != "" && lib.Structures[i].Name == only {
-			h.tops = append(h.tops, int32(i))
+			tops = append(tops, int32(i))
 		}
 	}
-	if only != "" && len(h.tops) == 0 {
+	if only != "" && len(tops) == 0 {
 		return nil, &OrderError{Msg: fmt.Sprintf("--top %s: no such structure in the stream; name one that is in it", only)}
+	}
+	return newHierarchyUnder(lib, tops)
+}
+
+// newHierarchyUnder orders the structures under some of them, which count as tops.
+func newHierarchyUnder(lib *gds.Library, tops []int32) (*hierarchy, error) {
+	h := &hierarchy{lib: lib, tops: tops, placed: make([]uint64, len(lib.Structures)), odd: make([]bool, len(lib.Structures))}
+	if err := h.checkLoops(); err != nil {
+		return nil, err
 	}
 	h.byName = make([]int, len(h.tops))
 	for i := range h.byName {

@@ -34,6 +34,7 @@ type layout struct {
 	cuts    *cuts               // nil: no shape of the layer can be cut
 	hits    []hit               // what looks for shapes, and the flat figures it touches
 	look    *lookout
+	memory  *memory // nil: no baseline
 }
 
 // builder flattens and searches a deck layer. Its arrays are reused from top to top.
@@ -68,6 +69,13 @@ func newLayout(ctx context.Context, h *hierarchy, sel *selection, rules *LayerRu
 	l := &layout{rules: rules, number: number, flat: f, odd: make([]oddFigures, len(h.tops)), first: make([]uint32, len(h.tops)+1)}
 	if l.look, err = newLookout(h, sought, g); err != nil {
 		return nil, err
+	}
+	if sought != nil && sought.baseline != nil {
+		e, err := newEarlier(sought.baseline, sought.masks, g)
+		if err != nil {
+			return nil, err
+		}
+		l.memory = &memory{e: e}
 	}
 	if err := l.look.number(f.total); err != nil {
 		return nil, err
@@ -202,6 +210,9 @@ func (b *builder) top(top int, sets union, shapes uint32) (uint32, error) {
 		b.measure(begin, shapes)
 	}
 	b.measureSlanted(top)
+	if err := b.recall(top, begin, shapes, windows); err != nil {
+		return 0, err
+	}
 	return shapes, b.ctx.Err()
 }
 

@@ -19,8 +19,10 @@ type Probe struct {
 
 // sought is what a layer is built for beside its masks.
 type sought struct {
-	probes  []Probe
-	markers *selection // the figures of the marker layers; nil: none
+	probes   []Probe
+	markers  *selection    // the figures of the marker layers; nil: none
+	baseline *Baseline     // nil: none
+	masks    [2]*selection // the figures on A and on B, for the baseline
 }
 
 // lookout is all that looks for shapes of one layer.
@@ -79,7 +81,10 @@ func (s *sought) needsHalves(h *hierarchy) bool {
 			}
 		}
 	}
-	return s.markers != nil && gridOf(h.lib, s.markers).halves
+	if s.markers != nil && gridOf(h.lib, s.markers).halves {
+		return true
+	}
+	return s.baseline != nil && (gridOf(s.baseline.lib, s.masks[A]).halves || gridOf(s.baseline.lib, s.masks[B]).halves)
 }
 
 // polygon gives the polygon of a probe at an angle, in work units; nil where the box will do.

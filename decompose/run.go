@@ -20,6 +20,7 @@ type Run struct {
 	masks    [][]uint8
 	assigned []*assignment
 	marks    map[string][]markBox // by top
+	baseline *Baseline            // nil: none
 	result   Result
 	// Warnings are remarks for the user, one line each; they are not part of the result.
 	Warnings []string
@@ -105,7 +106,9 @@ func (r *Run) Close() {
 func (r *Run) layer(ctx context.Context, i int, orders Orderer) error {
 	rules := &r.rules.Layers[i]
 	v := &View{run: r, layer: i}
-	want := &sought{markers: r.classes.selectMarkers(i)}
+	want := &sought{markers: r.classes.selectMarkers(i), baseline: r.baseline}
+	want.masks[A], _ = r.classes.selectRole(i, roleMaskA, onA)
+	want.masks[B], _ = r.classes.selectRole(i, roleMaskB, onB)
 	if orders != nil {
 		var err error
 		if want.probes, err = orders.Probes(i, v); err != nil {

@@ -78,13 +78,13 @@ func (l *layout) maps(a *assignment, res *LayerResult) []TileMap {
 		for k := range res.Unresolved[i].Pairs {
 			p := &res.Unresolved[i].Pairs[k]
 			if m := byName[p.Top]; m != nil {
-				m.at(p.Gap).Unresolved++
+				m.At(p.Gap.middle()).Unresolved++
 			}
 		}
 	}
 	for i := range res.Moved {
 		if m := byName[res.Moved[i].Top]; m != nil {
-			m.at(res.Moved[i].Box).Moved++
+			m.At(res.Moved[i].Box.middle()).Moved++
 		}
 	}
 	return out
@@ -119,12 +119,13 @@ func tileOf(at, low, high int64, n int) int {
 	return max(0, min(n-1, int(float64(at-low)*float64(n)/float64(high-low))))
 }
 
-// at gives the tile that holds the middle of a box.
-func (m *TileMap) at(b Box) *Tile {
-	x := tileOf(b.X1+(b.X2-b.X1)/2, m.Box.X1, m.Box.X2, m.NX)
-	y := tileOf(b.Y1+(b.Y2-b.Y1)/2, m.Box.Y1, m.Box.Y2, m.NY)
-	return &m.Tiles[y*m.NX+x]
+// At gives the tile that holds a spot, or is nearest to it.
+func (m *TileMap) At(s Spot) *Tile {
+	return &m.Tiles[tileOf(s.Y, m.Box.Y1, m.Box.Y2, m.NY)*m.NX+tileOf(s.X, m.Box.X1, m.Box.X2, m.NX)]
 }
+
+// middle is the middle of a box.
+func (b Box) middle() Spot { return Spot{b.X1 + (b.X2-b.X1)/2, b.Y1 + (b.Y2-b.Y1)/2} }
 
 // spread adds area that is spread evenly over a box.
 func (m *TileMap) spread(b Box, onA, onB float64) {
