@@ -32,6 +32,9 @@ func (s *solver) beyond(x []uint8, work int64) int64 {
 	im.search.work = 0
 	im.run(nil, bound, work/4)
 	s.work += im.search.work
+	q := shortCycles(g, edge, edges, work/16)
+	s.work += q.work
+	s.addCycles(c, append(p.cycles, q.cycles...))
 	d := newDual(s, g, c)
 	if trace != nil {
 		trace("ub", im.least, "floor", g.floor(), "packed", p.sum, "clusters", len(c.clusters), c.width, c.work)

@@ -1,6 +1,9 @@
 package exact
 
-import "math/bits"
+import (
+	"math/bits"
+	"slices"
+)
 
 // This file proves a lower bound. The weights of the graph are shared out among clusters, each of which is solved exactly: as the energy is linear in the weights, the sum of the
 // optima is a lower bound whatever the shares. They are then improved by subgradient steps (Held and Karp 1971; Polyak 1969 for the length of a step): where two clusters that
@@ -22,7 +25,7 @@ type dual struct {
 	loose int64 // what the terms that no cluster holds come to at least
 }
 
-// newDual shares the weights out evenly, after what fixed gives to each cluster (per edge of the plan, or nil).
+// newDual gives each cycle what the packing uses of its edges, and shares the rest out evenly among the other clusters that hold an edge, or among its cycles where there are none.
 func newDual(s *solver, g *graph, c *cover) *dual {
 	d := &dual{g: g, c: c, s: s, total: make([]int64, c.edges), agree: make([]int32, c.edges), nodes: make([]int32, g.nodes()), ones: make([]int32, g.nodes())}
 	for h, e := range c.edge {
@@ -45,30 +48,92 @@ func newDual(s *solver, g *graph, c *cover) *dual {
 			d.loose += min(0, g.h[v]*d.scale)
 		}
 	}
-	metEdge, metNode := make([]int32, c.edges), make([]int32, g.nodes())
+	edges := portions{rest: slices.Clone(d.total), spans: make([]int32, c.edges), cycles: make([]int32, c.edges)}
+	terms := portions{rest: make([]int64, g.nodes()), spans: make([]int32, g.nodes()), cycles: make([]int32, g.nodes())}
+	for v, h := range g.h {
+		terms.rest[v] = h * d.scale
+	}
 	for k := range c.clusters {
 		cl := &c.clusters[k]
 		share, unary := make([]int64, len(cl.half)), make([]int64, len(cl.node))
+		d.share, d.unary, d.x = append(d.share, share), append(d.unary, unary), append(d.x, make([]uint8, len(cl.node)))
+		if !cl.cycle {
+			for _, h := range cl.half {
+				edges.spans[c.edge[h]]++
+			}
+			for _, v := range cl.node {
+				terms.spans[v]++
+			}
+			continue
+		}
 		for j, h := range cl.half {
-			e := c.edge[h]
-			share[j] = part(d.total[e], c.held[e], metEdge[e])
-			metEdge[e]++
+			share[j] = edges.use(c.edge[h], g.wt[h], cl.amount*d.scale)
+			edges.cycles[c.edge[h]]++
+		}
+		for _, r := range cl.ends {
+			unary[r] += terms.use(cl.node[r], g.h[cl.node[r]], cl.amount*d.scale)
+		}
+		for _, v := range cl.node {
+			terms.cycles[v]++
+		}
+	}
+	edges.divide()
+	terms.divide()
+	for k := range c.clusters {
+		cl := &c.clusters[k]
+		for j, h := range cl.half {
+			d.share[k][j] += edges.next(c.edge[h], cl.cycle)
 		}
 		for r, v := range cl.node {
-			unary[r] = part(g.h[v]*d.scale, d.nodes[v], metNode[v])
-			metNode[v]++
+			d.unary[k][r] += terms.next(v, cl.cycle)
 		}
-		d.share, d.unary, d.x = append(d.share, share), append(d.unary, unary), append(d.x, make([]uint8, len(cl.node)))
 	}
 	return d
 }
 
-// part is the k-th of count parts of w, which add up to w.
-func part(w int64, count, k int32) int64 {
-	q := w / int64(count)
-	if k == 0 {
-		return w - q*int64(count-1)
+// portions deals out weights to those that hold them.
+type portions struct {
+	rest   []int64 // not yet given to a cycle; after divide, what the first one to ask gets more than the others
+	spans  []int32 // clusters that hold the weight and are no cycles
+	cycles []int32 // cycles that do
+	each   []int64
+}
+
+// use gives a part of the given size, and of the sign of w, away.
+func (p *portions) use(e int32, w, amount int64) int64 {
+	if w < 0 {
+		amount = -amount
 	}
+	p.rest[e] -= amount
+	return amount
+}
+
+// divide makes equal portions of the rest.
+func (p *portions) divide() {
+	p.each = make([]int64, len(p.rest))
+	for e, w := range p.rest {
+		if r := int64(p.takers(int32(e))); r > 0 {
+			p.each[e] = w / r
+			p.rest[e] = w - r*p.each[e]
+		}
+	}
+}
+
+// takers is the number of clusters that the rest is for.
+func (p *portions) takers(e int32) int32 {
+	if p.spans[e] > 0 {
+		return p.spans[e]
+	}
+	return p.cycles[e]
+}
+
+// next is the portion for the next cluster that asks.
+func (p *portions) next(e int32, cycle bool) int64 {
+	if cycle && p.spans[e] > 0 {
+		return 0
+	}
+	q := p.each[e] + p.rest[e]
+	p.rest[e] = 0
 	return q
 }
 
@@ -246,21 +311,21 @@ func (d *dual) run(best, work int64) int64 {
 	target := best * d.scale
 	top := -unlimited
 	theta := uint64(unitStep)
+	const patience = 5 // steps without a better bound
 	stale := 0
 	for spent := int64(0); ; {
 		v := d.value()
 		spent += d.c.work + int64(len(d.g.adj))
 		d.s.work += d.c.work + int64(len(d.g.adj))
 		if v > top {
-			stale = 0
-			top = v
-		} else if stale++; stale >= 5 {
+			top, stale = v, 0
+		} else if stale++; stale == patience {
 			theta, stale = theta/2, 0
 		}
 		if trace != nil {
 			trace("it", v, top, target, theta)
 		}
-		if divideUp(top, d.scale) >= best || spent >= work || theta < unitStep/256 {
+		if divideUp(top, d.scale) >= best || spent >= work || theta < unitStep>>12 {
 			break
 		}
 		norm := d.norm()

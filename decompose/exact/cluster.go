@@ -6,11 +6,14 @@ import "slices"
 // allows and each begun in the middle of the one before, and, for edges that no window holds, clusters grown round them. They serve the search, which solves one part exactly with
 // the rest held, and the lower bound, which shares the weights among the parts.
 
-// cluster is a part of a graph with the plan that solves it.
+// cluster is a part of a graph with the plan that solves it: the subgraph that its nodes span, or a cycle of the packing.
 type cluster struct {
-	plan plan
-	node []int32 // of the graph, by rank
-	half []int32 // entry of the graph's rows, by place in plan.ref
+	plan   plan
+	node   []int32 // of the graph, by rank
+	half   []int32 // entry of the graph's rows, by place in plan.ref
+	cycle  bool
+	amount int64   // of a cycle: what the packing uses of its edges
+	ends   []int32 // of a cycle that uses unary terms: their ranks
 }
 
 // cover is a set of clusters of one graph.
@@ -18,9 +21,10 @@ type cover struct {
 	g        *graph
 	edge     []int32 // entry of a row -> number of the edge
 	edges    int
-	clusters []cluster
-	held     []int32 // per edge: clusters that hold it
-	work     int64   // of carrying out all plans once
+	clusters []cluster // cycles last
+	spanned  int       // clusters that are no cycles
+	held     []int32   // per edge: clusters that hold it
+	work     int64     // of carrying out all plans once
 	memory   int64
 	width    int
 }
@@ -40,7 +44,8 @@ type maker struct {
 	walk  []int32
 	met   []bool
 	score []int32
-	full  bool // out of room
+	want  int32 // times that an edge is to be held
+	full  bool  // out of room
 }
 
 // numberEdges gives each edge of g a number, in the order of the rows of the lesser ends.
@@ -78,15 +83,89 @@ func numberEdges(g *graph) (edge []int32, count int) {
 
 // coverWith covers g with clusters of at most the given width.
 func (s *solver) coverWith(g *graph, edge []int32, edges, limit int) *cover {
+	m := newMaker(s, g, limit)
+	m.c = &cover{g: g, edge: edge, edges: edges, held: make([]int32, edges)}
+	m.windows()
+	m.grow()
+	m.c.spanned = len(m.c.clusters)
+	return m.c
+}
+
+// addCycles adds the cycles of a packing that no cluster spans; the cover must have no cycles yet.
+func (s *solver) addCycles(c *cover, cycles []oddCycle) {
+	n := c.g.nodes()
+	m := newMaker(s, c.g, 0)
+	m.c = c
+	in := make([][]int32, n+1) // per node: clusters that hold it
+	for k := range c.clusters {
+		for _, v := range c.clusters[k].node {
+			in[v] = append(in[v], int32(k))
+		}
+		in[n] = append(in[n], int32(k))
+	}
+	times := make([]int32, len(c.clusters))
+	for _, cy := range cycles {
+		clear(times)
+		spanned := false
+		for _, v := range cy.node {
+			for _, k := range in[v] {
+				times[k]++
+				spanned = spanned || int(times[k]) == len(cy.node)
+			}
+		}
+		if !spanned {
+			m.cycle(cy)
+		}
+		if m.full {
+			return
+		}
+	}
+}
+
+// cycle makes a cluster of a cycle: of its edges alone, not of what else its nodes span.
+func (m *maker) cycle(cy oddCycle) {
+	g := m.c.g
+	n := int32(g.nodes())
+	// Begin behind the node that stands for mask B; without it, the cycle has an edge from its last node to the first.
+	nodes := m.nodes[:0]
+	at := slices.Index(cy.node, n)
+	nodes = append(append(nodes, cy.node[at+1:]...), cy.node[:max(0, at)]...)
+	m.nodes = nodes
+	k := len(nodes)
+	m.sub.reset(k, 2*k)
+	m.half = m.half[:0]
+	for i, v := range nodes {
+		for _, j := range [2]int{i - 1, i + 1} {
+			if at >= 0 && (j < 0 || j == k) {
+				continue
+			}
+			j = (j + k) % k
+			m.sub.adj = append(m.sub.adj, int32(j))
+			m.half = append(m.half, g.entry(v, nodes[j]))
+		}
+		m.sub.start = append(m.sub.start, int32(len(m.sub.adj)))
+		m.sub.h = append(m.sub.h, 0)
+	}
+	m.s.order.run(&m.sub, 2, unlimited)
+	m.add(nodes)
+	if m.full {
+		return
+	}
+	c := &m.c.clusters[len(m.c.clusters)-1]
+	c.cycle, c.amount = true, cy.amount
+	if at >= 0 {
+		c.ends = []int32{m.s.plan.rank[0], m.s.plan.rank[k-1]}
+	}
+}
+
+// newMaker begins a cover.
+func newMaker(s *solver, g *graph, limit int) *maker {
 	n := g.nodes()
 	m := &maker{s: s, limit: limit, room: s.budget.Memory / 2, local: make([]int32, n), level: make([]int32, n), met: make([]bool, n), score: make([]int32, n)}
 	for i := range m.local {
 		m.local[i] = -1
 	}
-	m.c = &cover{g: g, edge: edge, edges: edges, held: make([]int32, edges)}
-	m.windows()
-	m.grow()
-	return m.c
+	return m
 }
 
 // try plans the subgraph that nodes span, and tells whether it is narrow enough.
@@ -225,6 +304,9 @@ func (m *maker) slide() {
 			span = 2
 			continue
 		}
+		if k == 0 {
+			return
+		}
 		nodes := m.walk[m.first[at]:m.first[at+k]]
 		m.try(nodes)
 		m.add(nodes)
@@ -236,22 +318,28 @@ func (m *maker) slide() {
 	}
 }
 
-// grow makes clusters round edges that no cluster holds: always the node with most such edges to the cluster, then with most edges, then the least.
+// grow makes clusters round edges that no window holds, until each is held several times: where edges are held once only, there is nothing to share out.
 func (m *maker) grow() {
 	g := m.c.g
+	const times = 4
+	var edges [][2]int32
 	for v := range int32(g.nodes()) {
 		for h := g.start[v]; h < g.start[v+1]; h++ {
-			if m.full {
-				return
-			}
 			if g.adj[h] > v && m.c.held[m.c.edge[h]] == 0 {
-				m.around(v, g.adj[h])
+				edges = append(edges, [2]int32{v, h})
+			}
+		}
+	}
+	for m.want = 1; m.want <= times; m.want++ {
+		for _, e := range edges {
+			if !m.full && m.c.held[m.c.edge[e[1]]] < m.want {
+				m.around(e[0], g.adj[e[1]])
 			}
 		}
 	}
 }
 
-// around makes the largest cluster that begins with two nodes.
+// around makes the largest cluster that begins with two nodes and goes on with the node that has most edges to the cluster which are still wanted, then most edges, then the least number.
 func (m *maker) around(u, v int32) {
 	g := m.c.g
 	most := 3 * (m.limit + 1)
@@ -269,7 +357,7 @@ func (m *maker) around(u, v int32) {
 				border = append(border, x)
 			}
 			m.score[x]++
-			if m.c.held[m.c.edge[h]] == 0 {
+			if m.c.held[m.c.edge[h]] < m.want {
 				m.score[x] += 1 << 16
 			}
 		}

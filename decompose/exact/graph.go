@@ -26,6 +26,16 @@ func (g *graph) row(i int32) ([]int32, []int64) {
 	return g.adj[a:b], g.wt[a:b]
 }
 
+// entry is the place of neighbour j in the row of i, -1 where it is none.
+func (g *graph) entry(i, j int32) int32 {
+	for h := g.start[i]; h < g.start[i+1]; h++ {
+		if g.adj[h] == j {
+			return h
+		}
+	}
+	return -1
+}
+
 // energy is E(x) with base 0.
 func (g *graph) energy(x []uint8) int64 {
 	var sum int64

@@ -28,10 +28,10 @@ func newImprover(s *solver, g *graph) *improver {
 // use takes clusters into service.
 func (im *improver) use(c *cover) {
 	im.c = c
-	im.dirty = make([]bool, len(c.clusters))
+	im.dirty = make([]bool, c.spanned)
 	g := im.g
 	last := make([]int32, g.nodes())
-	for k := range c.clusters {
+	for k := range c.spanned {
 		at := func(v int32) {
 			if last[v] != int32(k+1) {
 				last[v] = int32(k + 1)
@@ -137,7 +137,7 @@ func (im *improver) start(x []uint8, work int64) {
 	im.descend(nil)
 	for im.search.work < work && im.pass() {
 	}
-	for k := range im.c.clusters {
+	for k := range im.dirty {
 		if !im.dirty[k] {
 			im.dirty[k] = true
 			im.queue = append(im.queue, int32(k))

@@ -26,8 +26,8 @@ type packer struct {
 	sum    int64
 }
 
-// packCycles packs cycles until none is left or the work is spent. The energy of every assignment is at least g.floor() plus the sum.
-func packCycles(g *graph, edge []int32, edges int, work int64) *packer {
+// newPacker begins a packing.
+func newPacker(g *graph, edge []int32, edges int) *packer {
 	n := g.nodes()
 	p := &packer{g: g, edge: edge, left: make([]int64, edges), ground: make([]int64, n), from: make([]int32, 2*n+2), mark: make([]int32, 2*n+2), spot: make([]int32, n+1)}
 	for h, e := range edge {
@@ -39,6 +39,13 @@ func packCycles(g *graph, edge []int32, edges int, work int64) *packer {
 			p.lean = append(p.lean, int32(i))
 		}
 	}
+	return p
+}
+
+// packCycles packs cycles until none is left or the work is spent. The energy of every assignment is at least g.floor() plus the sum.
+func packCycles(g *graph, edge []int32, edges int, work int64) *packer {
+	n := g.nodes()
+	p := newPacker(g, edge, edges)
 	// First from every edge, then, as walks get longer, from the edges that contradict a spanning forest of what is left: there is one on every contradictory cycle.
 	for _, depth := range []int{2, 3, 4} {
 		for i := range int32(n) {
@@ -61,6 +68,35 @@ func packCycles(g *graph, edge []int32, edges int, work int64) *packer {
 		}
 		if depth > 2*n {
 			depth = 2 * n
+		}
+	}
+	return p
+}
+
+// shortCycles gives, for each edge, the shortest contradictory cycle that a walk over it finds, each cycle once, until the work is spent. They do not exclude each other.
+func shortCycles(g *graph, edge []int32, edges int, work int64) *packer {
+	n := g.nodes()
+	p := newPacker(g, edge, edges)
+	var seen pairSet
+	for i := range int32(n) {
+		for h := g.start[i]; h < g.start[i+1]; h++ {
+			j := g.adj[h]
+			if j < i || p.work > work {
+				continue
+			}
+			nodes := p.find(i, j, asks(g.wt[h]), 2*n)
+			if nodes == nil {
+				continue
+			}
+			p.work += int64(len(nodes))
+			hash := uint64(len(nodes))
+			for _, v := range nodes {
+				hash += scramble(uint64(v))
+			}
+			if a, b := int32(hash>>33)|1, int32(hash>>1&0x7fffffff); !seen.has(a, b) {
+				seen.add(a, b)
+				p.cycles = append(p.cycles, oddCycle{node: nodes})
+			}
 		}
 	}
 	return p
@@ -156,6 +192,16 @@ func (p *packer) each(v int32, f func(w, ask, edge int32)) {
 // close looks for a walk from u to v, not longer than depth, that contradicts the edge between them, and uses up a contradictory cycle of the two. The cycle is shorter than that
 // where the walk meets a node in both parities.
 func (p *packer) close(u, v, ask int32, depth int) bool {
+	nodes := p.find(u, v, ask, depth)
+	if nodes == nil {
+		return false
+	}
+	p.use(nodes)
+	return true
+}
+
+// find is close without using the cycle up; it gives nil where there is none.
+func (p *packer) find(u, v, ask int32, depth int) []int32 {
 	p.time++
 	goal := 2*v + (1 ^ ask)
 	p.queue = append(p.queue[:0], 2*u)
@@ -165,7 +211,7 @@ func (p *packer) close(u, v, ask int32, depth int) bool {
 	for at, end := 0, 1; at < len(p.queue) && p.mark[goal] != p.time; at++ {
 		if at == end {
 			if level++; level == depth {
-				return false
+				return nil
 			}
 			end = len(p.queue)
 		}
@@ -181,14 +227,13 @@ func (p *packer) close(u, v, ask int32, depth int) bool {
 		})
 	}
 	if p.mark[goal] != p.time {
-		return false
+		return nil
 	}
 	var walk []int32
 	for state := goal; state >= 0; state = p.from[state] {
 		walk = append(walk, state)
 	}
-	p.use(p.simple(walk))
-	return true
+	return p.simple(walk)
 }
 
 // simple gives the nodes of a contradictory cycle in a closed walk of states whose last and first are closed by an edge: the whole walk, or the innermost part between two visits of one
@@ -225,7 +270,7 @@ func (p *packer) use(nodes []int32) {
 		case w:
 			weights[i] = &p.ground[v]
 		default:
-			weights[i] = &p.left[p.between(v, w)]
+			weights[i] = &p.left[p.edge[p.g.entry(v, w)]]
 		}
 		least = min(least, *weights[i])
 	}
@@ -235,15 +280,4 @@ func (p *packer) use(nodes []int32) {
 	p.sum += least
 	p.cycles = append(p.cycles, oddCycle{nodes, least})
 	p.work += int64(len(nodes))
-}
-
-// between is the number of the edge between two neighbours.
-func (p *packer) between(v, w int32) int32 {
-	g := p.g
-	for h := g.start[v]; h < g.start[v+1]; h++ {
-		if g.adj[h] == w {
-			return p.edge[h]
-		}
-	}
-	return -1
 }
