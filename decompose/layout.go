@@ -80,6 +80,9 @@ func newLayout(ctx context.Context, h *hierarchy, sel *selection, rules *LayerRu
 	if err := l.look.number(f.total); err != nil {
 		return nil, err
 	}
+	if err := l.checkMemory(opt, bytesAlways+indexBytes(h.lib)+opt.held); err != nil {
+		return nil, err
+	}
 	b := &builder{ctx: ctx, jobs: opt.jobs(), l: l, opt: opt}
 	defer b.free()
 	b.limit.Store(opt.mostPairs())

@@ -242,6 +242,10 @@ func (c *comparison) measure() error {
 	return c.b.ctx.Err()
 }
 
+func compareLapped(a, b lapped) int {
+	return cmp.Or(cmp.Compare(a.shape, b.shape), cmp.Compare(a.figure, b.figure))
+}
+
 // over is an item of the layout that touches one of the baseline, as places in two lists.
 type over struct {
 	shape  uint32

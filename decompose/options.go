@@ -7,6 +7,7 @@ type Options struct {
 	Jobs   int               // workers; 0: as many as processors
 	Memory int64             // bytes that the run may use; 0: no limit of its own
 	Top    string            // take this structure alone; "": all tops
+	held   int64             // bytes that layers done before hold
 	Stage  func(name string) // told when a stage begins, possibly again; may be nil
 	// Drawings is for how many groups of a layer the result is to hold pictures, besides its maps; 0: no LayerResult.Drawing.
 	Drawings int

@@ -17,8 +17,11 @@ type Orders struct {
 	// DescribeTie. They are called for messages only.
 	DescribeAnchor func(Anchor) string
 	DescribeTie    func(Tie) string
-	// Memory is the mask of each node in the baseline: NoMemory, or 1 + mask. Nil: no baseline.
+	// Memory is the mask of each node in the baseline: NoMemory, or 1 + mask. Nil: no baseline. Nodes that are stitched or were so
+	// have none, since they do not count as moved.
 	Memory []uint8
+	// Remembered counts the shapes that the baseline knows, those that were stitched included.
+	Remembered int64
 }
 
 // NoMemory is the entry of a node that the baseline does not know.

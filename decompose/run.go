@@ -151,10 +151,15 @@ func (r *Run) layer(ctx context.Context, i int, orders Orderer) error {
 	if err := s.explain(ctx, r.rules, &res); err != nil {
 		return err
 	}
+	if res.Moved, err = l.moved(ctx, a, o, v); err != nil {
+		return err
+	}
+	res.MovedShapes = int64(len(res.Moved))
 	r.mark(&res)
 	if r.opt.Drawings > 0 {
 		res.Drawing = l.draw(a, o, &res, r.opt.Drawings)
 	}
+	r.opt.held += int64(l.flat.total)*bytesPerFigure + int64(l.nodes)*bytesPerNode
 	r.result.Layers = append(r.result.Layers, res)
 	return ctx.Err()
 }
@@ -192,14 +197,7 @@ func (r *Run) summarise(l *layout, a *assignment, o *Orders) LayerResult {
 			res.AnchoredShapes++
 		}
 	}
-	for u, m := range o.Memory {
-		if m != NoMemory {
-			res.BaselineShapes++
-			if a.mask.Data[u] != m-1 {
-				res.MovedShapes++
-			}
-		}
-	}
+	res.BaselineShapes = o.Remembered
 	for _, w := range o.Wishes {
 		res.Wishes++
 		if a.mask.Data[w.Node] == uint8(w.Mask) {
