@@ -50,6 +50,9 @@ func newOutputPlan(rules *Rules, c *classes, v *variants, only string, tails map
 	for i := range v.h.lib.Structures {
 		taken[v.h.lib.Structures[i].Name] = true
 	}
+	for _, name := range v.h.lib.Missing {
+		taken[name] = true // or a reference to what is not there would come to place the variant
+	}
 	p.names = make([][]string, len(v.h.lib.Structures))
 	for s := range v.h.lib.Structures {
 		t := &v.tables[s]
