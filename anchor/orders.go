@@ -27,6 +27,7 @@ func (s *Sources) Orders(layer int, v *decompose.View) (*decompose.Orders, error
 	if err := c.missed(layer); err != nil {
 		return nil, err
 	}
+	c.o.Memory, c.o.Remembered = v.Memory()
 	c.warn()
 	return c.o, nil
 }

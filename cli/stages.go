@@ -36,6 +36,10 @@ func runDecompose(ctx context.Context, o *Options, w *work) (*report.Report, err
 		return nil, err
 	}
 	defer in.Close()
+	var early func() (*gds.Library, error)
+	if o.Baseline != "" {
+		early = beside(func() (*gds.Library, error) { return readBaseline(o.Baseline, want) })
+	}
 	lib, err := in.Index(want, func(done int64) { w.clock.Progress(done, in.Given()) })
 	if err != nil {
 		return nil, err
@@ -56,6 +60,15 @@ func runDecompose(ctx context.Context, o *Options, w *work) (*report.Report, err
 		return nil, err
 	}
 	defer run.Close()
+	if early != nil {
+		base, err := early()
+		if err != nil {
+			return nil, err
+		}
+		if err := run.Remember(o.Baseline, base); err != nil {
+			return nil, err
+		}
+	}
 	result, err := run.Decompose(ctx, &anchor.Sources{File: file})
 	if err != nil {
 		return nil, err
@@ -75,4 +88,31 @@ func runDecompose(ctx context.Context, o *Options, w *work) (*report.Report, err
 		Result:   result,
 		Warnings: run.Warnings,
 	}, nil
+}
+
+// readBaseline indexes an earlier result.
+func readBaseline(path string, want gds.Interest) (*gds.Library, error) {
+	in, err := gds.Open(path, false, nil)
+	if err != nil {
+		return nil, err
+	}
+	defer in.Close()
+	return in.Index(want, nil)
+}
+
+// beside runs work at once and gives a function that waits for what it comes to.
+func beside[T any](work func() (T, error)) func() (T, error) {
+	type outcome struct {
+		value T
+		err   error
+	}
+	done := make(chan outcome, 1)
+	go func() {
+		v, err := work()
+		done <- outcome{v, err}
+	}()
+	return func() (T, error) {
+		o := <-done
+		return o.value, o.err
+	}
 }
