@@ -15,11 +15,11 @@ import (
 // clashing orders, the pairs that stay on one mask and how far they are apart, and which components are the same thing again.
 
 // explain fills in what is unresolved.
-func (s *solver) explain(ctx context.Context, rules *Rules, res *LayerResult) error {
+func (s *solver) explain(ctx context.Context, rules *Rules, res *LayerResult, jobs int) error {
 	if len(s.groups) == 0 {
 		return nil
 	}
-	e := &explainer{solver: s, boxes: s.l.boxes(), groups: map[uint64]int64{}, rules: rules}
+	e := &explainer{solver: s, boxes: s.l.boxes(), groups: map[uint64]int64{}, rules: rules, more: map[uint32]*geom.Parts{}}
 	e.gather()
 	e.sign()
 	for i := range s.groups {
@@ -32,7 +32,7 @@ func (s *solver) explain(ctx context.Context, rules *Rules, res *LayerResult) er
 	for i := range res.Unresolved {
 		res.Unresolved[i].Group = e.number(uint64(res.Unresolved[i].Group))
 	}
-	return nil
+	return e.repairs(ctx, res, jobs)
 }
 
 // explainer holds what explaining needs.
@@ -44,6 +44,7 @@ type explainer struct {
 	local  map[uint32]uint32      // node to index in shape
 	groups map[uint64]int64       // signature to number
 	rules  *Rules
+	more   map[uint32]*geom.Parts // those of parts that repairs need besides
 }
 
 // gather finds the geometry of the nodes whose pairs stay on one mask.
@@ -280,6 +281,7 @@ func (e *explainer) entry(b *brokenGroup, p *componentPart, component uint32) Un
 	l := e.l
 	u := Unresolved{Component: int64(component), Shapes: int64(len(p.nodes)), Cause: OrderClash}
 	firstNode := b.nodes[p.nodes[0]]
+	u.node = firstNode
 	top := l.topOf(firstNode)
 	u.Top = l.flat.h.name(l.flat.h.tops[top])
 	var ring []int32
@@ -447,16 +449,23 @@ func (p *componentPart) clash(b *brokenGroup) []int32 {
 func (e *explainer) pair(b *brokenGroup, p *componentPart, x int, top string) Pair {
 	ed := p.edges[x]
 	u, v := b.nodes[p.nodes[ed.U]], b.nodes[p.nodes[ed.V]]
+	out := e.pairOf(b, p.source[x], u, v, top)
+	out.Mask = Mask(p.masks[ed.U])
+	return out
+}
+
+// pairOf words a near pair of a group.
+func (e *explainer) pairOf(b *brokenGroup, edge int, u, v uint32, top string) Pair {
 	if compareBoxes(e.boxes[u], e.boxes[v]) > 0 {
 		u, v = v, u
 	}
 	scale := float64(e.l.flat.forms.scale)
-	from, to, sq := e.closest(b, p.source[x], u, v)
+	from, to, sq := e.closest(b, edge, u, v)
 	k := 2 / e.l.flat.forms.scale
 	out := Pair{A: e.l.half(e.boxes[u]), B: e.l.half(e.boxes[v]), DistanceSq: sq / (scale * scale), Top: top,
-		From: Spot{from.X * k, from.Y * k}, To: Spot{to.X * k, to.Y * k}, Mask: Mask(p.masks[ed.U]), Rule: "same_mask_spacing"}
+		From: Spot{from.X * k, from.Y * k}, To: Spot{to.X * k, to.Y * k}, Rule: "same_mask_spacing"}
 	out.Gap = gapBox(out.A, out.B, out.From, out.To)
-	out.Widen = e.l.rules.Spacing - int64(math.Sqrt(out.DistanceSq))
+	out.Widen = lacks(e.l.rules.Spacing, out.DistanceSq)
 	return out
 }
 

@@ -79,6 +79,8 @@ type Unresolved struct {
 	Shapes        int64 // in the component
 	Cause         Cause
 	Cycle         []CycleShape // smallest odd cycle through the pairs, or shortest path between the orders, in order
+	node          uint32       // one of its nodes
+	Repair        []Pair       // the gaps that lack least in total: widened by Widen, they leave what two masks can do; one component of a group has it
 	Pairs         []Pair       // near pairs left on one mask
 	Candidates    []StitchCandidate
 	LeastStitches []int  // indices into Candidates; nil where no set resolves

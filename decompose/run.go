@@ -148,7 +148,7 @@ func (r *Run) layer(ctx context.Context, i int, orders Orderer) error {
 	r.masks = append(r.masks, a.mask.Data)
 	r.opt.stage("report")
 	res := r.summarise(l, a, o)
-	if err := s.explain(ctx, r.rules, &res); err != nil {
+	if err := s.explain(ctx, r.rules, &res, r.opt.jobs()); err != nil {
 		return err
 	}
 	if res.Moved, err = l.moved(ctx, a, o, v); err != nil {

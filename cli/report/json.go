@@ -145,6 +145,11 @@ func (j *jsonWriter) unresolved(u *decompose.Unresolved) {
 			j.inline(func() { j.pair(&u.Pairs[i]) })
 		}
 	})
+	j.key("repair").row(func() {
+		for i := range u.Repair {
+			j.inline(func() { j.pair(&u.Repair[i]) })
+		}
+	})
 	j.key("stitch_candidates").row(func() {
 		for _, c := range u.Candidates {
 			j.inline(func() {

@@ -2,10 +2,8 @@ package report
 
 import (
 	"bufio"
-	"cmp"
 	"fmt"
 	"io"
-	"slices"
 	"strconv"
 	"strings"
 
@@ -128,19 +126,12 @@ func leastPossible(l *decompose.LayerResult) string {
 	return "not proved, at least " + Count(l.LowerBound)
 }
 
-// group is a number of components that are equal, and what they leave.
-type group struct {
-	first *decompose.Unresolved
-	times int64
-	pairs int64 // of all
-}
-
 // layer shows the groups of unresolved components, those that leave most pairs first.
 func (s *summary) layer(l *decompose.LayerResult) {
 	if len(l.Unresolved) == 0 {
 		return
 	}
-	groups := groupsOf(l.Unresolved)
+	groups := l.Groups()
 	s.line("")
 	if len(groups) == 1 {
 		s.line("%s: the unresolved components are all of one kind", Text(l.Name))
@@ -148,41 +139,20 @@ func (s *summary) layer(l *decompose.LayerResult) {
 		s.line("%s: %s kinds of unresolved components, worst first", Text(l.Name), Count(int64(len(groups))))
 	}
 	for _, g := range groups[:min(len(groups), groupsShown)] {
-		s.group(g)
+		s.group(&l.Unresolved[g.Members[0]], int64(len(g.Members)))
 	}
 	if more := len(groups) - groupsShown; more > 0 {
 		s.line("  %s more kinds: write a --report for the full list", Count(int64(more)))
 	}
 }
 
-// groupsOf collects the groups, by pairs left, then by number.
-func groupsOf(list []decompose.Unresolved) []*group {
-	byNumber := map[int64]*group{}
-	var groups []*group
-	for i := range list {
-		u := &list[i]
-		g := byNumber[u.Group]
-		if g == nil {
-			g = &group{first: u}
-			byNumber[u.Group] = g
-			groups = append(groups, g)
-		}
-		g.times++
-		g.pairs += int64(len(u.Pairs))
-	}
-	slices.SortStableFunc(groups, func(a, b *group) int {
-		return cmp.Or(cmp.Compare(b.pairs, a.pairs), cmp.Compare(b.times, a.times), cmp.Compare(a.first.Group, b.first.Group))
-	})
-	return groups
-}
-
-func (s *summary) group(g *group) {
-	u := g.first
+// group words a kind of unresolved component that occurs so many times.
+func (s *summary) group(u *decompose.Unresolved, occurs int64) {
 	what := "an odd cycle of " + count(len(u.Cycle), "shape")
 	if u.Cause == decompose.OrderClash {
 		what = "orders that clash over " + count(len(u.Cycle), "shape")
 	}
-	s.line("  %s: %s, %s left on one mask", times(g.times), what, count(len(u.Pairs), "pair"))
+	s.line("  %s: %s, %s left on one mask", times(occurs), what, count(len(u.Pairs), "pair"))
 	if u.Cell != "" {
 		s.line("      at (%s) in cell %s", s.place(u.CellPlace), Text(u.Cell))
 	}
@@ -197,6 +167,17 @@ func (s *summary) group(g *group) {
 			line += "; widen the gap by " + s.r.Rules.Length(float64(p.Widen))
 		}
 		s.line("%s", line)
+	}
+	if n := len(u.Repair); n > 0 {
+		p, total := &u.Repair[0], int64(0)
+		for i := range u.Repair {
+			total += u.Repair[i].Widen
+		}
+		line := fmt.Sprintf("      cheapest by moving: widen %s by %s in all", count(n, "gap"), s.r.Rules.Length(float64(total)))
+		if n == 1 {
+			line = fmt.Sprintf("      cheapest by moving: widen one gap by %s", s.r.Rules.Length(float64(total)))
+		}
+		s.line("%s, from (%s) to (%s)", line, s.place(p.From), s.place(p.To))
 	}
 	switch {
 	case len(u.LeastStitches) > 0:

@@ -1,0 +1,91 @@
+package decompose
+
+import (
+	"cmp"
+	"context"
+	"math"
+	"slices"
+
+	"maskpair/decompose/exact"
+	"maskpair/decompose/geom"
+)
+
+// This file finds the cheapest repair of a component by widening gaps. The pairs that stay on one mask are the fewest, but not always
+// the easiest to mend: of an odd cycle any gap can be widened, and one of them lacks least. So the group is solved once more with each
+// pair weighed by how much it lacks of its spacing: the pairs that are broken then, widened by what they lack, leave a graph that two
+// masks can do, and no other choice lacks less in total. Equal groups share one solution.
+
+// mostRepaired is the size in nodes of the largest group whose repair is worked out.
+const mostRepaired = 4096
+
+// repairs fills in the cheapest repairs, for one component of each group of equal ones; the others have the same by place.
+func (e *explainer) repairs(ctx context.Context, res *LayerResult, jobs int) error {
+	seen := map[int64]bool{}
+	var todo []*Unresolved
+	byGroup := map[int32]*Unresolved{}
+	for i := range res.Unresolved {
+		u := &res.Unresolved[i]
+		if seen[u.Group] || len(u.Pairs) == 0 {
+			continue
+		}
+		seen[u.Group] = true
+		k, ok := e.of(u.node)
+		if !ok || len(e.solver.groups[k].nodes) > mostRepaired || byGroup[int32(k)] != nil {
+			continue
+		}
+		byGroup[int32(k)] = u
+		todo = append(todo, u)
+		for _, n := range e.solver.groups[k].nodes {
+			if e.parts[n] == nil {
+				e.parts[n] = &geom.Parts{}
+				e.more[n] = e.parts[n]
+			}
+		}
+	}
+	e.l.geometryOf(e.more)
+	return e.solver.each(ctx, jobs, func(b *brokenGroup) {
+		k, _ := e.of(b.nodes[0])
+		if u := byGroup[int32(k)]; u != nil {
+			u.Repair = e.repair(b, u.Top)
+		}
+	})
+}
+
+// repair gives the pairs to be widened.
+func (e *explainer) repair(b *brokenGroup, top string) []Pair {
+	trial := *b
+	trial.cutting = false
+	e.weigh(&trial, nil)
+	p := trial.problem
+	p.Cost = nil
+	list := make([]Pair, len(b.edges))
+	for i, ed := range b.edges {
+		list[i] = e.pairOf(&trial, i, b.nodes[ed.U], b.nodes[ed.V], top)
+		// What is accepted need not be widened: any number of such pairs weighs less than one unit of a gap, or one pair more.
+		p.Edges[i].Weight = 1
+		if !b.waived[i] {
+			p.Edges[i].Weight = (list[i].Widen*int64(len(b.edges)+1) + 1) * int64(len(b.edges)+1)
+		}
+	}
+	masks := trial.spread(exact.Solve(p, exact.DefaultBudget()).Masks)
+	var out []Pair
+	for i := range b.edges {
+		if !b.waived[i] && trial.violated(i, masks) {
+			out = append(out, list[i])
+		}
+	}
+	slices.SortFunc(out, func(a, b Pair) int { return cmp.Or(compareBoxes(a.A, b.A), compareBoxes(a.B, b.B)) })
+	return out
+}
+
+// lacks is by how many database units a gap must widen to reach a spacing; the squared gap is in square database units.
+func lacks(spacing int64, distanceSq float64) int64 {
+	have := int64(math.Sqrt(distanceSq))
+	for float64(have)*float64(have) > distanceSq {
+		have--
+	}
+	for float64(have+1)*float64(have+1) <= distanceSq {
+		have++
+	}
+	return spacing - have
+}
