@@ -238,4 +238,18 @@ func TestCompareVariants(t *testing.T) {
 	expect(t, "taken numbers", res, err, nil)
 	res, err = judgeStreams(t, deckHead, "", masked("u$4"), drawn)
 	expect(t, "taken numbers, one too far", res, err, map[Kind]int64{Structures: 1})
+	// A reference to u$2, which is not there, keeps the name from being free.
+	write2 := func(variant string, layers ...gds.LayerType) []byte {
+		names := []string{"u"}
+		if len(layers) > 1 {
+			names = append(names, variant)
+		}
+		return write(names, layers, "u", variant, "u", "u$2")
+	}
+	res, err = judgeStreams(t, deckHead, "", write2("u$3", ab...), write2("u", drawn19))
+	expect(t, "a missing name", res, err, nil)
+	res, err = judgeStreams(t, deckHead, "", write2("u$2", ab...), write2("u", drawn19))
+	if err == nil && res.OK() {
+		t.Error("a variant under the name of a missing structure passes")
+	}
 }

@@ -189,6 +189,9 @@ func (c *comparer) order() {
 	for s := range c.drawn.lib.Structures {
 		known[c.drawn.lib.Structures[s].Name] = true
 	}
+	for _, name := range c.drawn.lib.Missing {
+		known[name] = true // what is placed and not there must not come to be
+	}
 	at := 0
 	expect := func(name string) bool {
 		if at < len(c.now.lib.Structures) && c.now.lib.Structures[at].Name == name {
