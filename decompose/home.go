@@ -33,8 +33,13 @@ func (l *layout) deal(ctx context.Context, a *assignment, s *solver, jobs int) e
 			return err
 		}
 		d.turn(shared)
-		if cost := d.cost(); cost < bestCost {
+		cost := d.cost()
+		gained := cost < worthwhile*bestCost
+		if cost < bestCost {
 			best, bestCost = s.keep(), cost
+		}
+		if !gained && math.Abs(d.imbalance()) < balanced {
+			break
 		}
 		bias += leanStep * d.imbalance()
 	}
@@ -43,7 +48,7 @@ func (l *layout) deal(ctx context.Context, a *assignment, s *solver, jobs int) e
 }
 
 // cost says how dear an assignment is: the bytes of the structures and their variants, raised by what the masks' areas differ by beyond
-// two hundredths.
+// what is balanced.
 func (d *dealer) cost() float64 {
 	v := newVariants(d.l.flat.h, []*layout{d.l}, [][]uint8{d.a.mask.Data})
 	bytes := 0.0
@@ -51,8 +56,15 @@ func (d *dealer) cost() float64 {
 		st := &d.l.flat.lib.Structures[s]
 		bytes += float64(max(1, v.tables[s].ways())) * float64(st.End-st.Begin)
 	}
-	return bytes * (1 + 10*max(0, math.Abs(d.imbalance())-0.02))
+	return bytes * (1 + 10*max(0, math.Abs(d.imbalance())-balanced))
 }
+
+// balanced is the share of the area by which the masks may differ without a say; a round of solving that does not bring the cost
+// below worthwhile times the best is the last.
+const (
+	balanced   = 0.02
+	worthwhile = 0.99
+)
 
 // solveRounds is how often broken groups are solved again for the sake of few variants.
 const solveRounds = 3
@@ -112,6 +124,7 @@ type dealer struct {
 	shared  []bool   // by structure: placed more than once and with figures of its own
 	hash    []uint64 // by figure of the library: what it is; only of shared structures
 	h0, h1  []uint64 // by group: its shared figures with their masks as they are now, and turned over
+	size    []uint32 // by group: shared flat figures
 	classOf []int32  // by group; -1: no shared figures
 	classes []class
 	homes   []int8    // by figure: +1 A, -1 B
@@ -206,11 +219,12 @@ func (d *dealer) eachShared(fn func(ordinal, figure uint32)) {
 
 // hashGroups adds up, group by group, what is in it; sums do not depend on the order.
 func (d *dealer) hashGroups() {
-	d.h0, d.h1 = make([]uint64, d.a.groups), make([]uint64, d.a.groups)
+	d.h0, d.h1, d.size = make([]uint64, d.a.groups), make([]uint64, d.a.groups), make([]uint32, d.a.groups)
 	node, group, mask := d.l.nodeOf.Data, d.a.group.Data, d.a.mask.Data
 	d.eachShared(func(ordinal, figure uint32) {
 		n := node[ordinal]
 		g, m := group[n], uint64(mask[n])
+		d.size[g]++
 		d.h0[g] += mix(d.hash[figure], m)
 		d.h1[g] += mix(d.hash[figure], m^1)
 	})
@@ -255,6 +269,9 @@ func (d *dealer) canonical(g int) float64 {
 
 // fillClasses finds the drawn figures in one group of each class.
 func (d *dealer) fillClasses() {
+	for i := range d.classes {
+		d.classes[i].members = make([]member, 0, d.size[d.classes[i].example])
+	}
 	node, group, mask := d.l.nodeOf.Data, d.a.group.Data, d.a.mask.Data
 	d.eachShared(func(ordinal, figure uint32) {
 		n := node[ordinal]

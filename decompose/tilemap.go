@@ -26,8 +26,9 @@ type Tile struct {
 }
 
 const (
-	mapTiles = 44 // along the longer side
-	mapsKept = 6  // tops with maps: those with most unresolved, then those with most shapes
+	mostTiles  = 44 // along the longer side
+	leastTiles = 6  // a tile is to hold a few shapes, so a small layout has few tiles
+	mapsKept   = 6  // tops with maps: those with most unresolved, then those with most shapes
 )
 
 // maps gives the maps of a layer, the most telling tops first.
@@ -65,7 +66,7 @@ func (l *layout) maps(a *assignment, res *LayerResult) []TileMap {
 		}
 	}
 	for i := range out {
-		out[i].lay()
+		out[i].lay(tops[i].shapes)
 	}
 	unit := float64(l.flat.forms.scale * l.flat.forms.scale)
 	for u, b := range boxes {
@@ -90,15 +91,16 @@ func (l *layout) maps(a *assignment, res *LayerResult) []TileMap {
 	return out
 }
 
-// lay chooses the tiles: about square, the longer side cut in mapTiles.
-func (m *TileMap) lay() {
+// lay chooses the tiles for so many shapes: about square, the longer side cut in as many as is telling.
+func (m *TileMap) lay(shapes int) {
+	most := max(leastTiles, min(mostTiles, math.Sqrt(float64(shapes))))
 	w, h := float64(m.Box.X2-m.Box.X1), float64(m.Box.Y2-m.Box.Y1)
 	long := math.Max(w, h)
 	count := func(side float64) int {
 		if long <= 0 {
 			return 1
 		}
-		return max(1, min(mapTiles, int(math.Round(mapTiles*side/long))))
+		return max(1, int(math.Round(most*side/long)))
 	}
 	m.NX, m.NY = count(w), count(h)
 	m.Tiles = make([]Tile, m.NX*m.NY)
