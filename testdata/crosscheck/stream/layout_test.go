@@ -62,10 +62,12 @@ type cell struct {
 
 // options say what may occur in a layout.
 type options struct {
-	odd   bool // odd angles and fractional magnifications
-	paths bool
-	plain bool // nothing is mirrored
-	small bool // coordinates that stay in the 32-bit plane however they are placed
+	odd    bool // odd angles and fractional magnifications
+	paths  bool
+	plain  bool // nothing is mirrored
+	skew   bool // arrays on lattices of any two directions
+	uneven bool // arrays whose span is no multiple of their count
+	small  bool // coordinates that stay in the 32-bit plane however they are placed
 }
 
 const (
@@ -88,7 +90,7 @@ func interest() gds.Interest {
 
 // draw makes a layout; each structure places earlier ones, the last is the only top.
 func draw(rng *rand.Rand, o options) []cell {
-	n := 2 + rng.IntN(5)
+	n := 2 + rng.IntN(4)
 	cells := make([]cell, n)
 	placed := make([]bool, n)
 	reach := int64(1 << 20)
@@ -185,7 +187,14 @@ func reference(rng *rand.Rand, name string, at point, o options) ref {
 	if r.Mirror {
 		dy = -dy
 	}
+	if o.uneven {
+		dx, dy = dx+float64(rng.IntN(r.Columns))/float64(r.Columns), dy+float64(rng.IntN(r.Rows))/float64(r.Rows)
+	}
 	r.Column, r.Row = turned(r.Angle, dx, 0), turned(r.Angle, 0, dy)
+	if o.skew { // libGDSII does not turn or magnify what an array places
+		r.Angle, r.Magnification = 0, 1
+		r.Column, r.Row = [2]float64{dx, step(rng, limit)}, [2]float64{step(rng, limit), dy}
+	}
 	return r
 }
 
