@@ -75,6 +75,10 @@ func decomposeTo(ctx context.Context, o *Options, con *console, s steps) (*repor
 	if err != nil {
 		return nil, err
 	}
+	page, err := files.add("--html", o.Page, o.Force, reportInputs, con.out)
+	if err != nil {
+		return nil, err
+	}
 	layout, err := files.add("--output", o.Output, o.Force, inputs, con.out)
 	if err != nil {
 		return nil, err
@@ -104,6 +108,11 @@ func decomposeTo(ctx context.Context, o *Options, con *console, s steps) (*repor
 	r.Run.Stages, r.Run.Seconds = clock.stop()
 	if account != nil {
 		if err := await(ctx, func() error { return report.WriteJSON(account, r) }); err != nil {
+			return nil, err
+		}
+	}
+	if page != nil {
+		if err := await(ctx, func() error { return report.WritePage(page, r) }); err != nil {
 			return nil, err
 		}
 	}

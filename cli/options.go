@@ -5,6 +5,7 @@ import (
 	"os"
 	"runtime"
 	"strconv"
+	"strings"
 
 	"github.com/urfave/cli/v2"
 
@@ -33,6 +34,7 @@ type Options struct {
 	Anchors  string // path; "" none
 	Baseline string // path; "" none
 	Report   string // path; "" none
+	Page     string // path; "" none
 	Freeze   Freeze // 0 none
 	Top      string // structure to decompose; "" every top
 	Jobs     int    // worker threads, at least 1
@@ -58,6 +60,7 @@ func decomposeFlags() []cli.Flag {
 		&cli.StringFlag{Name: "anchors", Usage: "which shapes go on which mask, which alike, and what is accepted, is in `ANCHORS.toml`"},
 		&cli.StringFlag{Name: "baseline", Usage: "as few shapes as possible leave the mask that they have in `EARLIER.gds`, an earlier result"},
 		&cli.StringFlag{Name: "report", Usage: "write the full account to `REPORT.json`"},
+		&cli.StringFlag{Name: "html", Usage: "write a page for a person, with drawings of what is to be mended, to `REPORT.html`"},
 		&cli.StringFlag{Name: "freeze", Usage: "`A|B|both`: that mask is already made and must come out as in the baseline"},
 		&cli.StringFlag{Name: "top", Usage: "decompose the structure `CELL` alone"},
 		&cli.StringFlag{Name: "jobs", Usage: "use `N` threads (default: as many as there are processors); the result is the same for any"},
@@ -75,6 +78,7 @@ func parseOptions(c *cli.Context) (*Options, error) {
 		Anchors:  c.String("anchors"),
 		Baseline: c.String("baseline"),
 		Report:   c.String("report"),
+		Page:     c.String("html"),
 		Top:      c.String("top"),
 		Jobs:     runtime.GOMAXPROCS(0),
 		Quiet:    c.Bool("quiet"),
@@ -101,8 +105,14 @@ func parseOptions(c *cli.Context) (*Options, error) {
 	if o.Baseline == "-" {
 		return nil, usagef("--baseline: only the layout can come from standard input; give a file")
 	}
-	if o.Output == "-" && o.Report == "-" {
-		return nil, usagef("--output and --report both go to standard output; give one of them a file")
+	toOutput := []string{}
+	for _, out := range []named{{"--output", o.Output}, {"--report", o.Report}, {"--html", o.Page}} {
+		if out.path == "-" {
+			toOutput = append(toOutput, out.role)
+		}
+	}
+	if len(toOutput) > 1 {
+		return nil, usagef("%s both go to standard output; give one of them a file", strings.Join(toOutput, " and "))
 	}
 	switch f := c.String("freeze"); f {
 	case "":

@@ -55,7 +55,11 @@ func runDecompose(ctx context.Context, o *Options, w *work) (*report.Report, err
 	if err != nil {
 		return nil, err
 	}
-	run, err := decompose.New(lib, rules, decompose.Options{Jobs: o.Jobs, Memory: o.Memory, Top: o.Top, Stage: w.clock.Stage})
+	opt := decompose.Options{Jobs: o.Jobs, Memory: o.Memory, Top: o.Top, Stage: w.clock.Stage}
+	if o.Page != "" {
+		opt.Drawings = report.PageCards
+	}
+	run, err := decompose.New(lib, rules, opt)
 	if err != nil {
 		return nil, err
 	}

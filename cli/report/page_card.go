@@ -1,0 +1,424 @@
+package report
+
+import (
+	"cmp"
+	"fmt"
+	"html/template"
+	"math"
+	"slices"
+	"strconv"
+	"strings"
+
+	"maskpair/decompose"
+)
+
+// This file words the cards: for each kind of unresolved component what is wrong, what would mend it, and where it is.
+
+// card is one kind of unresolved component.
+type card struct {
+	Number     int
+	ID         string // stable from run to run: the layer and the number of the group
+	Layer      string
+	Headline   string
+	Times      string
+	Why        string
+	Steps      []cardStep
+	Closes     string // what happens behind the last step
+	StepsMore  string
+	Picture    template.HTML
+	Closeup    template.HTML
+	Caption    string
+	Gaps       []cardGap
+	Anchors    []string
+	Mends      []mend
+	Waiver     string
+	Proof      string
+	Cell       string
+	CellAt     string
+	Places     []cardPlace
+	PlacesMore string
+	Locator    template.HTML
+	Short      string // the first mend, in a few words
+	Previous   *card
+	Next       *card
+
+	layer   *decompose.LayerResult
+	members []int // indices into its Unresolved
+}
+
+// cardStep is a shape of the cycle.
+type cardStep struct {
+	Step int
+	Mask string
+	Held bool
+}
+
+// cardGap is a gap of the component that matters.
+type cardGap struct {
+	Label    string // "5 – 1"
+	Distance string
+	Needed   string
+	Left     bool // its shapes are on one mask
+	From, To string
+}
+
+// mend is one way out.
+type mend struct {
+	Head  string
+	Lines []string
+	Cuts  []string // boxes
+}
+
+// cardPlace is one place of the kind.
+type cardPlace struct{ Top, Chip, Cell, CellAt, Placed string }
+
+const (
+	placesShown = 25
+	stepsShown  = 24
+	gapsShown   = 24
+	cutsShown   = 8
+	restShown   = 2000
+)
+
+// work is a group with its layer, to be sorted over all layers.
+type work struct {
+	layer int
+	group decompose.Group
+}
+
+// cards makes the cards of the worst kinds over all layers, and the list of the others.
+func (m *pageMaker) cards() {
+	var all []work
+	for i := range m.r.Result.Layers {
+		for _, g := range m.r.Result.Layers[i].Groups() {
+			all = append(all, work{i, g})
+		}
+	}
+	sortWork(all)
+	for n, k := range all {
+		l := &m.r.Result.Layers[k.layer]
+		if n < PageCards {
+			m.p.Cards = append(m.p.Cards, m.card(n+1, k))
+			continue
+		}
+		if n-PageCards >= restShown {
+			m.p.RestMax = Count(int64(len(all) - n))
+			break
+		}
+		u := &l.Unresolved[k.group.Members[0]]
+		m.p.Rest = append(m.p.Rest, restRow{Text(l.Name), whatItIs(u), times(int64(len(k.group.Members))), Count(k.group.Pairs),
+			fmt.Sprintf("%s in %s", m.at(placeOf(u)), Text(u.Top))})
+	}
+	for i, c := range m.p.Cards {
+		if i > 0 {
+			c.Previous = m.p.Cards[i-1]
+		}
+		if i+1 < len(m.p.Cards) {
+			c.Next = m.p.Cards[i+1]
+		}
+	}
+}
+
+// sortWork puts the kinds that leave most pairs first, then those that occur most often, then those of earlier layers.
+func sortWork(all []work) {
+	slices.SortStableFunc(all, func(a, b work) int {
+		return cmp.Or(cmp.Compare(b.group.Pairs, a.group.Pairs), cmp.Compare(len(b.group.Members), len(a.group.Members)), cmp.Compare(a.layer, b.layer))
+	})
+}
+
+// whatItIs names the kind.
+func whatItIs(u *decompose.Unresolved) string {
+	if u.Cause == decompose.OrderClash {
+		return "clashing orders over " + count(len(u.Cycle), "shape")
+	}
+	return "odd cycle of " + count(len(u.Cycle), "shape")
+}
+
+// placeOf is a point to look at.
+func placeOf(u *decompose.Unresolved) decompose.Spot {
+	if len(u.Pairs) > 0 {
+		return middle(u.Pairs[0].Gap)
+	}
+	if len(u.Cycle) > 0 {
+		return middle(u.Cycle[0].Box)
+	}
+	return decompose.Spot{}
+}
+
+func middle(b decompose.Box) decompose.Spot {
+	return decompose.Spot{X: b.X1 + (b.X2-b.X1)/2, Y: b.Y1 + (b.Y2-b.Y1)/2}
+}
+
+func (m *pageMaker) card(number int, k work) *card {
+	l := &m.r.Result.Layers[k.layer]
+	rules := &m.r.Rules.Layers[k.layer]
+	first := k.group.Members[0]
+	u := &l.Unresolved[first]
+	c := &card{Number: number, ID: anchorID(l.Name) + "-" + strconv.FormatInt(u.Group, 10), Layer: Text(l.Name),
+		Headline: sentence(whatItIs(u)), Times: times(int64(len(k.group.Members))),
+		layer: l, members: k.group.Members}
+	var picture *decompose.Picture
+	if l.Drawing != nil {
+		picture = l.Drawing.Pictures[first]
+	}
+	m.steps(c, u, picture)
+	m.gaps(c, u, picture, rules)
+	m.mends(c, u, rules)
+	m.places(c, l, k.group)
+	m.draw(c, u, picture, l)
+	switch {
+	case u.Proved && u.LowerBound > 0:
+		c.Proof = "Proved: no choice of masks leaves fewer than " + count(int(u.LowerBound), "pair") + " here."
+	case u.LowerBound > 0:
+		c.Proof = "No choice of masks leaves fewer than " + count(int(u.LowerBound), "pair") + " here; whether this can be reached is open."
+	}
+	return c
+}
+
+// anchorID turns a name into part of a link.
+func anchorID(name string) string {
+	var b strings.Builder
+	for _, r := range Text(name) {
+		switch {
+		case r >= 'a' && r <= 'z', r >= 'A' && r <= 'Z', r >= '0' && r <= '9':
+			b.WriteRune(r)
+		default:
+			fmt.Fprintf(&b, "_%x", r)
+		}
+	}
+	return b.String()
+}
+
+func sentence(s string) string { return strings.ToUpper(s[:1]) + s[1:] }
+
+// steps words the cycle in order.
+func (m *pageMaker) steps(c *card, u *decompose.Unresolved, picture *decompose.Picture) {
+	held := map[int]bool{}
+	if picture != nil {
+		for i := range picture.Shapes {
+			s := &picture.Shapes[i]
+			if s.Anchor == "" {
+				continue
+			}
+			if s.Step > 0 {
+				held[s.Step] = true
+				c.Anchors = append(c.Anchors, fmt.Sprintf("Shape %d: %s", s.Step, Text(s.Anchor)))
+			} else if s.Member {
+				c.Anchors = append(c.Anchors, Text(s.Anchor))
+			}
+		}
+	}
+	n := len(u.Cycle)
+	for i := range u.Cycle[:min(n, stepsShown)] {
+		c.Steps = append(c.Steps, cardStep{i + 1, u.Cycle[i].Mask.String(), held[i+1]})
+	}
+	if more := n - stepsShown; more > 0 {
+		c.StepsMore = count(more, "more shape")
+	}
+	if u.Cause == decompose.OrderClash {
+		c.Why = "Each of these shapes is near the next, so masks must change from one to the next. The orders at both ends do not go with that."
+		if n == 1 {
+			c.Why = "The orders for this shape do not go with its near pairs."
+		}
+		return
+	}
+	c.Why = fmt.Sprintf("Each of these %d shapes is near the next, and the last is near the first. Masks must change at each step, and after an odd number of steps the first shape would have to be on both.", n)
+	if n > 0 {
+		c.Closes = "back to 1"
+	}
+}
+
+// distance words the root of a squared distance in database units.
+func (m *pageMaker) distance(sq float64) string {
+	d := math.Sqrt(sq)
+	word := m.r.Rules.Number(d)
+	if at := strings.IndexByte(word, '.'); at >= 0 && len(word)-at > 4 {
+		word = "≈ " + strconv.FormatFloat(d/m.r.Rules.UnitDBU, 'f', 2, 64)
+	}
+	return word + " " + m.r.Rules.Unit
+}
+
+// gaps lists the pairs that stay, then the other gaps of the cycle.
+func (m *pageMaker) gaps(c *card, u *decompose.Unresolved, picture *decompose.Picture, rules *decompose.LayerRules) {
+	stepOf := map[decompose.Box]int{}
+	for i := range u.Cycle {
+		stepOf[u.Cycle[i].Box] = i + 1
+	}
+	inCycle := map[[2]int]bool{}
+	for i := range u.Pairs {
+		p := &u.Pairs[i]
+		a, b := stepOf[p.A], stepOf[p.B]
+		g := cardGap{Label: "outside the picture's cycle", Distance: m.distance(p.DistanceSq), Left: true, From: m.at(p.From), To: m.at(p.To)}
+		if a > 0 && b > 0 {
+			g.Label = fmt.Sprintf("%d – %d", min(a, b), max(a, b))
+			inCycle[[2]int{min(a, b), max(a, b)}] = true
+		}
+		if p.Widen > 0 {
+			g.Needed = m.length(p.Widen)
+		}
+		if len(c.Gaps) < gapsShown {
+			c.Gaps = append(c.Gaps, g)
+		}
+	}
+	if picture == nil {
+		return
+	}
+	for _, k := range picture.Links {
+		a, b := min(k.From, k.To), max(k.From, k.To)
+		if !k.Known || inCycle[[2]int{a, b}] || len(c.Gaps) >= gapsShown {
+			continue
+		}
+		g := cardGap{Label: fmt.Sprintf("%d – %d", a, b), Distance: m.distance(k.DistanceSq), From: m.at(k.At), To: m.at(k.Other)}
+		if short := float64(rules.Spacing) - math.Sqrt(k.DistanceSq); short > 0 {
+			g.Needed = m.length(int64(math.Ceil(short)))
+		}
+		c.Gaps = append(c.Gaps, g)
+	}
+}
+
+// mends says what would do.
+func (m *pageMaker) mends(c *card, u *decompose.Unresolved, rules *decompose.LayerRules) {
+	if len(u.Pairs) > 0 {
+		w := mend{Head: "Draw apart"}
+		if len(u.Pairs) == 1 {
+			p := &u.Pairs[0]
+			line := fmt.Sprintf("Widen the gap %s: it is %s", m.pairName(c, 0), m.distance(p.DistanceSq))
+			if p.Widen > 0 {
+				line += fmt.Sprintf(" and needs %s more", m.length(p.Widen))
+				c.Short = "widen a gap by " + m.length(p.Widen)
+			}
+			w.Lines = append(w.Lines, line+". All other pairs are on different masks then, as long as nothing new comes too near.")
+		} else {
+			w.Lines = append(w.Lines, fmt.Sprintf("Widen all %d gaps that the table marks. All other pairs are on different masks then, as long as nothing new comes too near.", len(u.Pairs)))
+			c.Short = fmt.Sprintf("widen %d gaps", len(u.Pairs))
+		}
+		if u.Cause == decompose.OddCycle {
+			w.Lines = append(w.Lines, "Another gap of the cycle does as well, where no other odd cycle runs past it.")
+		}
+		c.Mends = append(c.Mends, w)
+	}
+	if u.Cause == decompose.OrderClash {
+		w := mend{Head: "Take back an order", Lines: []string{"Drop or turn one of the anchors at the ends of the path:"}}
+		w.Lines = append(w.Lines, c.Anchors...)
+		if len(c.Anchors) == 0 {
+			w.Lines = []string{"Drop or turn one of the anchors or ties at the ends of the path."}
+		}
+		c.Mends = append([]mend{w}, c.Mends...)
+		c.Short = "take back an anchor"
+	}
+	switch {
+	case len(u.LeastStitches) > 0:
+		w := mend{Head: "Cut"}
+		w.Lines = append(w.Lines, fmt.Sprintf("%s of one shape into two overlapping pieces, on both masks: verified, with the cut nothing stays here. Overlap:", sentence(count(len(u.LeastStitches), "cut"))))
+		if len(u.LeastStitches) > 1 {
+			w.Lines[0] = fmt.Sprintf("%s, each of one shape into two overlapping pieces on both masks: verified, with all of them nothing stays here. Overlaps:", sentence(count(len(u.LeastStitches), "cut")))
+		}
+		for _, i := range u.LeastStitches[:min(len(u.LeastStitches), cutsShown)] {
+			w.Cuts = append(w.Cuts, m.box(u.Candidates[i].Box))
+		}
+		if rules.Stitch != nil && !rules.Stitch.Apply {
+			w.Lines = append(w.Lines, "apply = true under [layer.stitch] in the deck makes the program cut there.")
+		}
+		c.Mends = append([]mend{w}, c.Mends...)
+		c.Short = count(len(u.LeastStitches), "cut")
+	case len(u.Candidates) > 0:
+		c.Mends = append(c.Mends, mend{Head: "Cut", Lines: []string{count(len(u.Candidates), "place") + " for a cut, but no set of them is enough."}})
+	case u.NoCandidate != "":
+		c.Mends = append(c.Mends, mend{Head: "Cut", Lines: []string{"Not possible: " + Text(u.NoCandidate) + "."}})
+	}
+	m.waiver(c, u)
+}
+
+// pairName names a pair of the card as the picture does.
+func (m *pageMaker) pairName(c *card, i int) string {
+	if i < len(c.Gaps) && strings.Contains(c.Gaps[i].Label, "–") {
+		return c.Gaps[i].Label
+	}
+	return "at " + c.Gaps[i].From
+}
+
+// waiver writes the entry of the anchor file that accepts the first pair.
+func (m *pageMaker) waiver(c *card, u *decompose.Unresolved) {
+	if len(u.Pairs) != 1 {
+		return
+	}
+	p := &u.Pairs[0]
+	if (p.From.X|p.From.Y|p.To.X|p.To.Y)&1 != 0 { // rounded points may miss the shapes
+		return
+	}
+	c.Waiver = fmt.Sprintf("[[waiver]]\nlayer = %s\nat = [[%s], [%s]]\nreason = \"\"", strconv.Quote(c.Layer), m.at(p.From), m.at(p.To))
+}
+
+// places lists where the kind occurs.
+func (m *pageMaker) places(c *card, l *decompose.LayerResult, g decompose.Group) {
+	first := &l.Unresolved[g.Members[0]]
+	c.Cell, c.CellAt = Text(first.Cell), m.at(first.CellPlace)
+	for _, i := range g.Members[:min(len(g.Members), placesShown)] {
+		u := &l.Unresolved[i]
+		c.Places = append(c.Places, cardPlace{Text(u.Top), m.at(placeOf(u)), Text(u.Cell), m.at(u.CellPlace), m.placed(u.CellTransform)})
+	}
+	if more := len(g.Members) - placesShown; more > 0 {
+		c.PlacesMore = Count(int64(more))
+	}
+}
+
+// placed words how a cell is placed; the program gives it in database units.
+func (m *pageMaker) placed(words string) string {
+	at := strings.LastIndex(words, "at (")
+	if at < 0 || !strings.HasSuffix(words, ")") {
+		return words
+	}
+	x, y, ok := strings.Cut(words[at+len("at ("):len(words)-1], ", ")
+	fx, err1 := strconv.ParseFloat(x, 64)
+	fy, err2 := strconv.ParseFloat(y, 64)
+	if !ok || err1 != nil || err2 != nil {
+		return words
+	}
+	return words[:at] + "at " + m.r.Rules.Number(fx) + ", " + m.r.Rules.Number(fy)
+}
+
+// draw adds the drawings, as long as the page stays small.
+func (m *pageMaker) draw(c *card, u *decompose.Unresolved, picture *decompose.Picture, l *decompose.LayerResult) {
+	if m.drawn > pictureBytes {
+		c.Caption = "No drawing: the page has as many as it can hold."
+		return
+	}
+	if picture == nil {
+		picture = boxPicture(u)
+	}
+	d := &drawer{rules: m.r.Rules, u: u, p: picture}
+	c.Picture = d.picture(fmt.Sprintf("Drawing of %s", c.Headline))
+	c.Caption = d.caption()
+	c.Closeup = d.closeup()
+	m.drawn += len(c.Picture) + len(c.Closeup)
+	if l.Drawing != nil {
+		c.Locator = locator(l, c.members, u.Top)
+		m.drawn += len(c.Locator)
+	}
+}
+
+// boxPicture makes a picture of what the result says without a drawing: boxes.
+func boxPicture(u *decompose.Unresolved) *decompose.Picture {
+	p := &decompose.Picture{}
+	grow := func(b decompose.Box) {
+		if p.Window == (decompose.Box{}) {
+			p.Window = b
+		}
+		w := &p.Window
+		*w = decompose.Box{X1: min(w.X1, b.X1), Y1: min(w.Y1, b.Y1), X2: max(w.X2, b.X2), Y2: max(w.Y2, b.Y2)}
+	}
+	outline := func(b decompose.Box) [][][]decompose.Spot {
+		return [][][]decompose.Spot{{{{X: b.X1, Y: b.Y1}, {X: b.X2, Y: b.Y1}, {X: b.X2, Y: b.Y2}, {X: b.X1, Y: b.Y2}}}}
+	}
+	for i, s := range u.Cycle {
+		grow(s.Box)
+		p.Shapes = append(p.Shapes, decompose.PictureShape{Mask: s.Mask, Step: i + 1, Member: true, Box: s.Box, Outlines: outline(s.Box)})
+	}
+	for i := range u.Pairs {
+		grow(u.Pairs[i].A)
+		grow(u.Pairs[i].B)
+	}
+	margin := max(p.Window.X2-p.Window.X1, p.Window.Y2-p.Window.Y1)/16 + 1
+	p.Window.X1, p.Window.Y1, p.Window.X2, p.Window.Y2 = p.Window.X1-margin, p.Window.Y1-margin, p.Window.X2+margin, p.Window.Y2+margin
+	return p
+}
