@@ -1,6 +1,6 @@
 package decompose
 
-import "maskpair/decompose/arena"
+import "maskpair/gds/arena"
 
 // This file makes components of near pairs and settles all that parity settles: by union-find, in one pass over the pairs. What is
 // left is a list of groups that an odd cycle or clashing orders keep from two masks.

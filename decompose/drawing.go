@@ -15,7 +15,7 @@ import (
 // Drawing is what pictures of a deck layer show.
 type Drawing struct {
 	Maps     []TileMap
-	Pictures map[int]*Picture // by index into LayerResult.Unresolved: the first members of the worst groups
+	Pictures map[int]*Picture // by index into LayerResult.Unresolved: those that stand for the worst groups
 }
 
 // Picture is one unresolved component, or what matters of it. Coordinates are half units of its top.
@@ -73,11 +73,11 @@ func (l *layout) draw(a *assignment, o *Orders, res *LayerResult, most int) *Dra
 	var sketches []*sketch
 	byComponent := map[uint32]*sketch{}
 	for _, g := range groups[:min(len(groups), most)] {
-		u := &res.Unresolved[g.Members[0]]
+		u := &res.Unresolved[g.Shown]
 		s := &sketch{entry: u, out: &Picture{}}
 		sketches = append(sketches, s)
 		byComponent[uint32(u.Component)] = s
-		d.Pictures[g.Members[0]] = s.out
+		d.Pictures[g.Shown] = s.out
 	}
 	if len(sketches) == 0 {
 		return d

@@ -6,8 +6,8 @@ import (
 	"math"
 	"slices"
 
-	"maskpair/decompose/arena"
 	"maskpair/decompose/geom"
+	"maskpair/gds/arena"
 )
 
 // This file looks at shapes that arrive on both masks. One whose figures are all on masks, with every meeting of A and B an overlap of

@@ -9,7 +9,8 @@ import (
 
 // Group is one kind of unresolved component of a layer: equal up to translation and the eight orientations.
 type Group struct {
-	Members []int // indices into LayerResult.Unresolved, ascending; the first stands for all
+	Members []int // indices into LayerResult.Unresolved, ascending
+	Shown   int   // the member that stands for all: the first whose repair is known, or the first
 	Pairs   int64 // near pairs that all members leave on one mask
 }
 
@@ -23,7 +24,10 @@ func (l *LayerResult) Groups() []Group {
 		if !ok {
 			k = len(groups)
 			place[u.Group] = k
-			groups = append(groups, Group{})
+			groups = append(groups, Group{Shown: i})
+		}
+		if u.Repair != nil && l.Unresolved[groups[k].Shown].Repair == nil {
+			groups[k].Shown = i
 		}
 		groups[k].Members = append(groups[k].Members, i)
 		groups[k].Pairs += int64(len(u.Pairs))

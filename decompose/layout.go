@@ -7,8 +7,8 @@ import (
 	"slices"
 	"sync/atomic"
 
-	"maskpair/decompose/arena"
 	"maskpair/decompose/geom"
+	"maskpair/gds/arena"
 )
 
 // layout is one deck layer, flattened and searched: its shapes, and which of them are near.
@@ -75,6 +75,7 @@ func newLayout(ctx context.Context, h *hierarchy, sel *selection, rules *LayerRu
 		if err != nil {
 			return nil, err
 		}
+		e.wantSame = sought.wantSame
 		l.memory = &memory{e: e}
 	}
 	if err := l.look.number(f.total); err != nil {

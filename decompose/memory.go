@@ -4,9 +4,9 @@ import (
 	"fmt"
 	"math"
 
-	"maskpair/decompose/arena"
 	"maskpair/decompose/geom"
 	"maskpair/gds"
+	"maskpair/gds/arena"
 )
 
 // This file and its neighbours (memory_*.go) let shapes remember: which mask covers more of the area of each shape in an earlier
@@ -163,6 +163,10 @@ const (
 type memory struct {
 	e     *earlier
 	nodes []recalled // by shape, as far as its top is done
+
+	// What wantSame asks for beside: of shapes that were measured, which masks had some of them, and over which figures they lie.
+	covers map[uint32][2]bool
+	laps   []lapped
 }
 
 // recall finds out what the shapes of the windows at hand were in the baseline. Their numbers run from begin to end; windows other than
@@ -189,7 +193,7 @@ func (b *builder) recall(top int, begin, end uint32, windows []window) error {
 			return err
 		}
 	}
-	c.settle(m.nodes[begin:end])
+	c.settle(m)
 	return nil
 }
 

@@ -52,6 +52,14 @@ func (c *comparison) figure(w former) uint32 {
 	return id - first
 }
 
+// ordinal is the inverse of figure: the ordinal of a figure of the baseline.
+func (c *comparison) ordinal(figure uint32) uint32 {
+	if onA := uint32(c.figures(A)); figure >= onA {
+		return figure - onA + uint32(c.e.masks[B].first[c.top])
+	}
+	return figure + uint32(c.e.masks[A].first[c.top])
+}
+
 func (c *comparison) figures(m Mask) uint64 {
 	f := c.e.masks[m]
 	return f.all[f.h.tops[c.top]]
@@ -414,7 +422,8 @@ func (c *comparison) measureFigures(now []uint32, before []former, hits []hit) {
 }
 
 // settle says of each shape what it was.
-func (c *comparison) settle(nodes []recalled) {
+func (c *comparison) settle(mem *memory) {
+	nodes := mem.nodes[c.begin:c.end]
 	for i, s := range c.state {
 		if s&stateDiffers != 0 || s&(stateA|stateB) == 0 {
 			continue
@@ -471,5 +480,16 @@ func (c *comparison) settle(nodes []recalled) {
 		}
 		nodes[n-c.begin] = out
 		i = end
+		if c.e.wantSame {
+			if mem.covers == nil {
+				mem.covers = map[uint32][2]bool{}
+			}
+			mem.covers[n] = [2]bool{got.on[A] != (extent{}), got.on[B] != (extent{})}
+		}
+	}
+	if c.e.wantSame {
+		for _, l := range v.laps {
+			mem.laps = append(mem.laps, lapped{l.shape, c.ordinal(l.figure)})
+		}
 	}
 }

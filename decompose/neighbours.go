@@ -3,7 +3,7 @@ package decompose
 import (
 	"slices"
 
-	"maskpair/decompose/arena"
+	"maskpair/gds/arena"
 )
 
 // neighbours are the near pairs of nodes, each once, under its lower node, in ascending order. The low bit of an entry says that the

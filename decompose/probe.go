@@ -23,6 +23,7 @@ type sought struct {
 	markers  *selection    // the figures of the marker layers; nil: none
 	baseline *Baseline     // nil: none
 	masks    [2]*selection // the figures on A and on B, for the baseline
+	wantSame bool          // see earlier
 }
 
 // lookout is all that looks for shapes of one layer.

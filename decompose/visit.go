@@ -4,8 +4,8 @@ import (
 	"slices"
 	"sort"
 
-	"maskpair/decompose/arena"
 	"maskpair/decompose/geom"
+	"maskpair/gds/arena"
 )
 
 // This file goes from ordinals back to the hierarchy: which figure of which placement an ordinal is, what its place is, and which is
