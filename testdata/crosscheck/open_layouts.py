@@ -92,7 +92,7 @@ def main():
             try:
                 line = f.result()
                 print(line if a.table else "ok      %s: %s" % (name, line), flush=True)
-            except Wrong as e:
+            except (Wrong, OSError, ValueError, KeyError) as e:
                 failed += 1
                 print("FAILED  %s: %s" % (name, e), flush=True)
     if not a.table:
