@@ -18,7 +18,7 @@ import (
 // This file breaks right outputs on purpose, each time in one way, and wants every one of them refused. The changes are made
 // on bare records by code of this file alone.
 
-var keepBroken = flag.String("keep-broken", "", "write every broken output, with its input, deck and anchor file, to a folder of its own in this one")
+var keepBroken = flag.String("keep-broken", "", "write every output, right (numbers from 0 down) or broken, with its input, deck and anchor file, to a folder of its own in this one")
 
 // record is a record with its head.
 type record []byte
@@ -657,6 +657,7 @@ func TestBrokenOutputsAreFound(t *testing.T) {
 		if res, err := judge(m, m.out, false); err != nil || !res.OK() {
 			t.Fatalf("%s: the right output, alone, does not hold: %s", m.name, tell(res, err))
 		}
+		keep(t, m, -i, "right", m.out)
 	}
 	rng := rand.New(rand.NewPCG(21, 22))
 	made, used := 0, map[string]int{}

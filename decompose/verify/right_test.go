@@ -112,10 +112,22 @@ at = [[2000, 0], [2100, 0]]
 [[anchor]]
 cell = "pin"
 alike = true
+[[anchor]]
+layer = "metal1"
+mask = "A"
+box = [2200, 0, 2260, 20]
 [[waiver]]
 layer = "metal1"
 at = [[2200, 0], [2240, 0]]
 reason = "measured"
+[[anchor]]
+layer = "metal1"
+mask = "B"
+at = [4010, 50]
+[[anchor]]
+layer = "metal1"
+mask = "A"
+at = [4190, 50]
 `
 	write := func(masked bool) []byte {
 		var b bytes.Buffer
@@ -204,13 +216,13 @@ reason = "measured"
 		box(maskB19, "pinned by the anchor file", rect(-1000, 0, -980, 20))
 		box(maskA19, "pinned by a tie", rect(2000, 0, 2020, 20))
 		box(maskA19, "pinned by a tie", rect(2100, 0, 2120, 20))
-		// A pair that is waived, and a figure that arrived on its mask with one beside it.
+		// A pair that is pinned to one mask and waived, and a figure that arrived on its mask with one beside it.
 		box(maskA19, "", rect(2200, 0, 2220, 20))
 		box(maskA19, "", rect(2240, 0, 2260, 20))
 		w.Property(1, "arrived on B")
 		w.Rectangle(maskB19, rect(3000, 0, 3020, 20))
 		box(maskA19, "", rect(3040, 0, 3060, 20))
-		// A wire that is cut: its ends face shapes that hang together.
+		// A wire that must be cut: its ends face shapes that are pinned to different masks.
 		if !masked || keepDrawn {
 			w.Property(6, "cut")
 			w.Rectangle(drawn19, rect(4000, 0, 4200, 20))
@@ -264,8 +276,8 @@ func decomposed(t *testing.T, deck string, drawn []byte) (out []byte, ok bool) {
 	return out, status == 0
 }
 
-// random gives outputs of random layouts that two masks can do: cells of rectangles with properties and labels, placed in rows
-// and arrays at every orientation.
+// random gives outputs of random layouts that two masks can do: cells of rectangles with properties and labels, placed at every
+// orientation, and in arrays.
 func random(t *testing.T, count int) []masked {
 	var out []masked
 	for seed := uint64(1); len(out) < count && seed < 200; seed++ {
@@ -315,7 +327,7 @@ func randomLayout(t *testing.T, rng *rand.Rand) []byte {
 			columns, rows := 2+rng.Int32N(4), 1+rng.Int32N(3)
 			step := 260 + 10*rng.Int32N(4)
 			at.Y += 3000
-			w.ARef(name, s, uint16(columns), uint16(rows), at, gds.Point{X: at.X + columns*step, Y: at.Y}, gds.Point{X: at.X, Y: at.Y + rows*step})
+			w.ARef(name, gds.Strans{}, uint16(columns), uint16(rows), at, gds.Point{X: at.X + columns*step, Y: at.Y}, gds.Point{X: at.X, Y: at.Y + rows*step})
 		} else {
 			w.SRef(name, s, at)
 		}
