@@ -40,6 +40,7 @@ func run(ctx context.Context, args []string, con *console, s steps) int {
 		decomposeCommand(con, s, &status),
 		verifyCommand(con, &status),
 		surveyCommand(con),
+		compareCommand(con, &status),
 		demoCommand(con, s),
 	})
 	args, err := orderArguments(app, args)
