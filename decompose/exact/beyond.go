@@ -4,9 +4,10 @@ import "math/bits"
 
 // This file leads through what is done for a graph that is too wide for exact elimination within the budget.
 
-// beyond finds a good assignment of s.sub, writes it to x, and returns a lower bound on the energy. It takes about the given work, and less where nothing more is to be gained.
+// beyond finds a good assignment of s.sub, writes it to x, and returns a lower bound on the energy. It takes about the given work, and less where nothing more is to be gained; a
+// number of steps linear in the graph is taken whatever the budget.
 //
-// First comes a packing of cycles and a quick search; then, as long as the two do not meet, a bound from clusters that share out the weights, and a longer search among them.
+// First comes a packing of cycles and a quick search; then, as long as the two do not meet, a search and a bound with clusters, and a last search from what the bound found.
 func (s *solver) beyond(x []uint8, work int64) int64 {
 	g := &s.sub
 	im := newImprover(s, g)
@@ -16,50 +17,71 @@ func (s *solver) beyond(x []uint8, work int64) int64 {
 		return g.floor()
 	}
 	edge, edges := numberEdges(g)
-	const least = 16 // steps per edge and node that are taken whatever the budget
+	const least = 16 // steps per edge and node that are taken in any case
 	enough := least * int64(edges+g.nodes())
 	p := packCycles(g, edge, edges, max(work/8, enough))
-	bound := g.floor() + p.sum
+	unit := commonFactor(g)
+	bound := roundUp(g.floor()+p.sum, 1, unit)
 	for _, y := range [][]uint8{heavyTree(g), broadTree(g)} {
-		im.start(y, max(work/64, enough))
+		im.start(y, im.search.work+max(work/64, enough))
+	}
+	if im.least > bound && work >= enough {
+		c := s.makeCover(g, edge, edges, work)
+		im.use(c)
+		im.run(bound, im.search.work+work/4)
+		q := shortCycles(g, edge, edges, work/16)
+		s.work += q.work
+		s.addCycles(c, append(p.cycles, q.cycles...))
+		d := newDual(s, g, c)
+		bound = max(bound, d.run(im.least, unit, work/2))
+		for _, y := range d.assignments() {
+			im.start(y, im.search.work+work/32)
+		}
+		im.run(bound, im.search.work+work/16)
 	}
 	s.work += p.work + im.search.work
-	if im.least <= bound || work < enough {
-		return bound
-	}
-	c := s.makeCover(g, edge, edges, work)
-	im.use(c)
-	im.search.work = 0
-	im.run(nil, bound, work/4)
-	s.work += im.search.work
-	q := shortCycles(g, edge, edges, work/16)
-	s.work += q.work
-	s.addCycles(c, append(p.cycles, q.cycles...))
-	d := newDual(s, g, c)
-	if trace != nil {
-		trace("ub", im.least, "floor", g.floor(), "packed", p.sum, "clusters", len(c.clusters), c.width, c.work)
-	}
-	bound = max(bound, d.run(im.least, work/2))
-	im.search.work = 0
-	im.run(d.assignments(), bound, work/8)
-	s.work += im.search.work
 	return bound
+}
+
+// commonFactor is the greatest number that divides all terms of g, and so every energy.
+func commonFactor(g *graph) int64 {
+	var unit int64
+	add := func(v int64) {
+		v = magnitude(v)
+		for v != 0 {
+			unit, v = v, unit%v
+		}
+	}
+	for _, w := range g.wt {
+		add(w)
+	}
+	for _, h := range g.h {
+		add(h)
+	}
+	return max(1, unit)
 }
 
 // makeCover chooses the widest clusters of which all can be solved often enough within the given work.
 func (s *solver) makeCover(g *graph, edge []int32, edges int, work int64) *cover {
 	const rounds = 200
-	const widest = 20
 	round := work / rounds
+	// The widest table of a cluster may take a small part of the memory, and at most 2^20 entries.
+	widest := max(2, min(20, bits.Len64(uint64(max(0, s.budget.Memory)))-8))
 	limit := max(2, min(bits.Len64(uint64(round/int64(2*g.nodes())))-2, widest))
 	c := s.coverWith(g, edge, edges, limit)
-	for limit < widest {
-		wider := s.coverWith(g, edge, edges, limit+1)
-		if wider.work > round {
+	for limit < widest && len(c.clusters) > 0 {
+		// One more neighbour doubles a table, so the step that would use up the round can be guessed.
+		step := max(1, min(widest-limit, bits.Len64(uint64(round/max(1, c.work)))-1))
+		wider := s.coverWith(g, edge, edges, limit+step)
+		for wider.work > round && step > 1 {
+			step--
+			wider = s.coverWith(g, edge, edges, limit+step)
+		}
+		if wider.work > round || len(wider.clusters) == 0 {
 			break
 		}
 		c = wider
-		limit++
+		limit += step
 	}
 	return c
 }

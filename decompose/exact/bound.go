@@ -303,8 +303,9 @@ func reach(share, weight, way int64) int64 {
 	return max(0, (limit+share)/-way)
 }
 
-// run improves the bound until the work is spent, steps do not help any more, or it meets the energy of a known assignment. It returns the bound, unscaled.
-func (d *dual) run(best, work int64) int64 {
+// run improves the bound until the work is spent, steps do not help any more, or it meets the energy of a known assignment. It returns the bound, unscaled and rounded up to a
+// multiple of unit, which every energy is.
+func (d *dual) run(best, unit, work int64) int64 {
 	if d.scale == 0 {
 		return -unlimited
 	}
@@ -322,10 +323,7 @@ func (d *dual) run(best, work int64) int64 {
 		} else if stale++; stale == patience {
 			theta, stale = theta/2, 0
 		}
-		if trace != nil {
-			trace("it", v, top, target, theta)
-		}
-		if divideUp(top, d.scale) >= best || spent >= work || theta < unitStep>>12 {
+		if roundUp(top, d.scale, unit) >= best || spent >= work || theta < unitStep>>12 {
 			break
 		}
 		norm := d.norm()
@@ -341,10 +339,8 @@ func (d *dual) run(best, work int64) int64 {
 		}
 		d.step(length)
 	}
-	return divideUp(top, d.scale)
+	return roundUp(top, d.scale, unit)
 }
-
-var trace func(...any)
 
 // assignments puts one together from the clusters: each node as most of its clusters have it, after each cluster has been turned to agree with those before it.
 func (d *dual) assignments() [][]uint8 {
@@ -375,6 +371,12 @@ func (d *dual) assignments() [][]uint8 {
 		}
 	}
 	return [][]uint8{x, y}
+}
+
+// roundUp is the least multiple of unit that is no less than v/scale.
+func roundUp(v, scale, unit int64) int64 {
+	v = divideUp(v, scale)
+	return divideUp(v, unit) * unit
 }
 
 // divideUp is a/b, rounded up; b > 0.

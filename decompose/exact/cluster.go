@@ -171,7 +171,7 @@ func newMaker(s *solver, g *graph, limit int) *maker {
 // try plans the subgraph that nodes span, and tells whether it is narrow enough.
 func (m *maker) try(nodes []int32) bool {
 	m.load(nodes)
-	return m.s.narrow(&m.sub, m.limit, unlimited)
+	return m.s.narrow(&m.sub, m.limit, unlimited, 2)
 }
 
 // load makes m.sub the graph that nodes span.
@@ -224,9 +224,15 @@ func (m *maker) keep(c cluster) {
 	for _, h := range c.half {
 		m.c.held[m.c.edge[h]]++
 	}
-	m.c.work += c.plan.work
+	m.c.work += c.work()
 	m.c.width = max(m.c.width, c.plan.width)
 	m.c.clusters = append(m.c.clusters, c)
+}
+
+// work is what carrying out the plan once counts for: its table entries, and what goes with each node and edge, which outweighs the tables where they are small.
+func (c *cluster) work() int64 {
+	const each = 16
+	return c.plan.work + each*int64(len(c.node)+len(c.half))
 }
 
 // bytes is the memory that a cluster takes, with what the lower bound keeps for it.

@@ -30,6 +30,7 @@ func (s *solver) turns(g *graph, x, y []uint8) []uint8 {
 		}
 		count++
 	}
+	const each = 8 // steps of the reductions per edge
 	turn := make([]uint8, n)
 	if count == 1 {
 		return turn
@@ -42,7 +43,7 @@ func (s *solver) turns(g *graph, x, y []uint8) []uint8 {
 	r.release()
 	sub := solver{budget: Budget{Work: int64(n) << 8, Memory: s.budget.Memory / 8}, quick: true}
 	best, _ := sub.kernel(k)
-	s.crossed += sub.work
+	s.work += sub.work + int64(len(p.Edges))*each
 	all := make([]uint8, count)
 	r.restore(all, nodes, best)
 	for i := range turn {

@@ -109,7 +109,7 @@ func (im *improver) solve(k int32) {
 	}
 	im.s.tables.solve(&c.plan, im.weight, im.unary)
 	im.s.tables.decode(&c.plan, im.ranked)
-	im.search.work += c.plan.work
+	im.search.work += c.work()
 	before := im.energy
 	im.changed = im.changed[:0]
 	for r, v := range c.node {
@@ -181,15 +181,9 @@ func (im *improver) cross() {
 	}
 }
 
-// run searches from the given starts, and then by turns from kicks of the best and from trees rooted by chance, until the work is spent, the energy is down to the bound, or for a number of
-// rounds nothing better was found.
-func (im *improver) run(starts [][]uint8, bound, work int64) {
-	for i, x := range starts {
-		im.start(x, im.search.work+max(0, work-im.search.work)/int64(len(starts)-i+1))
-		if im.least <= bound {
-			return
-		}
-	}
+// run searches by turns from kicks of the best and from trees grown by chance, until the work is spent, the energy is down to the bound, or for a number of rounds nothing better was
+// found.
+func (im *improver) run(bound, work int64) {
 	const patience = 24
 	for idle := 0; im.search.work < work && im.least > bound && idle < patience; {
 		im.round++

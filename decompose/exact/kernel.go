@@ -16,11 +16,10 @@ import (
 
 // solver is the workspace and the account of one call of Solve.
 type solver struct {
-	budget  Budget
-	work    int64 // spent
-	width   int
-	quick   bool  // what is beyond the budget gets a descent only
-	crossed int64 // work of crossing assignments
+	budget Budget
+	work   int64 // spent
+	width  int
+	quick  bool // what is beyond the budget gets a descent only
 
 	order  minFill
 	sweep  sweeper
@@ -40,26 +39,30 @@ const share = 64
 // cheap is the number of table entries per node that a block may take in any case before all others are known.
 const cheap = 256
 
+// sweeps is the number of nodes from which a sweep is tried.
+const sweeps = 16
+
 // piece is a part of the kernel that is solved by itself: nodes without the top, which is held on A, or -1 where there is none.
 type piece struct {
 	nodes []int32
 	top   int32
-	work  int64 // that an exact solution takes; unlimited if it is not known
+	work  int64 // that an exact solution takes; unlimited where there is none
+	held  int64 // energy of the edges to the top with all nodes on A
 }
 
 // forest gathers the answers of the blocks.
 type forest struct {
-	top   []int32    // per node: top node of the block it is below in, or -1
-	given [][2]uint8 // per node: its mask if the top is on A, on B
-	order []int32    // nodes in the order in which their blocks were met: tops come later
-	wait  [][]int32  // per node: nodes of the pieces that hang at it unsolved
+	top   []int32           // per node: top node of the block it is below in, or -1
+	given [][2]uint8        // per node: its mask if the top is on A, on B
+	order []int32           // nodes in the order in which their blocks were met: tops come later
+	wait  map[int32][]int32 // node -> nodes of the pieces that hang at it unsolved; mostly empty
 	late  []piece
 }
 
 // kernel solves g, whose unary terms it uses up, and returns an assignment and a lower bound on the energy.
 func (s *solver) kernel(g *graph) (x []uint8, bound int64) {
 	n := g.nodes()
-	f := &forest{top: make([]int32, n), given: make([][2]uint8, n), order: make([]int32, 0, n), wait: make([][]int32, n)}
+	f := &forest{top: make([]int32, n), given: make([][2]uint8, n), order: make([]int32, 0, n), wait: map[int32][]int32{}}
 	s.local = make([]int32, n)
 	for i := range s.local {
 		s.local[i] = -1
@@ -70,6 +73,7 @@ func (s *solver) kernel(g *graph) (x []uint8, bound int64) {
 			f.order = append(f.order, root)
 			f.top[root] = -1
 			if w := f.wait[root]; w != nil {
+				delete(f.wait, root)
 				f.late = append(f.late, piece{nodes: append(w, root), top: -1})
 				return
 			}
@@ -98,13 +102,13 @@ func (s *solver) block(g *graph, f *forest, top int32, below []int32) int64 {
 	for _, v := range below {
 		f.top[v] = top
 		free = free && g.h[v] == 0
-		whole = whole && f.wait[v] == nil
+		whole = whole && (len(f.wait) == 0 || f.wait[v] == nil)
 	}
 	if !whole {
 		nodes := slices.Clone(below)
 		for _, v := range below {
 			nodes = append(nodes, f.wait[v]...)
-			f.wait[v] = nil
+			delete(f.wait, v)
 		}
 		f.wait[top] = append(f.wait[top], nodes...)
 		return 0
@@ -259,7 +263,7 @@ func (s *solver) balanced(g *graph, f *forest, top int32, below []int32) (energy
 func (s *solver) planned(work int64) bool {
 	work = min(work, s.budget.Work-s.work)
 	limit := min(bits.Len64(uint64(max(0, work)))-2, bits.Len64(uint64(max(0, s.budget.Memory)))-5)
-	if limit < 0 || !s.narrow(&s.sub, limit, work) {
+	if limit < 0 || !s.narrow(&s.sub, limit, work, sweeps) {
 		return false
 	}
 	s.plan.make(&s.sub, &s.order)
@@ -288,8 +292,7 @@ func (s *solver) carry() int64 {
 func (s *solver) late(g *graph, f *forest) (bound int64) {
 	for i := range f.late {
 		pc := &f.late[i]
-		slices.Sort(pc.nodes)
-		s.load(g, pc.nodes, pc.top, 0)
+		pc.held = s.load(g, pc.nodes, pc.top, 0)
 		pc.work = unlimited
 		if s.planned(unlimited) {
 			pc.work = s.plan.work
@@ -297,10 +300,14 @@ func (s *solver) late(g *graph, f *forest) (bound int64) {
 	}
 	slices.SortStableFunc(f.late, func(a, b piece) int { return cmp.Compare(a.work, b.work) })
 	for i, pc := range f.late {
-		held := s.load(g, pc.nodes, pc.top, 0)
-		bound += held
+		fits := pc.work <= s.budget.Work-s.work
+		if len(f.late) > 1 { // else the piece and its plan are at hand
+			s.load(g, pc.nodes, pc.top, 0)
+			fits = fits && s.planned(unlimited)
+		}
+		bound += pc.held
 		x := make([]uint8, len(pc.nodes))
-		if pc.work != unlimited && s.planned(unlimited) {
+		if fits {
 			bound += s.carry()
 			for k := range x {
 				x[k] = s.ranked[s.plan.rank[k]]

@@ -5,8 +5,9 @@ package exact
 // easy is the number of table entries per node up to which the order of min-fill is taken without looking for a better one.
 const easy = 1 << 10
 
-// narrow leaves in s.order the best elimination order for g that it finds, among those of at most the given width and work. It answers false where none is.
-func (s *solver) narrow(g *graph, limit int, work int64) bool {
+// narrow leaves in s.order the best elimination order for g that it finds, among those of at most the given width and work, with sweeps from at most so many nodes. It answers
+// false where none is.
+func (s *solver) narrow(g *graph, limit int, work int64, sweeps int) bool {
 	o := &s.order
 	n := g.nodes()
 	found := o.run(g, limit, work)
@@ -21,9 +22,9 @@ func (s *solver) narrow(g *graph, limit int, work int64) bool {
 	width := o.width
 	// The number of starts depends on the size of the graph, so that looking for an order costs no more than a few passes over a large one.
 	const effort = 1 << 15
-	starts := max(2, min(16, effort/max(1, n)))
+	starts := max(2, min(sweeps, effort/max(1, n)))
 	a := s.sweep.far(g, 0)
-	for k := range starts {
+	for k := range starts { // the two ends of a long walk, and nodes spread over the numbers
 		from := a
 		switch {
 		case k == 1:
