@@ -34,8 +34,30 @@ mask_a = "10/1"                # where it goes
 mask_b = "10/2"
 same_mask_spacing = 40         # two shapes nearer than this must be on opposite masks; wires are drawn 20 apart
 
+[layer.stitch]                 # a wire may be cut in two pieces that overlap, one on each mask
+min_overlap = 20
+min_piece = 40
+apply = false                  # true: the fewest cuts that help are made
+
 [marks]
 unresolved = "90/0"            # a box in each gap that two masks cannot do
+stitch = "90/1"                # a box at each place where a cut might help
+`
+
+const demoAnchors = `# The outer wires of the amplifier are a matched pair: one mask must print both, in each placement of the cell.
+[[anchor]]
+layer = "wire"
+mask = "A"
+at = [10, 100]
+cell = "amplifier"
+name = "left of the pair"
+
+[[anchor]]
+layer = "wire"
+mask = "A"
+at = [90, 100]
+cell = "amplifier"
+name = "right of the pair"
 `
 
 const demoHelp = `Makes the folder DIR (default ` + demoFolder + `) with an invented layout and its rule deck, runs decompose on them, and shows
@@ -75,11 +97,12 @@ func demoCommand(con *console, s steps) *cli.Command {
 }
 
 // demoPaths are the places of the files.
-type demoPaths struct{ dir, layout, deck, masks, report, drawnPicture, masksPicture string }
+type demoPaths struct{ dir, layout, deck, anchors, masks, report, page, drawnPicture, masksPicture string }
 
 func newDemoPaths(dir string) *demoPaths {
 	path := func(name string) string { return filepath.Join(dir, name) }
-	return &demoPaths{dir, path("layout.gds"), path("deck.toml"), path("masks.gds"), path("report.json"), path("layout.svg"), path("masks.svg")}
+	return &demoPaths{dir, path("layout.gds"), path("deck.toml"), path("anchors.toml"), path("masks.gds"), path("report.json"), path("report.html"),
+		path("layout.svg"), path("masks.svg")}
 }
 
 // demo writes the input files, decomposes them and shows the result.
@@ -103,12 +126,14 @@ func demo(ctx context.Context, dir string, force bool, con *console, s steps) er
 	err = writeDemo(ctx, force, []demoFile{
 		{f.layout, func(w io.Writer) error { _, err := w.Write(layout.Bytes()); return err }},
 		{f.deck, func(w io.Writer) error { _, err := io.WriteString(w, demoDeck); return err }},
+		{f.anchors, func(w io.Writer) error { _, err := io.WriteString(w, demoAnchors); return err }},
 		{f.drawnPicture, demoSVG(scene, "the demo layout as drawn")},
 	})
 	if err != nil {
 		return err
 	}
-	o := &Options{Input: f.layout, DeckPath: f.deck, Deck: deck, Output: f.masks, Report: f.report, Jobs: runtime.GOMAXPROCS(0), Force: force}
+	o := &Options{Input: f.layout, DeckPath: f.deck, Deck: deck, Anchors: f.anchors, anchors: []byte(demoAnchors), Output: f.masks,
+		Report: f.report, Page: f.page, Jobs: runtime.GOMAXPROCS(0), Force: force}
 	r, err := decomposeTo(ctx, o, con, s)
 	if err != nil {
 		return err
@@ -187,25 +212,28 @@ func demoTell(w io.Writer, f *demoPaths, scene *picture.Scene, r *report.Report)
 	b.WriteString(`
    lines       alternate; the array of the layout became arrays of double pitch
    pads        have nothing near; they even out the areas of the masks
-   amplifiers  have two wires that stood on mask A in the layout, and stay there
+   amplifiers  have their outer wires on A, as the anchor file orders for every placement of the cell
    gates       come out right in all orientations, rails shared by two rows included
    knots       are rings of five wires, each near the next. Going round, the masks would have to alternate, and five is odd:
-               no choice can do it. One gap of each stays, and is marked on layer 90/0
+               no choice can do it. One gap of each stays, and is marked on layer 90/0. The summary says what would mend it:
+               a wider gap, or a stitch, which cuts one wire in two pieces that overlap
 `)
 	fmt.Fprintf(&b, "\nFiles in %s:\n", f.dir)
 	for _, l := range [][2]string{
 		{f.layout, "the layout as drawn, on layer 10/0"},
 		{f.deck, "its rule deck, with comments"},
+		{f.anchors, "the orders: which wires must be on which mask"},
 		{f.masks, "the layout with each figure on mask A (10/1) or B (10/2)"},
 		{f.report, "all numbers, and each place that is unresolved"},
-		{f.drawnPicture, "pictures for a browser: as drawn,"},
+		{f.page, "the same as a page for a browser"},
+		{f.drawnPicture, "pictures of the layout, as drawn"},
 		{f.masksPicture, "and on the masks"},
 	} {
 		fmt.Fprintf(&b, "   %-12s %s\n", filepath.Base(l[0]), l[1])
 	}
-	fmt.Fprintf(&b, "\nThe same once more, by hand:\n   %s decompose %s --deck %s --output again.gds\n", program, f.layout, f.deck)
+	fmt.Fprintf(&b, "\nMend the knots: say apply = true in %s, and run\n   %s decompose %s --deck %s --anchors %s --output mended.gds\n", f.deck, program, f.layout, f.deck, f.anchors)
 	if n := r.UnresolvedPairs(); n > 0 {
-		fmt.Fprintf(&b, "Its exit status is 1, since %d pairs are unresolved. Say same_mask_spacing = 20 in the deck, and it is 0.\n", n)
+		fmt.Fprintf(&b, "As it is, this ends with status 1, since %d pairs are unresolved. Then with 0.\n", n)
 	}
 	b.WriteString("\nNext, a layout of your own:\n")
 	for _, l := range [][2]string{

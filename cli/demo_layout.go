@@ -10,8 +10,8 @@ import (
 )
 
 // This file is the demo layout. One database unit is a nanometre; wires are 20 wide and 20 apart. It has what usual layouts
-// have: an array that alternates, rows of abutted cells in several orientations, shapes with nothing near, cells whose masks
-// were chosen beforehand, and a place that two masks cannot do.
+// have: an array that alternates, rows of abutted cells in several orientations, shapes with nothing near, a matched pair to be
+// anchored, and a place that two masks cannot do.
 
 // The layers of the demo.
 const (
@@ -37,17 +37,17 @@ func demoPicture(input io.Reader) (*picture.Scene, error) {
 
 // writeDemoLayout writes the layout.
 func writeDemoLayout(dst io.Writer) error {
-	drawn, onA := gds.LayerType{Layer: demoWire}, gds.LayerType{Layer: demoWire, Type: 1}
+	drawn := gds.LayerType{Layer: demoWire}
 	buffered := bufio.NewWriter(dst)
 	w := gds.NewWriter(buffered, gds.WriterOptions{LibName: "DEMO", Time: time.Date(2000, 1, 1, 0, 0, 0, 0, time.UTC)})
-	draw := func(layer gds.LayerType, figures ...gds.Rect) {
+	draw := func(figures ...gds.Rect) {
 		for _, r := range figures {
-			w.Rectangle(layer, r)
+			w.Rectangle(drawn, r)
 		}
 	}
 	cell := func(name string, figures ...gds.Rect) {
 		w.BeginStructure(name)
-		draw(drawn, figures...)
+		draw(figures...)
 		w.EndStructure()
 	}
 
@@ -65,13 +65,13 @@ func writeDemoLayout(dst io.Writer) error {
 		gds.Rect{X1: 60, Y1: 70, X2: 280, Y2: 90},
 		gds.Rect{X1: 300, Y1: 70, X2: 540, Y2: 90},
 		gds.Rect{X1: 500, Y1: 30, X2: 600, Y2: 50})
-	w.BeginStructure("amplifier") // its outer wires are a matched pair and stand on mask A already
-	draw(onA, gds.Rect{X1: 0, Y1: -10, X2: 20, Y2: 190}, gds.Rect{X1: 80, Y1: -10, X2: 100, Y2: 190})
-	draw(drawn, gds.Rect{X1: 40, Y1: -10, X2: 60, Y2: 190})
-	w.EndStructure()
+	cell("amplifier", // its outer wires are a matched pair, see the anchor file
+		gds.Rect{X1: 0, Y1: -10, X2: 20, Y2: 190},
+		gds.Rect{X1: 40, Y1: -10, X2: 60, Y2: 190},
+		gds.Rect{X1: 80, Y1: -10, X2: 100, Y2: 190})
 
 	w.BeginStructure("chip")
-	draw(drawn,
+	draw(
 		gds.Rect{X1: 720, Y1: -10, X2: 820, Y2: 90},
 		gds.Rect{X1: 720, Y1: 150, X2: 820, Y2: 250},
 		gds.Rect{X1: 720, Y1: 310, X2: 820, Y2: 410})

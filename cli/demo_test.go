@@ -33,7 +33,7 @@ func TestDemoWritesItsFiles(t *testing.T) {
 			t.Errorf("it does not speak of %s", e.Name())
 		}
 	}
-	if got := strings.Join(names, " "); got != "deck.toml layout.gds layout.svg masks.gds masks.svg report.json" {
+	if got := strings.Join(names, " "); got != "anchors.toml deck.toml layout.gds layout.svg masks.gds masks.svg report.html report.json" {
 		t.Errorf("the folder holds %s", got)
 	}
 	if !strings.Contains(b.out.String(), caution) {
@@ -41,7 +41,7 @@ func TestDemoWritesItsFiles(t *testing.T) {
 	}
 }
 
-// The counts are those of the drawing, by hand: 2 rows of 16 lines; 3 pads; 3 amplifiers of 1 wire and 2 that are masked already;
+// The counts are those of the drawing, by hand: 2 rows of 16 lines; 3 pads; 3 amplifiers of 3 wires, of which 2 are anchored;
 // 12 gates of 6 figures, whose rails make 3 shapes; 2 knots of 5 wires. Near pairs: 15 a row of lines, 2 an amplifier, 5 a knot;
 // in a gate one of the outer rail with the wire beside it, two of that with the short ones, two of these with the next wire, and
 // one of that with the rail in the middle. Components: 2 rows, 3 pads, 3 amplifiers, all gates, 2 knots.
@@ -66,7 +66,7 @@ func TestDemoNumbers(t *testing.T) {
 	}
 	l := r.Layers[0]
 	got := []int{l.Figures, l.AlreadyMaskedFigures, l.Shapes, l.NearPairs, l.Components, l.UnresolvedComponents, l.UnresolvedPairs, l.LowerBound, l.AnchoredShapes}
-	want := []int{32 + 3 + 3 + 72 + 10, 6, 32 + 3 + 9 + 3 + 48 + 10, 30 + 6 + 10 + 12*6, 2 + 3 + 3 + 1 + 2, 2, 2, 2, 6}
+	want := []int{32 + 3 + 9 + 72 + 10, 0, 32 + 3 + 9 + 3 + 48 + 10, 30 + 6 + 10 + 12*6, 2 + 3 + 3 + 1 + 2, 2, 2, 2, 6}
 	if fmt.Sprint(got) != fmt.Sprint(want) {
 		t.Errorf("the report counts %v, want %v", got, want)
 	}
@@ -100,7 +100,7 @@ func TestDemoMasks(t *testing.T) {
 		return found
 	}
 	lib := read("masks.gds")
-	if got := classes(lib, "amplifier"); !bytes.Equal(got, []uint8{2, 2, 3}) {
+	if got := classes(lib, "amplifier"); !bytes.Equal(got, []uint8{2, 3, 2}) {
 		t.Errorf("the amplifier is on %v, want its pair on A (2) and the wire between on B (3)", got)
 	}
 	var variants, arrays, marks int
@@ -145,13 +145,22 @@ func TestDemoFolder(t *testing.T) {
 	}
 }
 
-// The command that the demo recommends gives the same bytes.
+// The command that the demo recommends gives the same bytes, and with apply = true in the deck, one cut in each knot.
 func TestDemoByHand(t *testing.T) {
 	b := runDemo(t)
-	b.want(1, b.run("decompose", "@new/layout.gds", "--deck", "@new/deck.toml", "--output", "@again.gds"))
+	args := []string{"decompose", "@new/layout.gds", "--deck", "@new/deck.toml", "--anchors", "@new/anchors.toml", "--output"}
+	b.want(1, b.run(append(args, "@again.gds")...))
 	if b.read("again.gds") != b.read("new/masks.gds") {
 		t.Errorf("the output differs from that of the demo")
 	}
-	b.write("deck.toml", strings.Replace(demoDeck, "spacing = 40", "spacing = 20", 1))
-	b.want(0, b.run("decompose", "@new/layout.gds", "--deck", "@deck.toml"), "fits on two masks")
+	b.write("new/deck.toml", strings.Replace(demoDeck, "apply = false", "apply = true", 1))
+	b.want(0, b.run(append(args, "@mended.gds", "--report", "@mended.json")...), "fits on two masks")
+	var r struct{ Layers []struct{ Stitches int } }
+	if err := json.Unmarshal([]byte(b.read("mended.json")), &r); err != nil {
+		t.Fatal(err)
+	}
+	if n := r.Layers[0].Stitches; n != 2 {
+		t.Errorf("%d stitches, want one in each knot", n)
+	}
+	b.want(0, b.run("verify", "@mended.gds", "--deck", "@new/deck.toml", "--anchors", "@new/anchors.toml", "--drawn", "@new/layout.gds"), "all holds")
 }

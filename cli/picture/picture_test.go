@@ -115,6 +115,19 @@ func TestSVG(t *testing.T) {
 	}
 }
 
+func TestPart(t *testing.T) {
+	var b strings.Builder
+	if err := read(t).WriteSVG(&b, SVG{Unit: 1, Scale: 1, Part: &Box{0, 0, 50, 70}}); err != nil { // the first cell and half of the mark
+		t.Fatal(err)
+	}
+	if found := elements(t, b.String()); found["path"] != 2 || found["ellipse"] != 1 || found["text"] != 0 {
+		t.Errorf("the part has %v", found)
+	}
+	if want := `viewBox="-3 -73 56 76"`; !strings.Contains(b.String(), want) {
+		t.Errorf("the picture has not %s:\n%s", want, b.String())
+	}
+}
+
 func TestWhatCannotBeShown(t *testing.T) {
 	for name, more := range map[string]func(w *gds.Writer){
 		"PATH": func(w *gds.Writer) {

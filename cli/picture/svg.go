@@ -16,6 +16,7 @@ type SVG struct {
 	Unit  int64   // least width of a wire, database units: hatching and margins are made to suit
 	Scale float64 // pixels to a database unit
 	Only  *Role   // this mask alone; the other one is a thin outline
+	Part  *Box    // what lies here alone; nil: all
 }
 
 // WriteSVG draws the scene.
@@ -24,15 +25,20 @@ func (s *Scene) WriteSVG(w io.Writer, o SVG) error {
 	p := func(format string, args ...any) { fmt.Fprintf(out, format+"\n", args...) }
 	u := float64(o.Unit)
 	margin := 3 * o.Unit
-	width, height := s.Box.X2-s.Box.X1+2*margin, s.Box.Y2-s.Box.Y1+2*margin
+	part := s.Box
+	if o.Part != nil {
+		part = *o.Part
+	}
+	left, top := part.X1-margin, -part.Y2-margin
+	width, height := part.X2-part.X1+2*margin, part.Y2-part.Y1+2*margin
 	p(`<svg xmlns="http://www.w3.org/2000/svg" viewBox="%d %d %d %d" width="%.0f" height="%.0f" role="img" aria-label="%s">`,
-		s.Box.X1-margin, -s.Box.Y2-margin, width, height, o.Scale*float64(width), o.Scale*float64(height), html.EscapeString(o.Title))
+		left, top, width, height, o.Scale*float64(width), o.Scale*float64(height), html.EscapeString(o.Title))
 	p(`<title>%s</title>`, html.EscapeString(o.Title))
 	p(`<defs>`)
 	p(`<pattern id="a" patternUnits="userSpaceOnUse" width="%g" height="%[1]g" patternTransform="rotate(45)"><rect width="%[1]g" height="%[1]g" fill="#b5d3ea"/><rect width="%[2]g" height="%[1]g" fill="#0072b2"/></pattern>`, 0.6*u, 0.3*u)
 	p(`<pattern id="b" patternUnits="userSpaceOnUse" width="%g" height="%[1]g"><rect width="%[1]g" height="%[1]g" fill="#f9dcb4"/><circle cx="%[2]g" cy="%[2]g" r="%[3]g" fill="#b34700"/></pattern>`, 0.5*u, 0.25*u, 0.15*u)
 	p(`</defs>`)
-	p(`<rect x="%d" y="%d" width="%d" height="%d" fill="#fcfcfa"/>`, s.Box.X1-margin, -s.Box.Y2-margin, width, height)
+	p(`<rect x="%d" y="%d" width="%d" height="%d" fill="#fcfcfa"/>`, left, top, width, height)
 	line := u / 12
 	styles := [roles]string{
 		Drawn: fmt.Sprintf(`fill="#d4d4d0" stroke="#55554f" stroke-width="%g"`, line),
@@ -51,8 +57,11 @@ func (s *Scene) WriteSVG(w io.Writer, o SVG) error {
 		}
 		p(`<g %s>`, style)
 		for _, f := range figures {
+			b := f.box()
+			if b.X2 < part.X1 || b.X1 > part.X2 || b.Y2 < part.Y1 || b.Y1 > part.Y2 {
+				continue
+			}
 			if Role(role) == Mark { // a ring around it
-				b := f.box()
 				p(`<ellipse cx="%g" cy="%g" rx="%g" ry="%g"/>`, float64(b.X1+b.X2)/2, -float64(b.Y1+b.Y2)/2, float64(b.X2-b.X1)/2+u, float64(b.Y2-b.Y1)/2+u)
 				continue
 			}
@@ -69,6 +78,9 @@ func (s *Scene) WriteSVG(w io.Writer, o SVG) error {
 	}
 	p(`<g font-family="sans-serif" font-size="%g" fill="#222">`, 1.3*u)
 	for _, l := range s.Labels {
+		if l.At.X < part.X1 || l.At.X > part.X2 || l.At.Y < part.Y1 || l.At.Y > part.Y2 {
+			continue
+		}
 		p(`<text x="%d" y="%d">%s</text>`, l.At.X, -l.At.Y, html.EscapeString(l.Text))
 	}
 	p(`</g>`)

@@ -13,8 +13,8 @@ func TestPicturesAreUpToDate(t *testing.T) {
 	if err != nil {
 		t.Fatal(err)
 	}
-	if len(pictures) != 4 {
-		t.Errorf("%d pictures, want 4", len(pictures))
+	if len(pictures) != 5 {
+		t.Errorf("%d pictures, want 5", len(pictures))
 	}
 	for name, text := range pictures {
 		kept, err := os.ReadFile(filepath.Join("..", "demo", name))
