@@ -34,7 +34,8 @@ type layout struct {
 	cuts    *cuts               // nil: no shape of the layer can be cut
 	hits    []hit               // what looks for shapes, and the flat figures it touches
 	look    *lookout
-	memory  *memory // nil: no baseline
+	memory  *memory   // nil: no baseline
+	far     []farPair // pairs within the largest spacing that no rule makes near, as far as anything asks for them
 }
 
 // builder flattens and searches a deck layer. Its arrays are reused from top to top.
@@ -53,6 +54,7 @@ type builder struct {
 	joined   bool                   // the shapes of the top at hand are settled: a window is only looked at again
 	polygons []*geom.Polygon
 	opt      *Options
+	kept     []topRects // where pairs must be judged by what faces what
 }
 
 // newLayout builds one deck layer; sought says what looks for its shapes, nil: nothing.
@@ -121,6 +123,9 @@ func newLayout(ctx context.Context, h *hierarchy, sel *selection, rules *LayerRu
 	}
 	opt.stage("pairs")
 	l.near = gather(b.sinks, l.nodeOf.Data, l.nodes, l.given)
+	if err := l.judgeFacing(ctx, b.kept, opt.jobs()); err != nil {
+		return nil, err
+	}
 	return l, nil
 }
 
@@ -128,6 +133,9 @@ func (b *builder) free() {
 	b.items.Free()
 	b.scratch.Free()
 	b.bands.Free()
+	for i := range b.kept {
+		b.kept[i].free()
+	}
 }
 
 // free gives back what a layout holds.
@@ -214,6 +222,9 @@ func (b *builder) top(top int, sets union, shapes uint32) (uint32, error) {
 		b.measure(begin, shapes)
 	}
 	b.measureSlanted(top)
+	if len(windows) == 1 && b.l.judgedRules() != nil {
+		b.keepRects(begin, shapes, windows[0])
+	}
 	if err := b.recall(top, begin, shapes, windows); err != nil {
 		return 0, err
 	}
