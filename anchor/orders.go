@@ -28,12 +28,13 @@ func (s *Sources) Orders(layer int, v *decompose.View) (*decompose.Orders, error
 		return nil, err
 	}
 	c.o.Memory, c.o.Remembered = v.Memory()
+	c.freeze()
 	c.warn()
 	return c.o, nil
 }
 
 // collector makes the orders of one layer. A source of an anchor is the number of a probe, or behind those of a marker, or behind
-// those a node (which arrived on its mask). A source of a tie is the number of its first probe, or behind those an alike entry.
+// those a node (which arrived on its mask), or behind those a node (which a frozen mask has or has not). A source of a tie is the number of its first probe, or behind those an alike entry.
 type collector struct {
 	s    *Sources
 	v    *decompose.View
@@ -65,6 +66,7 @@ func (c *collector) wish(node uint32, mask decompose.Mask, source uint32) {
 
 func (c *collector) markers() uint32 { return uint32(len(c.s.layer.looks)) }
 func (c *collector) nodes() uint32   { return c.markers() + uint32(len(c.s.layer.masks)) }
+func (c *collector) made() uint32    { return c.nodes() + uint32(c.v.Nodes()) }
 
 // masked holds shapes that arrive on a mask where they are, unless the deck says to do them anew.
 func (c *collector) masked() {
@@ -190,6 +192,30 @@ func (c *collector) alike() error {
 	return nil
 }
 
+// freeze holds shapes on the masks that are already made, and keeps all others off them. Where both are made, new shapes are left free:
+// either mask is wrong.
+func (c *collector) freeze() {
+	frozen := c.v.Frozen()
+	if frozen == [2]bool{} {
+		return
+	}
+	made := decompose.A
+	if frozen[decompose.B] {
+		made = decompose.B
+	}
+	both := frozen == [2]bool{true, true}
+	before := len(c.o.Anchors)
+	c.v.Recalled(func(node uint32, was uint8, cut bool) {
+		switch {
+		case was != decompose.NoMemory && (both || decompose.Mask(was-1) == made):
+			c.anchor(node, decompose.Mask(was-1), c.made()+node)
+		case !both:
+			c.anchor(node, made.Other(), c.made()+node)
+		}
+	})
+	c.o.Holds = len(c.o.Anchors) - before
+}
+
 // anchorText words where an anchor comes from.
 func (c *collector) anchorText(a decompose.Anchor) string {
 	st := &c.s.layer
@@ -205,6 +231,13 @@ func (c *collector) anchorText(a decompose.Anchor) string {
 		return fmt.Sprintf("%s holds the shape at %s on %s", c.s.File.Cite("anchor", e.Name, e.Index, e.Line), c.v.Place(a.Node), a.Mask)
 	case a.Source < c.nodes():
 		return fmt.Sprintf("the marker for %s at %s", a.Mask, c.v.MarkerPlace(a.Source-c.markers()))
+	}
+	if a.Source >= c.made() {
+		frozen := c.v.Frozen()
+		if frozen[a.Mask] {
+			return fmt.Sprintf("mask %s is frozen, and has the shape at %s in the baseline", a.Mask, c.v.Place(a.Node))
+		}
+		return fmt.Sprintf("mask %s is frozen, and has not the shape at %s in the baseline", a.Mask.Other(), c.v.Place(a.Node))
 	}
 	return fmt.Sprintf("the shape at %s arrived on %s", c.v.Place(a.Node), a.Mask)
 }

@@ -47,7 +47,7 @@ func decomposeCommand(con *console, s steps, status *int) *cli.Command {
 				return err
 			}
 			r, err := decomposeTo(c.Context, o, con, s)
-			if err == nil && r.UnresolvedPairs() > 0 {
+			if err == nil && r.UnresolvedPairs()+r.FrozenFaults() > 0 {
 				*status = statusUnresolved
 			}
 			return err

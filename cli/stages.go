@@ -72,6 +72,7 @@ func runDecompose(ctx context.Context, o *Options, w *work) (*report.Report, err
 		if err := run.Remember(o.Baseline, base); err != nil {
 			return nil, err
 		}
+		run.Freeze([2]bool{o.Freeze&FreezeA != 0, o.Freeze&FreezeB != 0})
 	}
 	result, err := run.Decompose(ctx, &anchor.Sources{File: file})
 	if err != nil {

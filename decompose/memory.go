@@ -164,10 +164,15 @@ type memory struct {
 	e     *earlier
 	nodes []recalled // by shape, as far as its top is done
 
-	// What wantSame asks for beside: of shapes that were measured, which masks had some of them, and over which figures they lie.
+	// What wantSame asks for beside: of shapes that were measured, which masks had some of them, and over which figures they lie; and
+	// the figures that were looked at.
 	covers map[uint32][2]bool
 	laps   []lapped
+	loose  []looseFigure
 }
+
+// looseFigure is a figure of the baseline that differs, or touches one that does; figures that hang together have one root.
+type looseFigure struct{ ordinal, root uint32 }
 
 // recall finds out what the shapes of the windows at hand were in the baseline. Their numbers run from begin to end; windows other than
 // the whole top are cut to their cores.

@@ -491,5 +491,10 @@ func (c *comparison) settle(mem *memory) {
 		for _, l := range v.laps {
 			mem.laps = append(mem.laps, lapped{l.shape, c.ordinal(l.figure)})
 		}
+		for f, m := range v.masks {
+			if m != 0 {
+				mem.loose = append(mem.loose, looseFigure{c.ordinal(uint32(f)), c.ordinal(root(uint32(f)))})
+			}
+		}
 	}
 }

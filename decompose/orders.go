@@ -10,6 +10,8 @@ import (
 // nothing. Package anchor makes them; see its documentation for where they come from.
 type Orders struct {
 	Anchors []Anchor
+	// Holds is how many of the anchors, the last ones, hold what a frozen mask has, or keep off it what it has not.
+	Holds   int
 	Ties    []Tie    // a node may be tied to itself: it is under an order then
 	Wishes  []Anchor // each node and mask once
 	Waivers []Waiver

@@ -53,7 +53,8 @@ type LayerResult struct {
 	Waived               []WaivedPair
 	AnyMask              []Pair
 	Moved                []MovedShape
-	Drawing              *Drawing // nil: not asked for
+	Frozen               []FrozenFault // where a mask that is already made does not allow what is drawn
+	Drawing              *Drawing      // nil: not asked for
 }
 
 // Cause tells why a component is unresolved.

@@ -21,6 +21,7 @@ type Run struct {
 	assigned []*assignment
 	marks    map[string][]markBox // by top
 	baseline *Baseline            // nil: none
+	frozen   [2]bool              // masks that are already made
 	result   Result
 	// Warnings are remarks for the user, one line each; they are not part of the result.
 	Warnings []string
@@ -106,7 +107,7 @@ func (r *Run) Close() {
 func (r *Run) layer(ctx context.Context, i int, orders Orderer) error {
 	rules := &r.rules.Layers[i]
 	v := &View{run: r, layer: i}
-	want := &sought{markers: r.classes.selectMarkers(i), baseline: r.baseline}
+	want := &sought{markers: r.classes.selectMarkers(i), baseline: r.baseline, wantSame: r.frozen != [2]bool{}}
 	want.masks[A], _ = r.classes.selectRole(i, roleMaskA, onA)
 	want.masks[B], _ = r.classes.selectRole(i, roleMaskB, onB)
 	if orders != nil {
@@ -155,6 +156,9 @@ func (r *Run) layer(ctx context.Context, i int, orders Orderer) error {
 		return err
 	}
 	res.MovedShapes = int64(len(res.Moved))
+	if res.Frozen, err = l.frozenFaults(ctx, a, o, v); err != nil {
+		return err
+	}
 	r.mark(&res)
 	if r.opt.Drawings > 0 {
 		res.Drawing = l.draw(a, o, &res, r.opt.Drawings)
@@ -190,7 +194,7 @@ func (r *Run) summarise(l *layout, a *assignment, o *Orders) LayerResult {
 	res.AreaA /= unit
 	res.AreaB /= unit
 	anchored := make([]uint64, (l.shapes+63)/64)
-	for _, an := range o.Anchors {
+	for _, an := range o.Anchors[:len(o.Anchors)-o.Holds] {
 		shape := l.shapeOf(an.Node)
 		if bit := uint64(1) << (shape & 63); anchored[shape>>6]&bit == 0 {
 			anchored[shape>>6] |= bit

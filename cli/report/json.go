@@ -125,6 +125,19 @@ func (j *jsonWriter) layer(l *decompose.LayerResult) {
 			})
 		}
 	})
+	j.key("frozen").list(func() {
+		for i := range l.Frozen {
+			f := &l.Frozen[i]
+			j.inline(func() {
+				j.key("kind").str(f.Kind.String())
+				j.key("top").str(f.Top)
+				j.key("mask").str(f.Mask.String())
+				j.key("box").box(f.Box)
+				j.key("area_dbu2").number(f.Area)
+				j.key("edit").str(f.Edit)
+			})
+		}
+	})
 }
 
 func (j *jsonWriter) unresolved(u *decompose.Unresolved) {

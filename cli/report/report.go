@@ -39,6 +39,15 @@ type Stage struct {
 	Seconds float64
 }
 
+// FrozenFaults counts the places where a frozen mask does not come out as it was made.
+func (r *Report) FrozenFaults() int64 {
+	var n int64
+	for i := range r.Result.Layers {
+		n += int64(len(r.Result.Layers[i].Frozen))
+	}
+	return n
+}
+
 // UnresolvedPairs counts the near pairs of all layers that are left on one mask and not waived.
 func (r *Report) UnresolvedPairs() int64 {
 	var n int64

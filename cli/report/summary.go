@@ -24,6 +24,10 @@ func WriteSummary(w io.Writer, r *Report) error {
 	for i := range r.Result.Layers {
 		s.layer(&r.Result.Layers[i])
 	}
+	for i := range r.Result.Layers {
+		s.frozen(&r.Result.Layers[i])
+		s.moved(&r.Result.Layers[i])
+	}
 	s.cost()
 	return s.w.Flush()
 }
@@ -50,7 +54,9 @@ func (s *summary) verdict() {
 	if name == "" || name == "-" {
 		name = "The layout"
 	}
-	if len(bad) == 0 {
+	if len(bad) == 0 && s.r.FrozenFaults() > 0 {
+		s.line("%s fits on two masks, but not on those that are already made.", name)
+	} else if len(bad) == 0 {
 		s.line("%s fits on two masks: nothing is unresolved.", name)
 	} else {
 		s.line("%s does not fit on two masks as drawn. Unresolved near pairs: %s.", name, strings.Join(bad, ", "))
