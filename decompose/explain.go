@@ -19,7 +19,8 @@ func (s *solver) explain(ctx context.Context, rules *Rules, res *LayerResult, jo
 	if len(s.groups) == 0 {
 		return nil
 	}
-	e := &explainer{solver: s, boxes: s.l.boxes(), groups: map[uint64]int64{}, rules: rules, more: map[uint32]*geom.Parts{}}
+	e := &explainer{solver: s, boxes: s.l.boxes(), groups: map[uint64]int64{}, rules: rules, more: map[uint32]*geom.Parts{},
+		facing: newFacingNames(s.l)}
 	e.gather()
 	e.sign()
 	for i := range s.groups {
@@ -45,6 +46,7 @@ type explainer struct {
 	groups map[uint64]int64       // signature to number
 	rules  *Rules
 	more   map[uint32]*geom.Parts // those of parts that repairs need besides
+	facing *facingNames           // nil: one spacing
 }
 
 // gather finds the geometry of the nodes whose pairs stay on one mask.
@@ -460,10 +462,14 @@ func (e *explainer) pairOf(b *brokenGroup, edge int, u, v uint32, top string) Pa
 		u, v = v, u
 	}
 	scale := float64(e.l.flat.forms.scale)
+	out := Pair{A: e.l.half(e.boxes[u]), B: e.l.half(e.boxes[v]), Top: top}
+	if e.facing != nil && e.byFacing(b, edge, u, v, &out) {
+		return out
+	}
 	from, to, sq := e.closest(b, edge, u, v)
 	k := 2 / e.l.flat.forms.scale
-	out := Pair{A: e.l.half(e.boxes[u]), B: e.l.half(e.boxes[v]), DistanceSq: sq / (scale * scale), Top: top,
-		From: Spot{from.X * k, from.Y * k}, To: Spot{to.X * k, to.Y * k}, Rule: "same_mask_spacing"}
+	out.From, out.To, out.DistanceSq = Spot{from.X * k, from.Y * k}, Spot{to.X * k, to.Y * k}, sq/(scale*scale)
+	out.Rule, out.Spacing = "same_mask_spacing", e.l.rules.Spacing
 	out.Gap = gapBox(out.A, out.B, out.From, out.To)
 	out.Widen = lacks(e.l.rules.Spacing, out.DistanceSq)
 	return out

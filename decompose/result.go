@@ -100,6 +100,9 @@ type CycleShape struct {
 	Mask Mask
 }
 
+// Edge is an edge of an outline by its ends.
+type Edge [2]Spot
+
 // Pair is a near pair as the report names it.
 type Pair struct {
 	A, B       Box
@@ -108,6 +111,9 @@ type Pair struct {
 	Gap        Box     // between them
 	Widen      int64   // database units by which the gap must widen; 0: unknown
 	Rule       string  // the rule of the deck that made the pair
+	Spacing    int64   // what that rule asks for, database units
+	EdgeA      Edge    // the edge of A that the rule looks at, where it is one by what faces what; both ends are one point at a corner
+	EdgeB      Edge    // of B
 	Top        string
 	Mask       Mask
 }

@@ -221,12 +221,13 @@ func (j *judge) offer(p Approach) {
 		p.A, p.B, p.From, p.To = p.B, p.A, p.To, p.From
 	}
 	b := &j.best
-	if b.Spacing == 0 || better(&p, b) {
+	if b.Spacing == 0 || p.Worse(b) {
 		*b = p
 	}
 }
 
-func better(p, q *Approach) bool {
+// Worse tells whether p is the one of two places to tell: it lacks more, or as Nearest says.
+func (p *Approach) Worse(q *Approach) bool {
 	switch {
 	case p.Lacks != q.Lacks:
 		return p.Lacks > q.Lacks
