@@ -157,6 +157,7 @@ func (j *judge) isShape(fig uint32) bool { return j.shapeOf[fig] != noShape }
 func (j *judge) touch() error {
 	f := j.flat
 	shapes, pieces := newSets(len(f.figs)), newSets(len(f.figs))
+	j.kept = make([]item, 0, len(f.figs))
 	for top := range j.v.masked.tree.tops {
 		from := len(j.kept)
 		j.kept = j.topItems(j.kept, top, shapes, pieces)

@@ -30,15 +30,9 @@ func (j *judge) flattenDrawn() (*flat, error) {
 	return f, nil
 }
 
-// shapeKey is what two figures have in common that cover the same, most of the time: the box, and a hash of the outline.
-type shapeKey struct {
-	box  geom.Rect
-	hash uint64 // 0 for rectangles
-}
-
-// keyed is a figure under its key.
+// keyed is a figure under a hash of its place and outline. Figures of one hash are nearly always the same; likeness.same says.
 type keyed struct {
-	key shapeKey
+	key uint64
 	fig uint32
 }
 
@@ -60,7 +54,7 @@ func (l *likeness) look(fig *figure) look {
 	if !ok {
 		points, _ := l.f.points(nil, &figure{box: geom.Rect{X2: fig.box.X2 - fig.box.X1, Y2: fig.box.Y2 - fig.box.Y1}, form: fig.form, turn: fig.turn})
 		points = canonical(points)
-		known = look{points, hashPoints(points) | 1}
+		known = look{points, hashPoints(points)}
 		l.looks[id] = known
 	}
 	return known
@@ -74,27 +68,27 @@ func (l *likeness) keys(from, to uint32, keep func(t tag) bool) []keyed {
 		if !keep(fig.tag) || fig.form == formNone {
 			continue
 		}
-		k := keyed{shapeKey{box: fig.box}, i}
+		key := hashPoints([]geom.Point{{X: fig.box.X1, Y: fig.box.Y1}, {X: fig.box.X2, Y: fig.box.Y2}})
 		if fig.form != formRect {
-			k.key.hash = l.look(fig).hash
+			key ^= l.look(fig).hash
 		}
-		out = append(out, k)
+		out = append(out, keyed{key, i})
 	}
-	slices.SortFunc(out, func(a, b keyed) int { return cmp.Or(compareKeys(a.key, b.key), cmp.Compare(a.fig, b.fig)) })
+	slices.SortFunc(out, func(a, b keyed) int {
+		if a.key != b.key {
+			return cmp.Compare(a.key, b.key)
+		}
+		return cmp.Compare(a.fig, b.fig)
+	})
 	return out
 }
 
-func compareKeys(a, b shapeKey) int {
-	if a.box.X1 != b.box.X1 {
-		return cmp.Compare(a.box.X1, b.box.X1)
-	}
-	return cmp.Or(cmp.Compare(a.box.Y1, b.box.Y1), cmp.Compare(a.box.X2, b.box.X2), cmp.Compare(a.box.Y2, b.box.Y2),
-		cmp.Compare(a.hash, b.hash))
-}
-
-// same says whether a figure of l and one of m, of one key, have the same outline.
+// same says whether a figure of l and one of m are the same: place and outline.
 func (l *likeness) same(a uint32, m *likeness, b uint32) bool {
 	p, q := &l.f.figs[a], &m.f.figs[b]
+	if p.box != q.box {
+		return false
+	}
 	if p.form == formRect || q.form == formRect {
 		return p.form == q.form
 	}
@@ -163,6 +157,8 @@ func (j *judge) compareFigures(c *Check, top int, now *likeness, masked []keyed,
 	if len(lost)+len(added) == 0 {
 		return nil
 	}
+	slices.Sort(lost)
+	slices.Sort(added)
 	gone, err := (&cover{j.v.ctx, was.f, now.f, lost, ofKeys(masked)}).bare()
 	if err != nil {
 		return err
@@ -257,7 +253,7 @@ func matchKeys(m, b []keyed, visit func(m, b []keyed)) {
 		case len(b) == 0:
 			c = -1
 		default:
-			c = compareKeys(m[0].key, b[0].key)
+			c = cmp.Compare(m[0].key, b[0].key)
 		}
 		switch {
 		case c < 0:
@@ -284,6 +280,7 @@ func (j *judge) leftOver(c *Check) error {
 	for top := range j.v.masked.tree.tops {
 		left := like.keys(f.first[top], f.first[top+1], func(t tag) bool { return t == tagDrawn })
 		if !j.rules.KeepDrawn {
+			slices.SortFunc(left, func(a, b keyed) int { return cmp.Compare(a.fig, b.fig) })
 			for _, k := range left {
 				j.areaFault(c, top, f.figs[k.fig].box, "a figure is left on the drawn layer")
 			}
@@ -298,6 +295,7 @@ func (j *judge) leftOver(c *Check) error {
 				}
 			}
 		})
+		slices.Sort(question.questions)
 		for _, k := range masks {
 			question.others = append(question.others, k.fig)
 		}
