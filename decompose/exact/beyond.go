@@ -16,6 +16,7 @@ func (s *solver) beyond(x []uint8, work int64) int64 {
 		im.start(x, 0)
 		return g.floor()
 	}
+	im.crossing = work / 128
 	edge, edges := numberEdges(g)
 	const least = 16 // steps per edge and node that are taken in any case
 	enough := least * int64(edges+g.nodes())
@@ -26,18 +27,19 @@ func (s *solver) beyond(x []uint8, work int64) int64 {
 		im.start(y, im.search.work+max(work/64, enough))
 	}
 	if im.least > bound && work >= enough {
-		c := s.makeCover(g, edge, edges, work)
-		im.use(c)
-		im.run(bound, im.search.work+work/4)
-		q := shortCycles(g, edge, edges, work/16)
-		s.work += q.work
-		s.addCycles(c, append(p.cycles, q.cycles...))
-		d := newDual(s, g, c)
-		bound = max(bound, d.run(im.least, unit, work/2))
-		for _, y := range d.assignments() {
-			im.start(y, im.search.work+work/32)
+		if c := s.makeCover(g, edge, edges, work); c.work <= work/8 {
+			im.use(c)
+			im.run(bound, im.search.work+work/4)
+			q := shortCycles(g, edge, edges, work/16)
+			s.work += q.work
+			s.addCycles(c, append(p.cycles, q.cycles...))
+			d := newDual(s, g, c)
+			bound = max(bound, d.run(im.least, unit, work/2))
+			for _, y := range d.assignments() {
+				im.start(y, im.search.work+work/32)
+			}
+			im.run(bound, im.search.work+work/16)
 		}
-		im.run(bound, im.search.work+work/16)
 	}
 	s.work += p.work + im.search.work
 	return bound

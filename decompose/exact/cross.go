@@ -3,8 +3,9 @@ package exact
 // This file crosses two assignments. The nodes fall into regions, connected sets in which the two are either alike or each other's flip; a graph with one node per region says what turning
 // regions costs, and is solved like any other.
 
-// turns gives, per node, whether to turn its region in x. The result is the best choice where the graph of regions is narrow enough, and a good one elsewhere.
-func (s *solver) turns(g *graph, x, y []uint8) []uint8 {
+// turns gives, per node, whether to turn its region in x. The result is the best choice where the graph of regions can be solved with the given work, and a good one
+// elsewhere.
+func (s *solver) turns(g *graph, x, y []uint8, work int64) []uint8 {
 	n := g.nodes()
 	region := make([]int32, n)
 	for i := range region {
@@ -41,7 +42,7 @@ func (s *solver) turns(g *graph, x, y []uint8) []uint8 {
 	r.run()
 	k, nodes := r.kernel()
 	r.release()
-	sub := solver{budget: Budget{Work: int64(n) << 8, Memory: s.budget.Memory / 8}, quick: true}
+	sub := solver{budget: Budget{Work: work, Memory: s.budget.Memory / 8}, quick: true}
 	best, _ := sub.kernel(k)
 	s.work += sub.work + int64(len(p.Edges))*each
 	all := make([]uint8, count)

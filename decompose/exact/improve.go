@@ -6,19 +6,20 @@ package exact
 // improver is a search with clusters.
 type improver struct {
 	*search
-	s       *solver
-	c       *cover
-	of      [][]int32 // per node: clusters that it is in or next to
-	dirty   []bool
-	queue   []int32
-	weight  []int64
-	unary   []int64
-	ranked  []uint8
-	inside  []int32 // per node: number of the cluster in hand plus 1
-	best    []uint8
-	least   int64
-	changed []int32
-	round   uint64
+	s        *solver
+	c        *cover
+	of       [][]int32 // per node: clusters that it is in or next to
+	dirty    []bool
+	queue    []int32
+	weight   []int64
+	unary    []int64
+	ranked   []uint8
+	inside   []int32 // per node: number of the cluster in hand plus 1
+	best     []uint8
+	least    int64
+	changed  []int32
+	round    uint64
+	crossing int64 // work that one crossing may take
 }
 
 func newImprover(s *solver, g *graph) *improver {
@@ -155,7 +156,7 @@ func (im *improver) cross() {
 		return
 	}
 	im.search.work += int64(len(im.g.adj))
-	turn := im.s.turns(im.g, im.x, im.best)
+	turn := im.s.turns(im.g, im.x, im.best, min(im.crossing, int64(len(im.x))<<8))
 	changed := im.changed[:0]
 	for i, t := range turn {
 		if t != 0 {

@@ -78,23 +78,26 @@ func isOddCycle(edges []Edge, nodes []int32, through int) bool {
 		}
 		return false
 	}
+	between := map[[2]int32][]int{}
+	for k, e := range edges {
+		pair := [2]int32{min(e.U, e.V), max(e.U, e.V)}
+		between[pair] = append(between[pair], k)
+	}
 	// parities[b] tells whether the edges so far can add up to parity b. A cycle of two nodes must not use one edge twice, but then its parity would be even.
 	parities := [2]bool{true, false}
 	for i, v := range nodes {
 		w := nodes[(i+1)%n]
 		var next [2]bool
-		for k, e := range edges {
-			if e.U == v && e.V == w || e.U == w && e.V == v {
-				if through >= 0 && i == 0 && k != through {
-					continue
-				}
-				ask := 1
-				if e.Same {
-					ask = 0
-				}
-				next[ask] = next[ask] || parities[0]
-				next[1^ask] = next[1^ask] || parities[1]
+		for _, k := range between[[2]int32{min(v, w), max(v, w)}] {
+			if through >= 0 && i == 0 && k != through {
+				continue
 			}
+			ask := 1
+			if edges[k].Same {
+				ask = 0
+			}
+			next[ask] = next[ask] || parities[0]
+			next[1^ask] = next[1^ask] || parities[1]
 		}
 		parities = next
 	}
