@@ -171,7 +171,7 @@ func newMaker(s *solver, g *graph, limit int) *maker {
 // try plans the subgraph that nodes span, and tells whether it is narrow enough.
 func (m *maker) try(nodes []int32) bool {
 	m.load(nodes)
-	return m.s.narrow(&m.sub, m.limit, unlimited, 2)
+	return m.s.narrow(&m.sub, nodes, m.limit, unlimited, 2)
 }
 
 // load makes m.sub the graph that nodes span.

@@ -122,7 +122,7 @@ func (s *solver) block(g *graph, f *forest, top int32, below []int32) int64 {
 		}
 	}
 	ca := s.load(g, below, top, 0)
-	if !s.planned(max(s.budget.Work/share, cheap*int64(len(below)))) {
+	if !s.planned(below, max(s.budget.Work/share, cheap*int64(len(below)))) {
 		if free {
 			f.late = append(f.late, piece{nodes: slices.Clone(below), top: top})
 		} else {
@@ -259,11 +259,11 @@ func (s *solver) balanced(g *graph, f *forest, top int32, below []int32) (energy
 	return energy, ok
 }
 
-// planned makes a plan for s.sub, and tells whether it fits the given work, what is left of the budget, and the memory.
-func (s *solver) planned(work int64) bool {
+// planned makes a plan for s.sub, which spans the given nodes of the kernel, and tells whether it fits the given work, what is left of the budget, and the memory.
+func (s *solver) planned(nodes []int32, work int64) bool {
 	work = min(work, s.budget.Work-s.work)
 	limit := min(bits.Len64(uint64(max(0, work)))-2, bits.Len64(uint64(max(0, s.budget.Memory)))-5)
-	if limit < 0 || !s.narrow(&s.sub, limit, work, sweeps) {
+	if limit < 0 || !s.narrow(&s.sub, nodes, limit, work, sweeps) {
 		return false
 	}
 	s.plan.make(&s.sub, &s.order)
@@ -294,7 +294,7 @@ func (s *solver) late(g *graph, f *forest) (bound int64) {
 		pc := &f.late[i]
 		pc.held = s.load(g, pc.nodes, pc.top, 0)
 		pc.work = unlimited
-		if s.planned(unlimited) {
+		if s.planned(pc.nodes, unlimited) {
 			pc.work = s.plan.work
 		}
 	}
@@ -303,7 +303,7 @@ func (s *solver) late(g *graph, f *forest) (bound int64) {
 		fits := pc.work <= s.budget.Work-s.work
 		if len(f.late) > 1 { // else the piece and its plan are at hand
 			s.load(g, pc.nodes, pc.top, 0)
-			fits = fits && s.planned(unlimited)
+			fits = fits && s.planned(pc.nodes, unlimited)
 		}
 		bound += pc.held
 		x := make([]uint8, len(pc.nodes))

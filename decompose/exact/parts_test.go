@@ -243,7 +243,7 @@ func TestSweepMeetsEveryNode(t *testing.T) {
 	var w sweeper
 	for range 100 {
 		g, _ := signed(loose(rng, 1+rng.IntN(30)))
-		order := slices.Clone(w.run(g, int32(rng.IntN(g.nodes()))))
+		order := slices.Clone(w.run(g, int32(rng.IntN(g.nodes())), rng.IntN(2) == 0))
 		slices.Sort(order)
 		if !slices.Equal(order, everyNode(g.nodes())) {
 			t.Fatalf("%v", order)
@@ -252,7 +252,7 @@ func TestSweepMeetsEveryNode(t *testing.T) {
 	// Along a strip of king's graph, begun at a short end, the front need be no more than one column and a node; it may be a little slanted.
 	var s solver
 	g, _ := signed(king(rng, 40, 6, 9))
-	if !s.narrow(g, 8, unlimited, sweeps) {
+	if !s.narrow(g, everyNode(g.nodes()), 8, unlimited, sweeps) {
 		t.Errorf("width %d of a strip 6 wide", s.order.width)
 	}
 }
