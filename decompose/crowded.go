@@ -7,8 +7,12 @@ import "maskpair/decompose/exact"
 // a pair in part only, the bound is below the true cost, and the search branches: the pair is given up (it costs once and asks nothing
 // more), or it must be kept (each of its atoms costs more than everything else). Depth first, the kept branch first.
 
-// mostBranches bounds the search: so many problems are solved for one group. Beyond, the best found and the bound stand.
-const mostBranches = 256
+// The search is bounded: no more than mostBranches problems are solved for one group, and of a large one only so many that their atoms
+// add up to mostBranched. Beyond, the best found and the bound stand.
+const (
+	mostBranches = 1024
+	mostBranched = 1 << 18
+)
 
 // The states of a crowded pair.
 const (
@@ -31,7 +35,7 @@ type crowdSearch struct {
 
 // solveCrowded gives the solution of a group by true cost.
 func (s *solver) solveCrowded(b *brokenGroup, wishes map[uint32][2]int64) exact.Solution {
-	c := &crowdSearch{s: s, b: b, wishes: wishes, cost: 1 << 62, left: mostBranches}
+	c := &crowdSearch{s: s, b: b, wishes: wishes, cost: 1 << 62, left: max(2, min(mostBranches, mostBranched/b.atoms()))}
 	state := make([]uint8, len(b.edges))
 	lower := c.branch(state)
 	sol := exact.Solution{Masks: c.best, Cost: c.cost, LowerBound: min(lower, c.cost)}

@@ -254,7 +254,7 @@ func (s *sketch) frame(l *layout) {
 			hull = hull.join(at)
 		}
 	}
-	s.window = grown(hull, reach)
+	s.window = grown(hull, max(1, reach*5/8))
 	s.out.Window = l.half(s.window)
 }
 

@@ -354,7 +354,7 @@ func (e *explainer) candidates(b *brokenGroup, p *componentPart, ring []int32, u
 		}
 		place[i] = len(u.Candidates)
 		u.Candidates = append(u.Candidates, StitchCandidate{Box: e.l.half(forward.applyBox(Box(c.box))), Overlap: c.length() / scale,
-			Resolves: onRing[c.node] && e.resolves(b, i)})
+			Resolves: onRing[c.node] && e.resolves(b, i), Made: b.cutting && b.masks[c.low] != b.masks[c.high]})
 	}
 	if len(u.Candidates) == 0 {
 		u.NoCandidate = b.pieces.forbids(p.nodes, e.rules, e.l.rules)

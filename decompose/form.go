@@ -48,6 +48,7 @@ type forms struct {
 	grid
 	of      []form
 	rects   []geom.Rect
+	cutter  geom.Cutter
 	rounded []bool // by outline: its own vertices were rounded
 }
 
@@ -89,7 +90,7 @@ func (f *forms) make(points []geom.Point, fill geom.Fill) form {
 		return form{}
 	}
 	first := len(f.rects)
-	rects, manhattan := geom.Rectangles(f.rects, points, fill)
+	rects, manhattan := f.cutter.Rectangles(f.rects, points, fill)
 	f.rects = rects
 	if manhattan {
 		made := form{first: uint32(first), count: uint32(len(f.rects) - first)}

@@ -10,7 +10,7 @@ import (
 // Group is one kind of unresolved component of a layer: equal up to translation and the eight orientations.
 type Group struct {
 	Members []int // indices into LayerResult.Unresolved, ascending
-	Shown   int   // the member that stands for all: the first whose repair is known, or the first
+	Shown   int   // the member that stands for all: the first whose repair is known, else the first with a pair left, else the first
 	Pairs   int64 // near pairs that all members leave on one mask
 }
 
@@ -26,7 +26,7 @@ func (l *LayerResult) Groups() []Group {
 			place[u.Group] = k
 			groups = append(groups, Group{Shown: i})
 		}
-		if u.Repair != nil && l.Unresolved[groups[k].Shown].Repair == nil {
+		if telling(u) > telling(&l.Unresolved[groups[k].Shown]) {
 			groups[k].Shown = i
 		}
 		groups[k].Members = append(groups[k].Members, i)
@@ -37,3 +37,6 @@ func (l *LayerResult) Groups() []Group {
 	})
 	return groups
 }
+
+// telling ranks how much an entry has to tell.
+func telling(u *Unresolved) int { return 2*boolInt(u.Repair != nil) + boolInt(len(u.Pairs) > 0) }

@@ -33,7 +33,11 @@ func (r *Run) mark(res *LayerResult) {
 		for _, c := range u.Cycle {
 			add(m.Cycle, u.Top, c.Box)
 		}
+		// What is cut where the deck says so, else where it could be.
 		for _, c := range u.Candidates {
+			if l := r.rules.layer(res.Name); l != nil && l.Stitch.Apply && !c.Made {
+				continue
+			}
 			add(m.Stitch, u.Top, c.Box)
 		}
 	}
@@ -86,4 +90,14 @@ func gapBox(a, b Box, from, to Spot) Box {
 		return Box{min(from.X, to.X), min(from.Y, to.Y), max(from.X, to.X), max(from.Y, to.Y)}
 	}
 	return Box{x1, y1, x2, y2}
+}
+
+// layer gives the rules of a layer by its name.
+func (r *Rules) layer(name string) *LayerRules {
+	for i := range r.Layers {
+		if r.Layers[i].Name == name {
+			return &r.Layers[i]
+		}
+	}
+	return nil
 }

@@ -92,3 +92,12 @@ func BenchmarkOpen(b *testing.B) {
 		})
 	}
 }
+
+// BenchmarkStitches looks for stitches on an open layout whose odd components are large.
+func BenchmarkStitches(b *testing.B) {
+	stream := openLayout(b, "asap7_srambank_32b")
+	deck := oneLayer(19, 36) + "[layer.stitch]\nmin_overlap = 5\nmin_piece = 10\n"
+	for b.Loop() {
+		decomposed(b, stream, deck, Options{Jobs: 2})
+	}
+}

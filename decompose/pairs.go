@@ -13,6 +13,7 @@ type pairs struct {
 
 const (
 	blockPairs = 1 << 13
+	leastPairs = 1 << 4
 	// The two ordinals of a pair are below 2^31. The lower bit says that the pair is nearer than any_mask_spacing.
 	pairShift = 32
 )
@@ -22,8 +23,10 @@ var errTooManyPairs = errors.New("too many near pairs")
 // add keeps a pair. limit counts down what may still be kept, block by block.
 func (p *pairs) add(a, b, tooNear uint32, limit *atomic.Int64) {
 	if len(p.open) == cap(p.open) {
+		// The first blocks are small, since most tops of a library are.
+		size := min(blockPairs, max(2*cap(p.open), leastPairs))
 		p.flush(limit)
-		p.open = make([]uint64, 0, blockPairs)
+		p.open = make([]uint64, 0, size)
 	}
 	p.open = append(p.open, packPair(a, b, tooNear))
 }

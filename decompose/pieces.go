@@ -291,6 +291,9 @@ func (s *solver) leastCuts(b *brokenGroup) []int {
 	if b.pieces == nil || len(b.pieces.cuts) == 0 {
 		return nil
 	}
+	if !s.consistent(b, func(int) bool { return true }) {
+		return nil // not even all cuts together are enough
+	}
 	trial := *b
 	if !b.cutting {
 		trial.cutting = true
@@ -308,11 +311,16 @@ func (s *solver) leastCuts(b *brokenGroup) []int {
 
 // resolves tells whether a cut alone leaves no pair of the group unresolved that is not waived.
 func (s *solver) resolves(b *brokenGroup, cut int) bool {
+	return s.consistent(b, func(i int) bool { return i == cut })
+}
+
+// consistent tells whether no pair of a group that is not waived need be unresolved when some cuts may be made, at no cost.
+func (s *solver) consistent(b *brokenGroup, may func(cut int) bool) bool {
 	p := b.pieces
 	atoms := int(p.first[len(b.nodes)])
 	q := newParity(make([]uint32, atoms+1))
 	for i, c := range p.cuts {
-		if i != cut {
+		if !may(i) {
 			q.relate(uint32(c.low), uint32(c.high), 0)
 		}
 	}

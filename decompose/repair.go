@@ -15,8 +15,12 @@ import (
 // pair weighed by how much it lacks of its spacing: the pairs that are broken then, widened by what they lack, leave a graph that two
 // masks can do, and no other choice lacks less in total. Equal groups share one solution.
 
-// mostRepaired is the size in nodes of the largest group whose repair is worked out.
-const mostRepaired = 4096
+// Repairs are worked out for groups of no more than mostRepaired nodes, and for no more than mostKinds kinds of components: nobody
+// reads more.
+const (
+	mostRepaired = 4096
+	mostKinds    = 1000
+)
 
 // repairs fills in the cheapest repairs, for one component of each group of equal ones; the others have the same by place.
 func (e *explainer) repairs(ctx context.Context, res *LayerResult, jobs int) error {
@@ -25,7 +29,7 @@ func (e *explainer) repairs(ctx context.Context, res *LayerResult, jobs int) err
 	byGroup := map[int32]*Unresolved{}
 	for i := range res.Unresolved {
 		u := &res.Unresolved[i]
-		if seen[u.Group] || len(u.Pairs) == 0 {
+		if seen[u.Group] || len(u.Pairs) == 0 || len(todo) == mostKinds {
 			continue
 		}
 		seen[u.Group] = true

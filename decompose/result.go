@@ -137,6 +137,7 @@ type StitchCandidate struct {
 	Box      Box
 	Overlap  int64 // database units
 	Resolves bool  // alone
+	Made     bool  // it is cut in the output
 }
 
 // FigureClass numbers the roles that layers of the stream have for one deck layer.

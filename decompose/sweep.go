@@ -58,6 +58,13 @@ func (s *sweep) run(ctx context.Context, sets union, jobs int, limit *atomic.Int
 	if n == 0 {
 		return nil, nil
 	}
+	if n <= fewItems {
+		sink := pairSink{sets: sets, limit: limit}
+		w := searcher{s: s, sink: &sink}
+		w.few()
+		sink.near.flush(limit)
+		return []pairSink{sink}, ctx.Err()
+	}
 	s.low, s.high = int64(s.items[0].X1), int64(s.items[0].X2)
 	s.blocks = make([]int32, (n+blockItems-1)/blockItems)
 	for i := range s.items {
@@ -167,6 +174,24 @@ func (w *searcher) stretch(ctx context.Context, sink *pairSink, from, to int) er
 	}
 	sink.near.flush(sink.limit)
 	return nil
+}
+
+// fewItems is up to how many items are compared each with each, without buckets.
+const fewItems = 48
+
+// few compares each item with those before it, as far up as these reach.
+func (w *searcher) few() {
+	s := w.s
+	hidden := uint64(0) // items that lie within another
+	for i := range s.items {
+		q := &s.items[i]
+		for k := range i {
+			if hidden>>k&1 == 0 && int64(q.Y1)-int64(s.items[k].Y2) < s.spacing && w.compare(&s.items[k], q) {
+				hidden |= 1 << i
+				break
+			}
+		}
+	}
 }
 
 // levelOf gives the level whose buckets are at least as wide as an item.
@@ -281,30 +306,40 @@ func (w *searcher) slot(l *level, slot uint32, q *item) bool {
 			continue
 		}
 		before, e = e, after
-		dx := max(int64(it.X1)-int64(q.X2), int64(q.X1)-int64(it.X2))
-		if dx >= spacing {
-			continue
+		if w.compare(it, q) {
+			return true
 		}
-		if (it.ID|q.ID)&bandBit == 0 && it.ID < s.figures && q.ID < s.figures {
-			if dx <= 0 && dy <= 0 {
-				if s.keepTouched {
-					w.sink.touched = append(w.sink.touched, hit{it.ID, q.ID})
-				} else if it.ID != q.ID {
-					w.sink.sets.join(it.ID, q.ID)
-				}
-				if !s.keepTouched && it.X1 <= q.X1 && q.X2 <= it.X2 && q.Y2 <= it.Y2 && (s.tags == nil || s.tags[it.ID] == s.tags[q.ID]) {
-					return true
-				}
-				continue
-			}
-			// Both gaps are below the spacing, itself below 2^33, so the squares stay below 2^66 only where it is above 2^31.5;
-			// gapSq guards that.
-			if d, ok := gapSq(max(dx, 0), max(dy, 0), spacing); ok && it.ID != q.ID {
-				w.near(it.ID, q.ID, d)
-			}
-			continue
-		}
+	}
+	return false
+}
+
+// compare compares two items of which the second does not begin below the first and is less than the spacing above it; true: the
+// second lies within the first, with which it has been joined.
+func (w *searcher) compare(it, q *item) bool {
+	s := w.s
+	spacing := s.spacing
+	dx := max(int64(it.X1)-int64(q.X2), int64(q.X1)-int64(it.X2))
+	if dx >= spacing {
+		return false
+	}
+	dy := int64(q.Y1) - int64(it.Y2)
+	if (it.ID|q.ID)&bandBit != 0 || it.ID >= s.figures || q.ID >= s.figures {
 		w.odd(it, q)
+		return false
+	}
+	if dx <= 0 && dy <= 0 {
+		if s.keepTouched {
+			w.sink.touched = append(w.sink.touched, hit{it.ID, q.ID})
+			return false
+		}
+		if it.ID != q.ID {
+			w.sink.sets.join(it.ID, q.ID)
+		}
+		return it.X1 <= q.X1 && q.X2 <= it.X2 && q.Y2 <= it.Y2 && (s.tags == nil || s.tags[it.ID] == s.tags[q.ID])
+	}
+	// Gaps are below 2^33; gapSq guards their squares.
+	if d, ok := gapSq(max(dx, 0), max(dy, 0), spacing); ok && it.ID != q.ID {
+		w.near(it.ID, q.ID, d)
 	}
 	return false
 }

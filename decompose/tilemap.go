@@ -27,7 +27,7 @@ type Tile struct {
 
 const (
 	mostTiles  = 44 // along the longer side
-	leastTiles = 6  // a tile is to hold a few shapes, so a small layout has few tiles
+	leastTiles = 10 // a tile is to hold a few shapes, so a small layout has few tiles
 	mapsKept   = 6  // tops with maps: those with most unresolved, then those with most shapes
 )
 

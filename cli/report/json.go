@@ -169,6 +169,7 @@ func (j *jsonWriter) unresolved(u *decompose.Unresolved) {
 				j.key("box").box(c.Box)
 				j.key("overlap_dbu").integer(c.Overlap)
 				j.key("resolves").boolean(c.Resolves)
+				j.key("made").boolean(c.Made)
 			})
 		}
 	})

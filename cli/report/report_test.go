@@ -138,9 +138,9 @@ func TestJSONValues(t *testing.T) {
 	pair := map[string]any{"a": box, "b": []any{30.0, 0.0, 40.0, 40.0}, "distance_sq_dbu2": 100.25, "from": []any{20.0, 0.5}, "to": []any{30.0, 0.5},
 		"widen_dbu": 26.0, "rule": "same_mask_spacing", "mask": "B"}
 	want := map[string]any{
-		"top": "chip", "component": 17.0, "shapes": 5.0, "cause": "odd_cycle",
+		"top": "chip", "component": 17.0, "shapes": 5.0, "cause": "odd_cycle", "repair": []any{},
 		"cycle": []any{map[string]any{"box": box, "mask": "A"}, map[string]any{"box": box, "mask": "B"}, map[string]any{"box": box, "mask": "B"}},
-		"pairs": []any{pair}, "stitch_candidates": []any{map[string]any{"box": box, "overlap_dbu": 10.0, "resolves": true}},
+		"pairs": []any{pair}, "stitch_candidates": []any{map[string]any{"box": box, "overlap_dbu": 10.0, "resolves": true, "made": false}},
 		"least_stitches": []any{0.0}, "no_candidate": "", "lower_bound": 1.0, "proved_optimal": true, "group": 1.0,
 		"cell": "knot", "cell_transform": "turned by 90 degrees", "cell_place": []any{1.5, -2.0},
 	}

@@ -145,7 +145,7 @@ func (s *summary) layer(l *decompose.LayerResult) {
 		s.line("%s: %s kinds of unresolved components, worst first", Text(l.Name), Count(int64(len(groups))))
 	}
 	for _, g := range groups[:min(len(groups), groupsShown)] {
-		s.group(&l.Unresolved[g.Members[0]], int64(len(g.Members)))
+		s.group(&l.Unresolved[g.Shown], int64(len(g.Members)))
 	}
 	if more := len(groups) - groupsShown; more > 0 {
 		s.line("  %s more kinds: write a --report for the full list", Count(int64(more)))
@@ -185,7 +185,15 @@ func (s *summary) group(u *decompose.Unresolved, occurs int64) {
 		}
 		s.line("%s, from (%s) to (%s)", line, s.place(p.From), s.place(p.To))
 	}
+	made := 0
+	for _, c := range u.Candidates {
+		if c.Made {
+			made++
+		}
+	}
 	switch {
+	case made > 0:
+		s.line("      %s made", count(made, "stitch"))
 	case len(u.LeastStitches) > 0:
 		c := u.Candidates[u.LeastStitches[0]]
 		s.line("      %s would do, the first over (%s) to (%s)", count(len(u.LeastStitches), "stitch"),

@@ -13,6 +13,8 @@ type Rules struct {
 	MinOverlap int64 // a cut overlaps by exactly this
 	MinPiece   int64 // least extent of a piece along the wire that is cut
 	Grid       int64 // overlaps lie on multiples of it
+	// Refuse, where not nil, names cuts by their boxes that are no candidates for other reasons, looking at all that are left.
+	Refuse func(s *Split) []geom.Rect
 }
 
 // Cut is a place where the shape can be cut: the box is the overlap of the two pieces, MinOverlap long.
@@ -40,6 +42,7 @@ const (
 	KeptOut                 // keep-out figures leave too little
 	SmallPart               // a piece would be shorter than MinPiece
 	Useless                 // no neighbour is near to one of the pieces, or the pieces hang together another way
+	Refused                 // Rules.Refuse
 	None                    // there are candidates
 )
 
@@ -71,6 +74,11 @@ func Find(shape, neighbours, keepOut []geom.Rect, rules Rules) (Split, Reason) {
 	slices.SortFunc(cuts, func(a, b Cut) int { return compareRects(a.Box, b.Box) })
 	for len(cuts) > 0 {
 		s, bad := f.part(cuts)
+		if len(bad) == 0 && rules.Refuse != nil {
+			if bad = rules.Refuse(&s); len(bad) > 0 {
+				f.reached(Refused)
+			}
+		}
 		if len(bad) == 0 {
 			return s, None
 		}

@@ -57,8 +57,8 @@ func TestReasons(t *testing.T) {
 		{"keep-out over the whole part", wire, ends, []geom.Rect{r(45, 5, 155, 10)}, rules, KeptOut},
 		{"keep-out touches the wire from outside", wire, ends, []geom.Rect{r(45, 20, 155, 30)}, rules, KeptOut},
 		{"keep-out a unit away", wire, ends, []geom.Rect{r(45, 21, 155, 30)}, rules, None},
-		{"pieces of 105 where 106 are asked for", wire, ends, nil, Rules{30, 10, 106, 1}, SmallPart},
-		{"pieces of 105 where 105 are asked for", wire, ends, nil, Rules{30, 10, 105, 1}, None},
+		{"pieces of 105 where 106 are asked for", wire, ends, nil, Rules{Spacing: 30, MinOverlap: 10, MinPiece: 106, Grid: 1}, SmallPart},
+		{"pieces of 105 where 105 are asked for", wire, ends, nil, Rules{Spacing: 30, MinOverlap: 10, MinPiece: 105, Grid: 1}, None},
 		{"nothing near the right piece", wire, ends[:1], nil, rules, Useless},
 	} {
 		if _, got := Find(c.shape, c.near, c.keepOut, c.rules); got != c.want {
