@@ -26,8 +26,22 @@ func (s *Shape) holdsSquare(e *edge, from, to place, width int64) bool {
 	if s.rect {
 		return true
 	}
-	strip := s.strip(e, from, to, width)
-	barriers := s.barriers(e, strip)
+	begin := from.plus(-width)
+	fits := func(end place) bool {
+		return begin.less(to) && from.less(end) && !end.less(begin.plus(width))
+	}
+	for _, b := range s.sortedBarriers(e, from, to, width) {
+		if fits(b.from) {
+			return true
+		}
+		begin = maxPlace(begin, b.to)
+	}
+	return fits(to.plus(width))
+}
+
+// sortedBarriers finds what reaches into the strip along a stretch of an edge and as far on both sides as a square can lie.
+func (s *Shape) sortedBarriers(e *edge, from, to place, width int64) []barrier {
+	barriers := s.barriers(e, s.strip(e, from, to, width))
 	slices.SortFunc(barriers, func(p, q barrier) int {
 		switch {
 		case p.from.less(q.from):
@@ -37,17 +51,7 @@ func (s *Shape) holdsSquare(e *edge, from, to place, width int64) bool {
 		}
 		return 0
 	})
-	begin := from.plus(-width)
-	fits := func(end place) bool {
-		return begin.less(to) && from.less(end) && !end.less(begin.plus(width))
-	}
-	for _, b := range barriers {
-		if fits(b.from) {
-			return true
-		}
-		begin = maxPlace(begin, b.to)
-	}
-	return fits(to.plus(width))
+	return barriers
 }
 
 // strip is the box of where a square could lie, rounded outwards.
