@@ -53,8 +53,9 @@ type solver struct {
 	a      *assignment
 	o      *Orders
 	groups []brokenGroup
-	index  map[int32]int // group number to index in groups
-	broken []uint64      // bit by group number
+	index  map[int32]int       // group number to index in groups
+	broken []uint64            // bit by group number
+	apart  map[uint32][]uint32 // by node of a broken group: what is within the largest spacing and yet not near
 }
 
 // newSolver gathers the nodes of the broken groups.

@@ -24,6 +24,7 @@ type pieces struct {
 	pairs   [][][2]int32    // by near pair of the group: near atoms; nil where both nodes are whole
 	reasons []stitch.Reason // by node
 	held    int             // nodes that are under an order, given stitches, slanted or on half units
+	shapes  *atomShapes     // outlines of atoms; nil: one spacing is all
 	crowded bool            // some near pair has more near atoms than the weights can count once
 	state   []uint8         // by near pair: how a crowded one counts; nil: all are open
 }
@@ -56,6 +57,7 @@ func (s *solver) findPieces(ctx context.Context, jobs int) error {
 			parts[u] = &geom.Parts{}
 		}
 	}
+	s.findApart(parts)
 	s.l.geometryOf(parts)
 	keepOut, err := s.keepOut(ctx, parts)
 	if err != nil {
@@ -102,6 +104,7 @@ func (s *solver) cutAll(b *brokenGroup, parts map[uint32]*geom.Parts, keepOut ma
 		near[e.V] = append(near[e.V], e.U)
 	}
 	splits := make([]*stitch.Split, n)
+	cutting := s.newCutting(b, parts, rects, near, rules.Spacing)
 	atoms := int32(0)
 	for k, u := range b.nodes {
 		p.first[k] = atoms
@@ -110,19 +113,12 @@ func (s *solver) cutAll(b *brokenGroup, parts map[uint32]*geom.Parts, keepOut ma
 			p.held++
 			continue
 		}
-		box := geom.Rect(boxAround(rects[k]))
-		var around []geom.Rect
-		for _, v := range near[k] {
-			for _, r := range rects[v] {
-				if geom.RectsRelation(r, box, rules.Spacing) != geom.Far {
-					around = append(around, r)
-				}
-			}
-		}
+		around := cutting.around(k, geom.Rect(boxAround(rects[k])))
 		var kept []geom.Rect
 		for _, r := range keepOut[u] {
 			kept = append(kept, geom.Rect(b.canon.back.applyBox(Box(r))))
 		}
+		rules.Refuse = cutting.refuse(k)
 		split, why := stitch.Find(rects[k], around, kept, rules)
 		p.reasons[k] = why
 		if len(split.Cuts) == 0 {
@@ -146,6 +142,7 @@ func (s *solver) cutAll(b *brokenGroup, parts map[uint32]*geom.Parts, keepOut ma
 			}
 		}
 	}
+	p.shapes = cutting.atomShapes(p)
 	p.pairs = make([][][2]int32, len(b.edges))
 	for i, e := range b.edges {
 		if splits[e.U] == nil && splits[e.V] == nil {
@@ -176,6 +173,9 @@ func (s *solver) nearAtoms(b *brokenGroup, k, m int, rects [][]geom.Rect, parts 
 
 func (s *solver) atomsNear(b *brokenGroup, k, m int, i, j int32, rects [][]geom.Rect, parts map[uint32]*geom.Parts, spacing int64) bool {
 	p := b.pieces
+	if p.shapes != nil {
+		return p.shapes.near(i, j)
+	}
 	ri, rj := p.rects[i], p.rects[j]
 	if ri != nil && rj != nil {
 		return rectsNear(ri, rj, spacing)
@@ -371,6 +371,8 @@ func (p *pieces) forbids(nodes []int32, rules *Rules, l *LayerRules) string {
 		return "keep_out figures lie where a wire is clear of neighbours"
 	case stitch.SmallPart:
 		return fmt.Sprintf("a piece would be shorter than min_piece (%s)", rules.Length(float64(l.Stitch.MinPiece)))
+	case stitch.Refused:
+		return "a cut would bring pieces of the shape too near to each other, or leave edges so short that other rules hold for them"
 	case stitch.Useless:
 		return "a cut would leave a piece without neighbours, or not part the shape"
 	}

@@ -1,7 +1,9 @@
 package decompose
 
 import (
+	"cmp"
 	"math/bits"
+	"slices"
 
 	"golang.org/x/sync/errgroup"
 )
@@ -9,12 +11,16 @@ import (
 // This file puts items in the order of the sweep: by lower edge, then left edge, by a radix sort with the least digit first. It is
 // stable, so the order depends on the items alone, whatever the number of workers.
 
-const digitBits = 11
+const (
+	digitBits = 11
+	fewDigits = 1 << 9 // below, counting digits costs more than comparing
+)
 
 // sortItems orders items by (Y1, X1), using scratch of the same length; the sorted items are in the slice that it returns, which is
 // one of the two.
 func sortItems(items, scratch []item, jobs int) []item {
-	if len(items) < 2 {
+	if len(items) < fewDigits {
+		slices.SortStableFunc(items, func(a, b item) int { return cmp.Or(cmp.Compare(a.Y1, b.Y1), cmp.Compare(a.X1, b.X1)) })
 		return items
 	}
 	if len(items) < 1<<12 {
