@@ -212,6 +212,13 @@ func (f *flat) placeOdd(placed *figure, fig *gds.Figure, at gds.Transform) bool 
 		return false
 	}
 	made := newForm(points, fill)
+	if !made.hasArea() && len(points) > 0 {
+		// Rounding has left no area; that the figure is one was settled as drawn. It is there by its corners.
+		made.box = geom.BoxOf(points)
+		for _, p := range points {
+			made.rects = append(made.rects, geom.Rect{X1: p.X, Y1: p.Y, X2: p.X, Y2: p.Y})
+		}
+	}
 	placed.box, placed.form = made.box, formRect
 	if len(made.rects) != 1 {
 		placed.form = f.keep(made)

@@ -71,10 +71,6 @@ type meet struct{ a, b item }
 // layer judges a deck layer.
 func (v *verifier) layer(i int) error {
 	rules := &v.rules.Layers[i]
-	if rules.ByFacing != nil {
-		return &OrderError{Msg: fmt.Sprintf("%s: layer %s: spacing: verify has no rules by what faces what yet; take [layer.spacing] out to judge by same_mask_spacing alone",
-			v.in.Deck.File, rules.Name)}
-	}
 	f, err := newFlat(v.ctx, v.masked, v.roles.tags(rules))
 	if err != nil {
 		return err

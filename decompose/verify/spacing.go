@@ -9,21 +9,9 @@ import (
 	"maskpair/decompose/geom"
 )
 
-// This file makes the checks of spacing: pieces on one mask, and any two shapes. Nearness is a question about two pieces; the
-// search finds the places where they come close, and a rule says whether that is too near.
-
-// rule says from which distance on two pieces are far enough apart, in half units. It sees two items that come near each
-// other; what it calls near makes the pieces near.
-type rule interface {
-	reach() int64 // beyond this nothing is near
-	near(f *flat, a, b *item) bool
-}
-
-// plain is the rule of one number: the Euclidean distance, whatever faces what.
-type plain int64
-
-func (p plain) reach() int64                  { return int64(p) }
-func (p plain) near(f *flat, a, b *item) bool { return f.relation(a, b, int64(p)) == geom.Near }
+// This file makes the checks of spacing: pieces on one mask, and any two shapes. The search finds the places where two pieces
+// come close; whether that is too near is said here by one number, the Euclidean distance whatever faces what, and in
+// facing.go by what faces what.
 
 // pair is two shapes (or two pieces of one shape) that are too near.
 type pair struct {
@@ -67,48 +55,28 @@ func (p pairs) keys() []pairKey {
 
 // spacing makes the checks of spacing. Pieces of one shape that are too near on one mask are a fault of the stitch.
 func (j *judge) spacing(same, any, stitches *Check) error {
-	sameRule, anyRule := rule(plain(2*j.rules.Spacing)), plain(2*j.rules.AnyMask)
-	meet := map[[2]uint32]bool{}
-	for i := range j.meets {
-		meet[[2]uint32{j.pieceOf[j.meets[i].a.fig], j.pieceOf[j.meets[i].b.fig]}] = true
-	}
 	near, tooNear := pairs{}, pairs{}
-	f := j.flat
-	from := uint32(0)
-	for _, end := range j.keptEnd {
-		items := j.kept[from:end]
-		from = end
-		err := search(j.v.ctx, items, max(sameRule.reach(), anyRule.reach()), func(a, b *item) {
-			s, t := f.figs[a.fig].tag, f.figs[b.fig].tag
-			if !s.mask() || !t.mask() {
-				return
-			}
-			p, q := j.pieceOf[a.fig], j.pieceOf[b.fig]
-			switch {
-			case p == q:
-				return
-			case s == t:
-				if sameRule.near(f, a, b) {
-					near.add(j.pairKey(p, q), a, b)
-				}
-			case anyRule == 0 || meet[[2]uint32{p, q}] || meet[[2]uint32{q, p}]:
-				return
-			}
-			if anyRule > 0 && anyRule.near(f, a, b) {
-				tooNear.add(j.pairKey(p, q), a, b)
-			}
-		})
-		if err != nil {
+	least := int64(0)
+	if j.rules.ByFacing != nil {
+		if err := j.facingPairs(newFacing(j.rules), near); err != nil {
 			return err
 		}
+	} else {
+		least = 2 * j.rules.Spacing
 	}
-	limit := j.v.rules.Length(float64(j.rules.Spacing))
+	if err := j.plainPairs(least, 2*j.rules.AnyMask, near, tooNear); err != nil {
+		return err
+	}
+	needed := j.v.rules.Length(float64(j.rules.Spacing)) + " is needed"
+	if j.rules.ByFacing != nil {
+		needed = "too near for what faces what"
+	}
 	for _, key := range near.keys() {
 		pr := near[key]
 		switch {
 		case key.pieces:
 			p := &j.pieces[key.a]
-			j.pairFault(stitches, p.box, j.pieces[key.b].box, &pr, fmt.Sprintf("two pieces of one shape on mask %s are %%s apart; %s is needed", p.mask.maskName(), limit))
+			j.pairFault(stitches, p.box, j.pieces[key.b].box, &pr, fmt.Sprintf("two pieces of one shape on mask %s are %%s apart; %s", p.mask.maskName(), needed))
 		case j.waived[[2]uint32{key.a, key.b}]:
 			j.counts.Waived++
 			if len(j.counts.WaivedPlaces) < mostPlaces {
@@ -117,14 +85,14 @@ func (j *judge) spacing(same, any, stitches *Check) error {
 				j.counts.WaivedPlaces = append(j.counts.WaivedPlaces, told.Places...)
 			}
 		default:
-			j.pairFault(same, j.shapes[key.a].box, j.shapes[key.b].box, &pr, fmt.Sprintf("%%s apart on mask %s; %s is needed",
-				f.figs[pr.a.fig].tag.maskName(), limit))
+			j.pairFault(same, j.shapes[key.a].box, j.shapes[key.b].box, &pr, fmt.Sprintf("%%s apart on mask %s; %s",
+				j.flat.figs[pr.a.fig].tag.maskName(), needed))
 		}
 	}
 	if any == nil {
 		return nil
 	}
-	limit = j.v.rules.Length(float64(j.rules.AnyMask))
+	limit := j.v.rules.Length(float64(j.rules.AnyMask))
 	for _, key := range tooNear.keys() {
 		pr := tooNear[key]
 		var a, b geom.Rect
@@ -134,6 +102,48 @@ func (j *judge) spacing(same, any, stitches *Check) error {
 			a, b = j.shapes[key.a].box, j.shapes[key.b].box
 		}
 		j.pairFault(any, a, b, &pr, fmt.Sprintf("%%s apart; whatever the masks, %s is needed", limit))
+	}
+	return nil
+}
+
+// plainPairs finds the pairs of pieces on one mask that are nearer than same, and of any pieces nearer than any; 0 asks for
+// none.
+func (j *judge) plainPairs(same, any int64, near, tooNear pairs) error {
+	if same == 0 && any == 0 {
+		return nil
+	}
+	meet := map[[2]uint32]bool{}
+	for i := range j.meets {
+		meet[[2]uint32{j.pieceOf[j.meets[i].a.fig], j.pieceOf[j.meets[i].b.fig]}] = true
+	}
+	f := j.flat
+	from := uint32(0)
+	for _, end := range j.keptEnd {
+		items := j.kept[from:end]
+		from = end
+		err := search(j.v.ctx, items, max(same, any), func(a, b *item) {
+			s, t := f.figs[a.fig].tag, f.figs[b.fig].tag
+			if !s.mask() || !t.mask() {
+				return
+			}
+			p, q := j.pieceOf[a.fig], j.pieceOf[b.fig]
+			switch {
+			case p == q:
+				return
+			case s == t:
+				if f.relation(a, b, same) == geom.Near {
+					near.add(j.pairKey(p, q), a, b)
+				}
+			case any == 0 || meet[[2]uint32{p, q}] || meet[[2]uint32{q, p}]:
+				return
+			}
+			if any > 0 && f.relation(a, b, any) == geom.Near {
+				tooNear.add(j.pairKey(p, q), a, b)
+			}
+		})
+		if err != nil {
+			return err
+		}
 	}
 	return nil
 }
