@@ -3,6 +3,8 @@ package exact
 import "math/bits"
 
 // This file leads through what is done for a graph that is too wide for exact elimination within the budget.
+//
+// Where the sum of all weights passes about 2^57, the shares of the clusters would not fit 64 bits, and the packing of cycles is the only bound.
 
 // beyond finds a good assignment of s.sub, writes it to x, and returns a lower bound on the energy. It takes about the given work, and less where nothing more is to be gained; a
 // number of steps linear in the graph is taken whatever the budget.

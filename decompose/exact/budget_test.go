@@ -28,6 +28,42 @@ func TestSmallBudgets(t *testing.T) {
 	}
 }
 
+// TestNothingToSolve: problems without nodes or without edges that count.
+func TestNothingToSolve(t *testing.T) {
+	if s := Solve(&Problem{}, DefaultBudget()); s.Cost != 0 || !s.Proved || len(s.Masks) != 0 {
+		t.Errorf("%+v", s)
+	}
+	p := &Problem{Nodes: 3, Edges: []Edge{{U: 0, V: 1}, {U: 1, V: 2, Weight: -4}, {U: 2, V: 2, Weight: 5}, {U: 1, V: 1, Weight: 7, Same: true}}, Fixed: []int8{-1, 1, -1}}
+	if s := Solve(p, Budget{}); s.Cost != 5 || !s.Proved || s.Masks[0] != 0 || s.Masks[1] != 1 || s.Masks[2] != 0 {
+		t.Errorf("%+v", s)
+	}
+}
+
+// TestLeastNodeOnA: a component that may be flipped has its least node on mask A, wherever it is settled.
+func TestLeastNodeOnA(t *testing.T) {
+	rng := rand.New(rand.NewPCG(27, 28))
+	for range 300 {
+		p := loose(rng, 1+rng.IntN(12))
+		p.Cost = nil
+		for _, b := range []Budget{{}, DefaultBudget()} {
+			s := Solve(p, b)
+			met := newParity(p.Nodes)
+			for _, e := range p.Edges {
+				met.join(e.U, e.V, 0)
+			}
+			first := map[int32]bool{}
+			for i, m := range s.Masks {
+				if r, _ := met.find(int32(i)); !first[r] {
+					first[r] = true
+					if m != 0 {
+						t.Fatalf("node %d is the least of its component, and on mask B: %v", i, s.Masks)
+					}
+				}
+			}
+		}
+	}
+}
+
 // TestBudgetIsKept: work stays near the budget, and elimination tables within the memory, on graphs that would take much more.
 func TestBudgetIsKept(t *testing.T) {
 	p := king(rand.New(rand.NewPCG(21, 22)), 30, 30, 9)

@@ -9,16 +9,16 @@ type improver struct {
 	s        *solver
 	c        *cover
 	of       [][]int32 // per node: clusters that it is in or next to
-	dirty    []bool
-	queue    []int32
-	weight   []int64
+	dirty    []bool    // per cluster: to be solved again
+	queue    []int32   // the dirty ones, and some that are not any more
+	weight   []int64   // of the cluster in hand, in the order of its plan
 	unary    []int64
 	ranked   []uint8
-	inside   []int32 // per node: number of the cluster in hand plus 1
+	inside   []int32 // per node: number of the last cluster solved with it plus 1, or -1 in a kick
 	best     []uint8
-	least    int64
+	least    int64 // energy of best, unlimited before there is one
 	changed  []int32
-	round    uint64
+	round    uint64 // numbers the kicks, from which chance is drawn
 	crossing int64 // work that one crossing may take
 }
 

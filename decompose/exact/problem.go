@@ -26,7 +26,7 @@ type Solution struct {
 	Cost       int64   // of Masks
 	LowerBound int64   // no assignment costs less
 	Proved     bool    // Cost == LowerBound
-	Work       int64   // table entries counted against the budget
+	Work       int64   // counted against the budget; it may pass it by a number of steps linear in the graph
 	Width      int     // largest number of neighbours that a node had when it was eliminated, or at which elimination was given up
 }
 
