@@ -8,6 +8,7 @@ import (
 	"fmt"
 	"html/template"
 	"io"
+	"path"
 	"strings"
 
 	"maskpair/decompose"
@@ -128,14 +129,14 @@ func newPage(r *Report) *page {
 	if name == "" || name == "-" {
 		name = "the layout"
 	}
-	p.Title = "Masks of " + Text(name)
+	p.Title = "Masks of " + Text(path.Base(name))
 	p.Style = template.HTML("<style>" + pageStyle + "</style>")
 	p.Script = template.HTML("<script>" + pageScript + "</script>")
 	p.Policy = fmt.Sprintf("default-src 'none'; style-src '%s'; script-src '%s'; base-uri 'none'; form-action 'none'", hashOf(pageStyle), hashOf(pageScript))
 	p.Defs = hatches
 	p.Unit = r.Rules.Unit
 	p.Caution = Caution
-	m.verdict(Text(name))
+	m.verdict(Text(path.Base(name)))
 	for i := range r.Result.Layers {
 		p.Layers = append(p.Layers, m.layer(&r.Result.Layers[i]))
 	}
@@ -163,7 +164,11 @@ func (m *pageMaker) verdict(name string) {
 	for i := range m.r.Result.Layers {
 		l := &m.r.Result.Layers[i]
 		pairs += l.UnresolvedPairs
-		kinds += len(l.Groups())
+		for _, g := range l.Groups() {
+			if g.Pairs > 0 {
+				kinds++
+			}
+		}
 		waived += l.WaivedPairs
 		near += l.AnyMaskPairs
 		moved += l.MovedShapes
@@ -177,7 +182,7 @@ func (m *pageMaker) verdict(name string) {
 			p.Verdict = fmt.Sprintf("Yes, with what was accepted. All else of %s fits on two masks.", name)
 		}
 	} else {
-		p.Verdict = fmt.Sprintf("No. %s of shapes in %s must be drawn apart, or cut.", count64(pairs, "pair"), name)
+		p.Verdict = fmt.Sprintf("No. %s of near shapes in %s cannot be put on different masks.", count64(pairs, "pair"), name)
 		switch {
 		case kinds == 1:
 			say("There is one kind of place to mend. It has a card below.")

@@ -21,6 +21,8 @@ type card struct {
 	Layer      string
 	Headline   string
 	Times      string
+	Pairs      string // unresolved pairs, of each
+	Size       string // shapes of the component
 	Why        string
 	Steps      []cardStep
 	Closes     string // what happens behind the last step
@@ -29,12 +31,15 @@ type card struct {
 	Closeup    template.HTML
 	Caption    string
 	Gaps       []cardGap
+	GapsMore   string
 	Anchors    []string
 	Mends      []mend
 	Waiver     string
 	Proof      string
 	Cell       string
 	CellAt     string
+	Top        string
+	ChipAt     string
 	Places     []cardPlace
 	PlacesMore string
 	Locator    template.HTML
@@ -66,7 +71,9 @@ type cardGap struct {
 type mend struct {
 	Head  string
 	Lines []string
+	Gaps  []string // to be widened
 	Cuts  []string // boxes
+	After string
 }
 
 // cardPlace is one place of the kind.
@@ -76,8 +83,10 @@ const (
 	placesShown = 25
 	stepsShown  = 24
 	gapsShown   = 24
-	cutsShown   = 8
-	restShown   = 2000
+	// Unresolved pairs off the cycle fill the table up to so many rows.
+	gapsElsewhere = 12
+	cutsShown     = 8
+	restShown     = 2000
 )
 
 // work is a group with its layer, to be sorted over all layers.
@@ -91,7 +100,9 @@ func (m *pageMaker) cards() {
 	var all []work
 	for i := range m.r.Result.Layers {
 		for _, g := range m.r.Result.Layers[i].Groups() {
-			all = append(all, work{i, g})
+			if g.Pairs > 0 { // else a cut or a waiver has settled it
+				all = append(all, work{i, g})
+			}
 		}
 	}
 	sortWork(all)
@@ -105,7 +116,7 @@ func (m *pageMaker) cards() {
 			m.p.RestMax = Count(int64(len(all) - n))
 			break
 		}
-		u := &l.Unresolved[k.group.Members[0]]
+		u := &l.Unresolved[k.group.Shown]
 		m.p.Rest = append(m.p.Rest, restRow{Text(l.Name), whatItIs(u), times(int64(len(k.group.Members))), Count(k.group.Pairs),
 			fmt.Sprintf("%s in %s", m.at(placeOf(u)), Text(u.Top))})
 	}
@@ -152,11 +163,11 @@ func middle(b decompose.Box) decompose.Spot {
 func (m *pageMaker) card(number int, k work) *card {
 	l := &m.r.Result.Layers[k.layer]
 	rules := &m.r.Rules.Layers[k.layer]
-	first := k.group.Members[0]
+	first := k.group.Shown
 	u := &l.Unresolved[first]
 	c := &card{Number: number, ID: anchorID(l.Name) + "-" + strconv.FormatInt(u.Group, 10), Layer: Text(l.Name),
-		Headline: sentence(whatItIs(u)), Times: times(int64(len(k.group.Members))),
-		layer: l, members: k.group.Members}
+		Headline: sentence(whatItIs(u)), Times: m.times(l, k.group),
+		Pairs: Count(int64(len(u.Pairs))), Size: Count(u.Shapes), layer: l, members: k.group.Members}
 	var picture *decompose.Picture
 	if l.Drawing != nil {
 		picture = l.Drawing.Pictures[first]
@@ -164,7 +175,7 @@ func (m *pageMaker) card(number int, k work) *card {
 	m.steps(c, u, picture)
 	m.gaps(c, u, picture, rules)
 	m.mends(c, u, rules)
-	m.places(c, l, k.group)
+	m.places(c, l, u, k.group)
 	m.draw(c, u, picture, l)
 	switch {
 	case u.Proved && u.LowerBound > 0:
@@ -173,6 +184,20 @@ func (m *pageMaker) card(number int, k work) *card {
 		c.Proof = "No choice of masks leaves fewer than " + count(int(u.LowerBound), "pair") + " here; whether this can be reached is open."
 	}
 	return c
+}
+
+// times words how often a kind occurs, and of these, how many need nothing more.
+func (m *pageMaker) times(l *decompose.LayerResult, g decompose.Group) string {
+	settled := 0
+	for _, i := range g.Members {
+		if len(l.Unresolved[i].Pairs) == 0 {
+			settled++
+		}
+	}
+	if settled > 0 {
+		return fmt.Sprintf("%s (%s settled)", times(int64(len(g.Members))), Count(int64(settled)))
+	}
+	return times(int64(len(g.Members)))
 }
 
 // anchorID turns a name into part of a link.
@@ -238,86 +263,66 @@ func (m *pageMaker) distance(sq float64) string {
 	return word + " " + m.r.Rules.Unit
 }
 
-// gaps lists the pairs that stay, then the other gaps of the cycle.
+// gaps lists the gaps of the cycle, those of unresolved pairs first, then unresolved pairs elsewhere.
 func (m *pageMaker) gaps(c *card, u *decompose.Unresolved, picture *decompose.Picture, rules *decompose.LayerRules) {
-	stepOf := map[decompose.Box]int{}
-	for i := range u.Cycle {
-		stepOf[u.Cycle[i].Box] = i + 1
-	}
 	inCycle := map[[2]int]bool{}
+	var elsewhere []cardGap
 	for i := range u.Pairs {
 		p := &u.Pairs[i]
-		a, b := stepOf[p.A], stepOf[p.B]
-		g := cardGap{Label: "outside the picture's cycle", Distance: m.distance(p.DistanceSq), Left: true, From: m.at(p.From), To: m.at(p.To)}
-		if a > 0 && b > 0 {
-			g.Label = fmt.Sprintf("%d – %d", min(a, b), max(a, b))
-			inCycle[[2]int{min(a, b), max(a, b)}] = true
-		}
+		g := cardGap{Label: "elsewhere", Distance: m.distance(p.DistanceSq), Left: true, From: m.at(p.From), To: m.at(p.To)}
 		if p.Widen > 0 {
 			g.Needed = m.length(p.Widen)
 		}
-		if len(c.Gaps) < gapsShown {
+		if a, b := stepsOf(u, p); a > 0 {
+			g.Label = fmt.Sprintf("%d – %d", a, b)
+			inCycle[[2]int{a, b}] = true
+			c.Gaps = append(c.Gaps, g)
+		} else {
+			elsewhere = append(elsewhere, g)
+		}
+	}
+	if picture != nil {
+		for _, k := range picture.Links {
+			a, b := min(k.From, k.To), max(k.From, k.To)
+			if !k.Known || inCycle[[2]int{a, b}] || len(c.Gaps) >= gapsShown {
+				continue
+			}
+			g := cardGap{Label: fmt.Sprintf("%d – %d", a, b), Distance: m.distance(k.DistanceSq), From: m.at(k.At), To: m.at(k.Other)}
+			if short := float64(rules.Spacing) - math.Sqrt(k.DistanceSq); short > 0 {
+				g.Needed = m.length(int64(math.Ceil(short)))
+			}
 			c.Gaps = append(c.Gaps, g)
 		}
 	}
-	if picture == nil {
-		return
-	}
-	for _, k := range picture.Links {
-		a, b := min(k.From, k.To), max(k.From, k.To)
-		if !k.Known || inCycle[[2]int{a, b}] || len(c.Gaps) >= gapsShown {
-			continue
-		}
-		g := cardGap{Label: fmt.Sprintf("%d – %d", a, b), Distance: m.distance(k.DistanceSq), From: m.at(k.At), To: m.at(k.Other)}
-		if short := float64(rules.Spacing) - math.Sqrt(k.DistanceSq); short > 0 {
-			g.Needed = m.length(int64(math.Ceil(short)))
-		}
-		c.Gaps = append(c.Gaps, g)
+	shown := min(len(elsewhere), max(0, gapsElsewhere-len(c.Gaps)))
+	c.Gaps = append(c.Gaps, elsewhere[:shown]...)
+	if more := len(elsewhere) - shown; more > 0 {
+		c.GapsMore = count(more, "more unresolved pair")
 	}
 }
 
 // mends says what would do.
 func (m *pageMaker) mends(c *card, u *decompose.Unresolved, rules *decompose.LayerRules) {
-	if len(u.Pairs) > 0 {
-		w := mend{Head: "Draw apart"}
-		if len(u.Pairs) == 1 {
-			p := &u.Pairs[0]
-			line := fmt.Sprintf("Widen the gap %s: it is %s", m.pairName(c, 0), m.distance(p.DistanceSq))
-			if p.Widen > 0 {
-				line += fmt.Sprintf(" and needs %s more", m.length(p.Widen))
-				c.Short = "widen a gap by " + m.length(p.Widen)
-			}
-			w.Lines = append(w.Lines, line+". All other pairs are on different masks then, as long as nothing new comes too near.")
-		} else {
-			w.Lines = append(w.Lines, fmt.Sprintf("Widen all %d gaps that the table marks. All other pairs are on different masks then, as long as nothing new comes too near.", len(u.Pairs)))
-			c.Short = fmt.Sprintf("widen %d gaps", len(u.Pairs))
-		}
-		if u.Cause == decompose.OddCycle {
-			w.Lines = append(w.Lines, "Another gap of the cycle does as well, where no other odd cycle runs past it.")
-		}
-		c.Mends = append(c.Mends, w)
-	}
+	m.drawApart(c, u)
 	if u.Cause == decompose.OrderClash {
-		w := mend{Head: "Take back an order", Lines: []string{"Drop or turn one of the anchors at the ends of the path:"}}
-		w.Lines = append(w.Lines, c.Anchors...)
-		if len(c.Anchors) == 0 {
-			w.Lines = []string{"Drop or turn one of the anchors or ties at the ends of the path."}
-		}
+		w := mend{Head: "Take back an order", Lines: []string{"Drop or turn one of the anchors or ties that hold the first and the last shape."}}
 		c.Mends = append([]mend{w}, c.Mends...)
 		c.Short = "take back an anchor"
 	}
 	switch {
 	case len(u.LeastStitches) > 0:
 		w := mend{Head: "Cut"}
-		w.Lines = append(w.Lines, fmt.Sprintf("%s of one shape into two overlapping pieces, on both masks: verified, with the cut nothing stays here. Overlap:", sentence(count(len(u.LeastStitches), "cut"))))
-		if len(u.LeastStitches) > 1 {
-			w.Lines[0] = fmt.Sprintf("%s, each of one shape into two overlapping pieces on both masks: verified, with all of them nothing stays here. Overlaps:", sentence(count(len(u.LeastStitches), "cut")))
+		if len(u.LeastStitches) == 1 {
+			w.Lines = append(w.Lines, "One cut does it: a shape becomes two pieces on both masks, which overlap here:")
+		} else {
+			w.Lines = append(w.Lines, fmt.Sprintf("%s do it together; each makes two pieces of a shape, on both masks, which overlap here:", sentence(count(len(u.LeastStitches), "cut"))))
 		}
 		for _, i := range u.LeastStitches[:min(len(u.LeastStitches), cutsShown)] {
 			w.Cuts = append(w.Cuts, m.box(u.Candidates[i].Box))
 		}
+		w.After = "This was verified by solving again with the cut."
 		if rules.Stitch != nil && !rules.Stitch.Apply {
-			w.Lines = append(w.Lines, "apply = true under [layer.stitch] in the deck makes the program cut there.")
+			w.After += " With apply = true under [layer.stitch] in the deck the program cuts there."
 		}
 		c.Mends = append([]mend{w}, c.Mends...)
 		c.Short = count(len(u.LeastStitches), "cut")
@@ -329,12 +334,79 @@ func (m *pageMaker) mends(c *card, u *decompose.Unresolved, rules *decompose.Lay
 	m.waiver(c, u)
 }
 
-// pairName names a pair of the card as the picture does.
-func (m *pageMaker) pairName(c *card, i int) string {
-	if i < len(c.Gaps) && strings.Contains(c.Gaps[i].Label, "–") {
-		return c.Gaps[i].Label
+// widenShown is how many gaps to be widened a card names.
+const widenShown = 6
+
+// drawApart says which gaps to widen: those that lack least in total, where that is known, else those of the pairs that are
+// unresolved.
+func (m *pageMaker) drawApart(c *card, u *decompose.Unresolved) {
+	gaps, least := u.Repair, true
+	if len(gaps) == 0 {
+		gaps, least = u.Pairs, false
 	}
-	return "at " + c.Gaps[i].From
+	if len(gaps) == 0 {
+		return
+	}
+	total := int64(0)
+	for i := range gaps {
+		total += gaps[i].Widen
+	}
+	w := mend{Head: "Draw apart"}
+	list := func(p *decompose.Pair) string {
+		line := fmt.Sprintf("%s: it is %s", m.pairName(u, p), m.distance(p.DistanceSq))
+		if p.Widen > 0 {
+			line += fmt.Sprintf(" and needs %s more", m.length(p.Widen))
+		}
+		return line + "."
+	}
+	if len(gaps) == 1 {
+		w.Lines = append(w.Lines, "Widen the gap "+list(&gaps[0]))
+	} else {
+		line := fmt.Sprintf("Widen %s gaps", Count(int64(len(gaps))))
+		if total > 0 {
+			line += fmt.Sprintf(", by %s in all", m.length(total))
+		}
+		w.Lines = append(w.Lines, line+":")
+		for i := range gaps[:min(len(gaps), widenShown)] {
+			w.Gaps = append(w.Gaps, list(&gaps[i]))
+		}
+		if more := len(gaps) - widenShown; more > 0 {
+			w.Gaps = append(w.Gaps, count(more, "more gap")+", in report.json.")
+		}
+	}
+	after := "Nothing is unresolved here then, as long as nothing new comes too near."
+	if least {
+		after = "Nothing is unresolved here then, as long as nothing new comes too near. No other choice of gaps lacks less in all."
+	}
+	w.After = after
+	c.Mends = append(c.Mends, w)
+	if total > 0 {
+		c.Short = fmt.Sprintf("widen %s by %s", count(len(gaps), "gap"), m.length(total))
+	}
+}
+
+// pairName names a pair as the drawing does, or by its place.
+func (m *pageMaker) pairName(u *decompose.Unresolved, p *decompose.Pair) string {
+	if a, b := stepsOf(u, p); a > 0 {
+		return fmt.Sprintf("%d – %d", a, b)
+	}
+	return fmt.Sprintf("from (%s) to (%s)", m.at(p.From), m.at(p.To))
+}
+
+// stepsOf gives the places in the cycle of the shapes of a pair, the lower first; 0 where they are not in it.
+func stepsOf(u *decompose.Unresolved, p *decompose.Pair) (a, b int) {
+	for i := range u.Cycle {
+		switch u.Cycle[i].Box {
+		case p.A:
+			a = i + 1
+		case p.B:
+			b = i + 1
+		}
+	}
+	if a == 0 || b == 0 {
+		return 0, 0
+	}
+	return min(a, b), max(a, b)
 }
 
 // waiver writes the entry of the anchor file that accepts the first pair.
@@ -350,9 +422,9 @@ func (m *pageMaker) waiver(c *card, u *decompose.Unresolved) {
 }
 
 // places lists where the kind occurs.
-func (m *pageMaker) places(c *card, l *decompose.LayerResult, g decompose.Group) {
-	first := &l.Unresolved[g.Members[0]]
+func (m *pageMaker) places(c *card, l *decompose.LayerResult, first *decompose.Unresolved, g decompose.Group) {
 	c.Cell, c.CellAt = Text(first.Cell), m.at(first.CellPlace)
+	c.Top, c.ChipAt = Text(first.Top), m.at(placeOf(first))
 	for _, i := range g.Members[:min(len(g.Members), placesShown)] {
 		u := &l.Unresolved[i]
 		c.Places = append(c.Places, cardPlace{Text(u.Top), m.at(placeOf(u)), Text(u.Cell), m.at(u.CellPlace), m.placed(u.CellTransform)})

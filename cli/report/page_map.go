@@ -29,6 +29,8 @@ type mapPanel struct {
 const (
 	mapSide = 232 // pixels of the longer side, about
 	levels  = 8   // sizes of a mark
+	// fewRings is how many rings a map may have before they shrink to their tiles.
+	fewRings = 40
 )
 
 // maps draws the maps of all layers, as many as the page holds.
@@ -52,7 +54,7 @@ func (m *pageMaker) mapOf(layer int, l *decompose.LayerResult, t *decompose.Tile
 		Extent: fmt.Sprintf("(%s) to (%s) %s", m.at(decompose.Spot{X: t.Box.X1, Y: t.Box.Y1}), m.at(decompose.Spot{X: t.Box.X2, Y: t.Box.Y2}), m.r.Rules.Unit)}
 	g := grid{t: t, tile: max(3, mapSide/max(t.NX, t.NY))}
 	v.Panels = append(v.Panels, m.unresolvedMap(g, l), g.density(), g.balance())
-	if l.BaselineShapes > 0 {
+	if l.MovedShapes > 0 {
 		v.Panels = append(v.Panels, g.moved())
 	}
 	return v
@@ -168,7 +170,7 @@ func (g grid) moved() mapPanel {
 	return mapPanel{"Where shapes moved", note, g.svg("Map of moved shapes", b.String())}
 }
 
-// unresolvedMap shows where pairs stay on one mask; a mark leads to the card of what is worst there.
+// unresolvedMap shows where pairs are unresolved; a mark leads to the card of what is worst there.
 func (m *pageMaker) unresolvedMap(g grid, l *decompose.LayerResult) mapPanel {
 	cardAt := map[*decompose.Tile]*card{}
 	for _, c := range m.p.Cards {
@@ -186,10 +188,17 @@ func (m *pageMaker) unresolvedMap(g grid, l *decompose.LayerResult) mapPanel {
 		}
 	}
 	var b strings.Builder
-	total, most := 0, 1
+	total, most, some := 0, 1, 0
 	for i := range g.t.Tiles {
-		total += g.t.Tiles[i].Unresolved
-		most = max(most, g.t.Tiles[i].Unresolved)
+		n := g.t.Tiles[i].Unresolved
+		total += n
+		most = max(most, n)
+		some += min(n, 1)
+	}
+	// A few rings may be larger than their tiles; many would hide each other.
+	least, room := 3.0, 6.0
+	if some > fewRings {
+		least, room = float64(g.tile)*0.12, float64(g.tile)*0.3
 	}
 	for y := range g.t.NY {
 		for x := range g.t.NX {
@@ -198,8 +207,8 @@ func (m *pageMaker) unresolvedMap(g grid, l *decompose.LayerResult) mapPanel {
 				continue
 			}
 			cx, cy := g.centre(x, y)
-			r := 3 + 6*math.Sqrt(float64(t.Unresolved)/float64(most))
-			ring := fmt.Sprintf(`<circle class="stays" cx="%s" cy="%s" r="%s"><title>%s</title></circle>`, half(cx), half(cy), px(r), count(t.Unresolved, "pair"))
+			r := least + room*math.Sqrt(float64(t.Unresolved)/float64(most))
+			ring := fmt.Sprintf(`<circle class="unresolved" cx="%s" cy="%s" r="%s"><title>%s</title></circle>`, half(cx), half(cy), px(r), count(t.Unresolved, "pair"))
 			if c := cardAt[t]; c != nil {
 				ring = fmt.Sprintf(`<a href="#%s" tabindex="-1">%s</a>`, c.ID, ring)
 			}
@@ -208,7 +217,7 @@ func (m *pageMaker) unresolvedMap(g grid, l *decompose.LayerResult) mapPanel {
 	}
 	note := "Nothing is unresolved here."
 	if total > 0 {
-		note = "A ring where pairs stay on one mask; larger for more. A ring leads to its card."
+		note = "A ring where pairs are unresolved; larger for more. A ring leads to its card."
 	}
 	return mapPanel{"Where to mend", note, g.svg("Map of unresolved pairs", b.String())}
 }

@@ -22,11 +22,13 @@ const hatches = template.HTML(`<svg class="defs" width="0" height="0" aria-hidde
 	`</defs></svg>`)
 
 const (
-	pictureWidth, pictureHeight = 640.0, 440.0
+	pictureWidth, pictureHeight = 550.0, 420.0
 	closeupWidth, closeupHeight = 300.0, 220.0
 	beadRadius                  = 11.0
 	// A gap that is shorter than this in the drawing, in pixels, gets a close-up.
 	shortGap = 9.0
+	// A number stands so far from a gap, in pixels, where there is room.
+	clearOfGap = 34.0
 	// mostCorners is how many corners a drawn shape may have; others are drawn as their box.
 	mostCorners = 1500
 )
@@ -46,7 +48,7 @@ func (d *drawer) picture(title string) template.HTML {
 	return d.svg(d.p.Window, pictureWidth, pictureHeight, title, "picture")
 }
 
-// closeup draws the first pair that stays, where it is too small in the picture; "" where it is not.
+// closeup draws the first unresolved pair, where it is too small in the picture; "" where it is not.
 func (d *drawer) closeup() template.HTML {
 	if len(d.u.Pairs) == 0 || d.scale == 0 {
 		return ""
@@ -59,7 +61,7 @@ func (d *drawer) closeup() template.HTML {
 	side := int64(3*gap) + 8
 	at := middle(decompose.Box{X1: min(p.From.X, p.To.X), Y1: min(p.From.Y, p.To.Y), X2: max(p.From.X, p.To.X), Y2: max(p.From.Y, p.To.Y)})
 	window := decompose.Box{X1: at.X - side*4/3, Y1: at.Y - side, X2: at.X + side*4/3, Y2: at.Y + side}
-	return d.svg(window, closeupWidth, closeupHeight, "Close-up of the first pair that stays on one mask", "closeup")
+	return d.svg(window, closeupWidth, closeupHeight, "Close-up of the first unresolved pair", "closeup")
 }
 
 // svg draws a window.
@@ -299,32 +301,55 @@ func (d *drawer) size(sq float64) string {
 	return strings.TrimRight(strings.TrimRight(word, "0"), ".")
 }
 
-// beadPlace chooses a place inside a shape for its number: between where the way comes in and goes out, if that is inside.
+// beadPlace chooses a place inside a shape for its number: one with room around from which the way in and the way out stay inside,
+// as near to both as can be. Between them is tried first, then a grid over what is seen of the shape.
 func (d *drawer) beadPlace(s *decompose.PictureShape, in, out *decompose.Spot) decompose.Spot {
 	w := d.window
 	seen := decompose.Box{X1: max(s.Box.X1, w.X1), Y1: max(s.Box.Y1, w.Y1), X2: min(s.Box.X2, w.X2), Y2: min(s.Box.Y2, w.Y2)}
-	centre := middle(seen)
-	var tries []decompose.Spot
-	switch {
-	case in != nil && out != nil:
-		tries = append(tries, decompose.Spot{X: (in.X + out.X) / 2, Y: (in.Y + out.Y) / 2}, decompose.Spot{X: in.X, Y: out.Y}, decompose.Spot{X: out.X, Y: in.Y},
-			decompose.Spot{X: (in.X + out.X) / 2, Y: centre.Y}, decompose.Spot{X: centre.X, Y: (in.Y + out.Y) / 2})
-	case in != nil:
-		tries = append(tries, decompose.Spot{X: in.X, Y: centre.Y}, decompose.Spot{X: centre.X, Y: in.Y})
-	case out != nil:
-		tries = append(tries, decompose.Spot{X: out.X, Y: centre.Y}, decompose.Spot{X: centre.X, Y: out.Y})
-	}
-	tries = append(tries, centre)
-	best, room := tries[0], -1.0
-	for _, t := range tries {
-		if r := roomIn(s, t); r > room+1e-9 {
-			best, room = t, r
+	var ends []decompose.Spot
+	for _, end := range []*decompose.Spot{in, out} {
+		if end != nil {
+			ends = append(ends, *end)
 		}
-		if room*d.scale > beadRadius/2 {
-			break
+	}
+	best, most := middle(seen), math.Inf(-1)
+	offer := func(at decompose.Spot) {
+		room := roomIn(s, at) * d.scale
+		if room < 0 {
+			return
+		}
+		value := math.Min(room, beadRadius+2)
+		for _, end := range ends {
+			far := d.scale * math.Hypot(float64(at.X-end.X), float64(at.Y-end.Y))
+			value -= 24*outsideShare(s, at, end) + 0.015*far + 0.5*math.Max(0, clearOfGap-far)
+		}
+		if value > most {
+			best, most = at, value
+		}
+	}
+	if len(ends) == 2 {
+		offer(decompose.Spot{X: (ends[0].X + ends[1].X) / 2, Y: (ends[0].Y + ends[1].Y) / 2})
+	}
+	const steps = 24
+	for i := range int64(steps) {
+		for k := range int64(steps) {
+			offer(decompose.Spot{X: seen.X1 + (seen.X2-seen.X1)*(2*i+1)/(2*steps), Y: seen.Y1 + (seen.Y2-seen.Y1)*(2*k+1)/(2*steps)})
 		}
 	}
 	return best
+}
+
+// outsideShare gives how much of the way between two points lies outside a shape.
+func outsideShare(s *decompose.PictureShape, a, b decompose.Spot) float64 {
+	const steps = 8
+	outside := 0
+	for i := range int64(steps) {
+		at := decompose.Spot{X: a.X + (b.X-a.X)*(2*i+1)/(2*steps), Y: a.Y + (b.Y-a.Y)*(2*i+1)/(2*steps)}
+		if roomIn(s, at) < 0 {
+			outside++
+		}
+	}
+	return float64(outside) / steps
 }
 
 // roomIn gives how far a point inside a shape is from the nearest side of the outline that it is in; below 0 outside.
@@ -372,7 +397,7 @@ func (d *drawer) bead(step int, n *bead) {
 
 // pin draws what says that an anchor holds a shape: a frame standing on a corner.
 func (d *drawer) pin(x, y float64, mask decompose.Mask) {
-	const r = 20
+	const r = 18
 	fmt.Fprintf(&d.b, `<path class="pin" d="M%s %sl%d %dl-%d %dl-%d -%dz"><title>held on %s by an anchor</title></path>`, px(x), px(y-r), r, r, r, r, r, r, mask)
 }
 
@@ -408,7 +433,7 @@ func (d *drawer) caption() string {
 		}
 	}
 	if known < len(d.p.Links) && known > 0 {
-		parts = append(parts, fmt.Sprintf("The cycle has %d shapes; drawn are those around a pair that stays.", len(d.u.Cycle)))
+		parts = append(parts, fmt.Sprintf("The cycle has %d shapes; drawn are those around an unresolved pair.", len(d.u.Cycle)))
 	}
 	if d.p.More > 0 {
 		parts = append(parts, count(d.p.More, "more shape")+" around not drawn.")
