@@ -19,7 +19,7 @@ type improver struct {
 	least    int64 // energy of best, unlimited before there is one
 	changed  []int32
 	round    uint64 // numbers the kicks, from which chance is drawn
-	crossing int64 // work that one crossing may take
+	crossing int64  // work that one crossing may take
 }
 
 func newImprover(s *solver, g *graph) *improver {
