@@ -54,6 +54,7 @@ type drawing struct {
 	lib     *gds.Library
 	layers  []Layer
 	tops    []int32
+	loose   int // structures that nothing places
 	figures []figure
 	placed  []placement
 	shapes  int
@@ -78,6 +79,11 @@ func interest(layers []Layer) gds.Interest {
 
 // flatten reads a stream. Figures under odd placements are left out.
 func flatten(stream []byte, layers []Layer) (*drawing, error) {
+	return flattenUnder(stream, layers, false)
+}
+
+// flattenUnder also takes every structure for a top, where all is true.
+func flattenUnder(stream []byte, layers []Layer, all bool) (*drawing, error) {
 	lib, err := gds.Index(bytes.NewReader(stream), int64(len(stream)), interest(layers), nil)
 	if err != nil {
 		return nil, err
@@ -91,6 +97,9 @@ func flatten(stream []byte, layers []Layer) (*drawing, error) {
 	}
 	for s := range lib.Structures {
 		if !placed[s] {
+			d.loose++
+		}
+		if !placed[s] || all {
 			d.tops = append(d.tops, int32(s))
 		}
 	}
@@ -183,7 +192,7 @@ func (d *drawing) join() {
 		return i
 	}
 	for _, l := range d.layers {
-		d.step = max(d.step, 8*l.Spacing)
+		d.step = max(d.step, 8*l.Spacing, 64)
 	}
 	type key struct {
 		layer, top int32
