@@ -150,7 +150,7 @@ func (c *compared) left(i int) uint64 {
 func (c *compared) layer(i int, rules *Rules, res *LayerComparison, gone bool) error {
 	// Shapes are what hangs together on both masks; spacings do not matter.
 	plain := rules.Layers[i]
-	plain.Spacing, plain.AnyMask, plain.ByFacing, plain.Stitch, plain.Redo = 1, 0, nil, nil, true
+	plain.Spacing, plain.AnyMask, plain.ByFacing, plain.Stitch, plain.Redo, plain.SameShapeReport = 1, 0, nil, nil, true, false
 	want := &sought{baseline: c.other, wantSame: !gone}
 	want.masks[A], _ = c.classes.selectRole(i, roleMaskA, onA)
 	want.masks[B], _ = c.classes.selectRole(i, roleMaskB, onB)

@@ -453,6 +453,7 @@ func (e *explainer) pair(b *brokenGroup, p *componentPart, x int, top string) Pa
 	u, v := b.nodes[p.nodes[ed.U]], b.nodes[p.nodes[ed.V]]
 	out := e.pairOf(b, p.source[x], u, v, top)
 	out.Mask = Mask(p.masks[ed.U])
+	out.MaskB = out.Mask
 	return out
 }
 

@@ -34,8 +34,9 @@ type layout struct {
 	cuts    *cuts               // nil: no shape of the layer can be cut
 	hits    []hit               // what looks for shapes, and the flat figures it touches
 	look    *lookout
-	memory  *memory   // nil: no baseline
-	far     []farPair // pairs within the largest spacing that no rule makes near, as far as anything asks for them
+	memory  *memory     // nil: no baseline
+	far     []farPair   // pairs within the largest spacing that no rule makes near, as far as anything asks for them
+	self    []selfPlace // where shapes come near to themselves, where the deck asks for it
 }
 
 // builder flattens and searches a deck layer. Its arrays are reused from top to top.
@@ -124,6 +125,9 @@ func newLayout(ctx context.Context, h *hierarchy, sel *selection, rules *LayerRu
 	opt.stage("pairs")
 	l.near = gather(b.sinks, l.nodeOf.Data, l.nodes, l.given)
 	if err := l.judgeFacing(ctx, b.kept, opt.jobs()); err != nil {
+		return nil, err
+	}
+	if err := l.findSameShape(ctx, b.kept, opt.jobs()); err != nil {
 		return nil, err
 	}
 	return l, nil
@@ -222,7 +226,7 @@ func (b *builder) top(top int, sets union, shapes uint32) (uint32, error) {
 		b.measure(begin, shapes)
 	}
 	b.measureSlanted(top)
-	if len(windows) == 1 && b.l.judgedRules() != nil {
+	if len(windows) == 1 && (b.l.judgedRules() != nil || b.l.rules.SameShapeReport) {
 		b.keepRects(begin, shapes, windows[0])
 	}
 	if err := b.recall(top, begin, shapes, windows); err != nil {

@@ -51,7 +51,8 @@ type LayerResult struct {
 	Wishes, WishesKept   int64
 	Unresolved           []Unresolved // one per unresolved component, by place
 	Waived               []WaivedPair
-	AnyMask              []Pair
+	AnyMask              []Pair           // nearer than any_mask_spacing
+	SameShape            []SameShapePlace // where the deck asks for it: what no mask can help
 	Moved                []MovedShape
 	Frozen               []FrozenFault // where a mask that is already made does not allow what is drawn
 	Drawing              *Drawing      // nil: not asked for
@@ -115,7 +116,8 @@ type Pair struct {
 	EdgeA      Edge    // the edge of A that the rule looks at, where it is one by what faces what; both ends are one point at a corner
 	EdgeB      Edge    // of B
 	Top        string
-	Mask       Mask
+	Mask       Mask // of A; an unresolved pair is on one mask
+	MaskB      Mask // of B
 }
 
 // WaivedPair is an unresolved pair that the user accepts.

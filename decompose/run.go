@@ -156,6 +156,14 @@ func (r *Run) layer(ctx context.Context, i int, orders Orderer) error {
 		return err
 	}
 	res.MovedShapes = int64(len(res.Moved))
+	if res.AnyMask, err = l.anyMaskPairs(ctx, a.mask.Data, r.opt.jobs()); err != nil {
+		return err
+	}
+	if n := l.near.tooNear; n > 0 {
+		r.warn("layer %s: %d pairs of shapes are nearer to each other than any_mask_spacing (%s), which no masks can mend; they are listed under any_mask in the report",
+			rules.Name, n, r.rules.Length(float64(rules.AnyMask)))
+	}
+	res.SameShape = l.sameShape()
 	if res.Frozen, err = l.frozenFaults(ctx, a, o, v); err != nil {
 		return err
 	}

@@ -109,8 +109,14 @@ func (j *jsonWriter) layer(l *decompose.LayerResult) {
 		for i := range l.AnyMask {
 			j.inline(func() {
 				j.pair(&l.AnyMask[i])
+				j.key("mask_b").str(l.AnyMask[i].MaskB.String())
 				j.key("top").str(l.AnyMask[i].Top)
 			})
+		}
+	})
+	j.key("same_shape").list(func() {
+		for i := range l.SameShape {
+			j.inline(func() { j.sameShape(&l.SameShape[i]) })
 		}
 	})
 	j.key("moved").list(func() {
@@ -196,7 +202,40 @@ func (j *jsonWriter) pair(p *decompose.Pair) {
 	j.key("to").spot(p.To)
 	j.key("widen_dbu").integer(p.Widen)
 	j.key("rule").str(p.Rule)
+	j.key("spacing_dbu").integer(p.Spacing)
+	j.key("edge_a").edge(p.EdgeA)
+	j.key("edge_b").edge(p.EdgeB)
 	j.key("mask").str(p.Mask.String())
+}
+
+// sameShape writes the entries of a place where a shape is too near to itself.
+func (j *jsonWriter) sameShape(p *decompose.SameShapePlace) {
+	kind := "gap"
+	if p.Notch {
+		kind = "notch"
+	}
+	j.key("kind").str(kind)
+	j.key("top").str(p.Top)
+	j.key("box").box(p.Box)
+	j.key("edge_a").edge(p.EdgeA)
+	j.key("edge_b").edge(p.EdgeB)
+	j.key("distance_sq_dbu2").number(p.DistanceSq)
+	j.key("from").spot(p.From)
+	j.key("to").spot(p.To)
+	j.key("widen_dbu").integer(p.Widen)
+}
+
+// edge writes the ends of an edge, or an empty list where no edge is told.
+func (j *jsonWriter) edge(e decompose.Edge) {
+	j.row(func() {
+		if e == (decompose.Edge{}) {
+			return
+		}
+		for _, s := range e {
+			j.half(s.X)
+			j.half(s.Y)
+		}
+	})
 }
 
 func (j *jsonWriter) box(b decompose.Box) {

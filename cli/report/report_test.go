@@ -19,7 +19,8 @@ func sample() *Report {
 	box := decompose.Box{X1: -21, Y1: 0, X2: 40, Y2: 81} // half units
 	pair := decompose.Pair{
 		A: box, B: decompose.Box{X1: 60, Y1: 0, X2: 80, Y2: 80}, DistanceSq: 100.25,
-		From: decompose.Spot{X: 40, Y: 1}, To: decompose.Spot{X: 60, Y: 1}, Widen: 26, Rule: "same_mask_spacing", Top: "chip", Mask: decompose.B,
+		From: decompose.Spot{X: 40, Y: 1}, To: decompose.Spot{X: 60, Y: 1}, Widen: 26, Rule: "tip_to_tip", Spacing: 36,
+		EdgeA: decompose.Edge{{X: 40, Y: 0}, {X: 40, Y: 81}}, EdgeB: decompose.Edge{{X: 60, Y: 0}, {X: 60, Y: 80}}, Top: "chip", Mask: decompose.B,
 	}
 	return &Report{
 		Input: Input{Name: "chip.gds", SHA256: "ab12", Bytes: 4096, DBU: 1e-9, Tops: []string{"chip", "na\"me", "caf\xe9"}},
@@ -136,7 +137,7 @@ func TestJSONValues(t *testing.T) {
 	}
 	box := []any{-10.5, 0.0, 20.0, 40.5} // -21, 0, 40, 81 halves
 	pair := map[string]any{"a": box, "b": []any{30.0, 0.0, 40.0, 40.0}, "distance_sq_dbu2": 100.25, "from": []any{20.0, 0.5}, "to": []any{30.0, 0.5},
-		"widen_dbu": 26.0, "rule": "same_mask_spacing", "mask": "B"}
+		"widen_dbu": 26.0, "rule": "tip_to_tip", "spacing_dbu": 36.0, "edge_a": []any{20.0, 0.0, 20.0, 40.5}, "edge_b": []any{30.0, 0.0, 30.0, 40.0}, "mask": "B"}
 	want := map[string]any{
 		"top": "chip", "component": 17.0, "shapes": 5.0, "cause": "odd_cycle", "repair": []any{},
 		"cycle": []any{map[string]any{"box": box, "mask": "A"}, map[string]any{"box": box, "mask": "B"}, map[string]any{"box": box, "mask": "B"}},

@@ -92,6 +92,7 @@ func (s *summary) table() {
 		tally("  waived", false, func(l *decompose.LayerResult) int64 { return l.WaivedPairs }),
 		tally("stitches", false, func(l *decompose.LayerResult) int64 { return l.Stitches }),
 		tally("too near on any masks", false, func(l *decompose.LayerResult) int64 { return l.AnyMaskPairs }),
+		tally("notches and gaps in shapes", false, func(l *decompose.LayerResult) int64 { return int64(len(l.SameShape)) }),
 		{"wishes kept", false, func(l *decompose.LayerResult) string {
 			if l.Wishes == 0 {
 				return "0"
@@ -171,6 +172,9 @@ func (s *summary) group(u *decompose.Unresolved, occurs int64) {
 		line := fmt.Sprintf("      %s: from (%s) to (%s) in top %s, on mask %v", first, s.place(p.From), s.place(p.To), Text(u.Top), p.Mask)
 		if p.Widen > 0 {
 			line += "; widen the gap by " + s.r.Rules.Length(float64(p.Widen))
+		}
+		if p.EdgeA != (decompose.Edge{}) {
+			line += fmt.Sprintf(" (%s %s)", p.Rule, s.r.Rules.Length(float64(p.Spacing)))
 		}
 		s.line("%s", line)
 	}
