@@ -64,6 +64,14 @@ type WaiverEntry struct {
 // ParseFile reads an anchor file; name is the file's, for messages. Layers are looked up in the rules, coordinates are in the
 // deck's unit. Whatever is wrong is a *decompose.DeckError.
 func ParseFile(name string, data []byte, rules *decompose.Rules) (*File, error) {
+	if file, ok := readPlain(name, data, rules); ok {
+		return file, nil
+	}
+	return readAny(name, data, rules)
+}
+
+// readAny reads any anchor file.
+func readAny(name string, data []byte, rules *decompose.Rules) (*File, error) {
 	root, err := decompose.ReadText(name, data)
 	if err != nil {
 		return nil, err
