@@ -30,12 +30,10 @@ var pageScript string
 const (
 	// PageCards is how many kinds of unresolved components have a card; the others are listed.
 	PageCards = 200
-	// rowsShown is how many rows a table of single things has.
-	rowsShown = 200
 	// mapsShown is how many maps the page has, over all layers and tops.
 	mapsShown = 12
 	// pictureBytes is how much drawings may take altogether, so that the page stays below 5 MB; cards beyond have none.
-	pictureBytes = 2 << 20
+	pictureBytes = 3 << 19
 )
 
 // WritePage writes the report as a page. Pictures and maps are there as far as the result was asked for drawings.
@@ -67,9 +65,7 @@ type page struct {
 	Cards   []*card
 	Rest    []restRow
 	RestMax string // how many more kinds are not even listed; "" none
-	Moved   movedTable
-	Waived  waivedTable
-	AnyMask anyMaskTable
+	Lists   []listing
 	Input   []fact
 	Caution string
 }
@@ -92,28 +88,8 @@ type layerRow struct {
 // restRow is a kind of unresolved component that has no card.
 type restRow struct{ Layer, What, Times, Pairs, Where string }
 
-type movedRow struct{ Layer, Top, Was, Now, Why, Box string }
-type movedTable struct {
-	Rows  []movedRow
-	Total string
-	More  string
-	Known string
-}
-
-type waivedRow struct{ Layer, Top, Name, Reason, Gap, From, To string }
-type waivedTable struct {
-	Rows        []waivedRow
-	Total, More string
-}
-
-type anyMaskRow struct{ Layer, Top, Gap, From, To string }
-type anyMaskTable struct {
-	Rows        []anyMaskRow
-	Total, More string
-}
-
 // Caution is what every reader of a result must know.
-const Caution = "This is not a sign-off. Verify the result with the foundry's qualified flow and rules before any mask is made."
+const Caution = "The result is not a sign-off: verify it with the foundry's qualified flow and rules before any mask is made."
 
 // pageMaker makes a page.
 type pageMaker struct {
@@ -142,9 +118,7 @@ func newPage(r *Report) *page {
 	}
 	m.cards()
 	m.maps()
-	m.moved()
-	m.waived()
-	m.anyMask()
+	m.lists()
 	p.Warned = r.Warnings
 	m.input()
 	return p
@@ -174,14 +148,18 @@ func (m *pageMaker) verdict(name string) {
 		moved += l.MovedShapes
 		proved = proved && l.ProvedOptimal
 	}
-	p.Fits = pairs == 0
+	frozen := m.r.FrozenFaults()
+	p.Fits = pairs == 0 && frozen == 0
 	say := func(form string, args ...any) { p.Lead = append(p.Lead, fmt.Sprintf(form, args...)) }
-	if p.Fits {
+	switch {
+	case p.Fits:
 		p.Verdict = fmt.Sprintf("Yes. All of %s fits on two masks.", name)
 		if waived > 0 {
 			p.Verdict = fmt.Sprintf("Yes, with what was accepted. All else of %s fits on two masks.", name)
 		}
-	} else {
+	case pairs == 0:
+		p.Verdict = fmt.Sprintf("No. In %s of %s a mask that is already made does not allow what is drawn.", count64(frozen, "place"), name)
+	default:
 		p.Verdict = fmt.Sprintf("No. %s of near shapes in %s cannot be put on different masks.", count64(pairs, "pair"), name)
 		switch {
 		case kinds == 1:
@@ -194,6 +172,9 @@ func (m *pageMaker) verdict(name string) {
 		} else {
 			say("Whether some choice of masks leaves fewer is not proved for every layer; the layers say how far it is.")
 		}
+	}
+	if frozen > 0 && pairs > 0 {
+		say("In %s a mask that is already made does not allow what is drawn.", count64(frozen, "place"))
 	}
 	if waived > 0 {
 		say("%s accepted by a waiver.", isAre(waived, "pair"))
@@ -284,68 +265,6 @@ func shareOf(a, b float64) string {
 		return ""
 	}
 	return fmt.Sprintf("%.1f %% on A", 100*a/(a+b))
-}
-
-// moved lists the moved shapes.
-func (m *pageMaker) moved() {
-	t := &m.p.Moved
-	total, known := int64(0), int64(0)
-	for i := range m.r.Result.Layers {
-		l := &m.r.Result.Layers[i]
-		total += l.MovedShapes
-		known += l.BaselineShapes
-		for _, s := range l.Moved {
-			if len(t.Rows) < rowsShown {
-				t.Rows = append(t.Rows, movedRow{Text(l.Name), Text(s.Top), s.Was.String(), s.Now.String(), s.Why, m.box(s.Box)})
-			}
-		}
-	}
-	if known > 0 {
-		t.Known, t.Total = Count(known), Count(total)
-	}
-	if more := total - int64(len(t.Rows)); more > 0 {
-		t.More = Count(more)
-	}
-}
-
-// waived lists the pairs that the user accepts.
-func (m *pageMaker) waived() {
-	t := &m.p.Waived
-	total := 0
-	for i := range m.r.Result.Layers {
-		l := &m.r.Result.Layers[i]
-		total += len(l.Waived)
-		for k := range l.Waived {
-			p := &l.Waived[k]
-			if len(t.Rows) < rowsShown {
-				t.Rows = append(t.Rows, waivedRow{Text(l.Name), Text(p.Top), Text(p.Name), Text(p.Reason), m.distance(p.DistanceSq), m.at(p.From), m.at(p.To)})
-			}
-		}
-	}
-	t.Total = Count(int64(total))
-	if more := total - len(t.Rows); more > 0 {
-		t.More = Count(int64(more))
-	}
-}
-
-// anyMask lists the pairs that are too near whatever the masks.
-func (m *pageMaker) anyMask() {
-	t := &m.p.AnyMask
-	total := int64(0)
-	for i := range m.r.Result.Layers {
-		l := &m.r.Result.Layers[i]
-		total += l.AnyMaskPairs
-		for k := range l.AnyMask {
-			p := &l.AnyMask[k]
-			if len(t.Rows) < rowsShown {
-				t.Rows = append(t.Rows, anyMaskRow{Text(l.Name), Text(p.Top), m.distance(p.DistanceSq), m.at(p.From), m.at(p.To)})
-			}
-		}
-	}
-	t.Total = Count(total)
-	if more := total - int64(len(t.Rows)); more > 0 {
-		t.More = Count(more)
-	}
 }
 
 // input tells what was read and by what.

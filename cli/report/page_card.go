@@ -81,12 +81,12 @@ type cardPlace struct{ Top, Chip, Cell, CellAt, Placed string }
 
 const (
 	placesShown = 25
-	stepsShown  = 24
-	gapsShown   = 24
+	stepsShown  = 20
+	gapsShown   = 16
 	// Unresolved pairs off the cycle fill the table up to so many rows.
 	gapsElsewhere = 12
 	cutsShown     = 8
-	restShown     = 2000
+	restShown     = 1000
 )
 
 // work is a group with its layer, to be sorted over all layers.

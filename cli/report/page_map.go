@@ -29,8 +29,9 @@ type mapPanel struct {
 const (
 	mapSide = 232 // pixels of the longer side, about
 	levels  = 8   // sizes of a mark
-	// fewRings is how many rings a map may have before they shrink to their tiles.
-	fewRings = 40
+	// fewRings is how many rings a map may have before they shrink to their tiles, mostRings before they become plain marks.
+	fewRings  = 40
+	mostRings = 240
 )
 
 // maps draws the maps of all layers, as many as the page holds.
@@ -144,13 +145,25 @@ func (g grid) balance() mapPanel {
 		g.svg("Map of the balance of the masks", onA+onB)}
 }
 
+// count gives the sum of something over all tiles, the most of it in one (at least 1), and how many tiles have some.
+func (g grid) count(of func(t *decompose.Tile) int) (total, most, some int) {
+	most = 1
+	for i := range g.t.Tiles {
+		n := of(&g.t.Tiles[i])
+		total += n
+		most = max(most, n)
+		some += min(n, 1)
+	}
+	return total, most, some
+}
+
 // moved shows where shapes moved against the baseline.
 func (g grid) moved() mapPanel {
 	var b strings.Builder
-	total, most := 0, 1
-	for i := range g.t.Tiles {
-		total += g.t.Tiles[i].Moved
-		most = max(most, g.t.Tiles[i].Moved)
+	total, most, some := g.count(func(t *decompose.Tile) int { return t.Moved })
+	if some > mostRings {
+		return mapPanel{"Where shapes moved", "A square where shapes changed masks against the baseline; larger for more.", g.svg("Map of moved shapes",
+			g.marks("moved", func(t *decompose.Tile) int { return levelOf(math.Sqrt(float64(t.Moved) / float64(most))) }))}
 	}
 	for y := range g.t.NY {
 		for x := range g.t.NX {
@@ -160,7 +173,7 @@ func (g grid) moved() mapPanel {
 			}
 			cx, cy := g.centre(x, y)
 			r := 4 + 5*math.Sqrt(float64(n)/float64(most))
-			fmt.Fprintf(&b, `<path class="moved" d="M%s %sl%s %sh-%sz"><title>%s</title></path>`, px(float64(cx)/2), px(float64(cy)/2-r), px(r), px(2*r), px(2*r), count(n, "moved shape"))
+			fmt.Fprintf(&b, `<path class="triangle" d="M%s %sl%s %sh-%sz"><title>%s</title></path>`, px(float64(cx)/2), px(float64(cy)/2-r), px(r), px(2*r), px(2*r), count(n, "moved shape"))
 		}
 	}
 	note := "No listed shape changed masks."
@@ -188,12 +201,10 @@ func (m *pageMaker) unresolvedMap(g grid, l *decompose.LayerResult) mapPanel {
 		}
 	}
 	var b strings.Builder
-	total, most, some := 0, 1, 0
-	for i := range g.t.Tiles {
-		n := g.t.Tiles[i].Unresolved
-		total += n
-		most = max(most, n)
-		some += min(n, 1)
+	total, most, some := g.count(func(t *decompose.Tile) int { return t.Unresolved })
+	if some > mostRings {
+		return mapPanel{"Where to mend", "A mark where pairs are unresolved; larger for more.", g.svg("Map of unresolved pairs",
+			g.marks("unresolved", func(t *decompose.Tile) int { return levelOf(math.Sqrt(float64(t.Unresolved) / float64(most))) }))}
 	}
 	// A few rings may be larger than their tiles; many would hide each other.
 	least, room := 3.0, 6.0

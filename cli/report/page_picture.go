@@ -133,14 +133,8 @@ func (d *drawer) shapes() {
 
 // path words the outlines of a shape.
 func (d *drawer) path(s *decompose.PictureShape) string {
-	corners := 0
-	for _, rings := range s.Outlines {
-		for _, ring := range rings {
-			corners += len(ring)
-		}
-	}
 	outlines := s.Outlines
-	if corners > mostCorners {
+	if cornersOf(s) > mostCorners {
 		b := s.Box
 		outlines = [][][]decompose.Spot{{{{X: b.X1, Y: b.Y1}, {X: b.X2, Y: b.Y1}, {X: b.X2, Y: b.Y2}, {X: b.X1, Y: b.Y2}}}}
 	}
@@ -166,6 +160,17 @@ func (d *drawer) path(s *decompose.PictureShape) string {
 		}
 	}
 	return b.String()
+}
+
+// cornersOf counts the corners of a shape.
+func cornersOf(s *decompose.PictureShape) int {
+	corners := 0
+	for _, rings := range s.Outlines {
+		for _, ring := range rings {
+			corners += len(ring)
+		}
+	}
+	return corners
 }
 
 // candidates draws where a cut is possible: a frame, and a cross in it where the least set of cuts needs it.
@@ -314,11 +319,14 @@ func (d *drawer) beadPlace(s *decompose.PictureShape, in, out *decompose.Spot) d
 	}
 	best, most := middle(seen), math.Inf(-1)
 	offer := func(at decompose.Spot) {
-		room := roomIn(s, at) * d.scale
-		if room < 0 {
+		if !isInside(s, at) {
 			return
 		}
+		room := roomIn(s, at) * d.scale
 		value := math.Min(room, beadRadius+2)
+		if value <= most {
+			return
+		}
 		for _, end := range ends {
 			far := d.scale * math.Hypot(float64(at.X-end.X), float64(at.Y-end.Y))
 			value -= 24*outsideShare(s, at, end) + 0.015*far + 0.5*math.Max(0, clearOfGap-far)
@@ -329,10 +337,16 @@ func (d *drawer) beadPlace(s *decompose.PictureShape, in, out *decompose.Spot) d
 	}
 	if len(ends) == 2 {
 		offer(decompose.Spot{X: (ends[0].X + ends[1].X) / 2, Y: (ends[0].Y + ends[1].Y) / 2})
+		if most > beadRadius/2 {
+			return best
+		}
 	}
-	const steps = 24
-	for i := range int64(steps) {
-		for k := range int64(steps) {
+	steps := int64(20)
+	if cornersOf(s) > 100 {
+		steps = 8
+	}
+	for i := range steps {
+		for k := range steps {
 			offer(decompose.Spot{X: seen.X1 + (seen.X2-seen.X1)*(2*i+1)/(2*steps), Y: seen.Y1 + (seen.Y2-seen.Y1)*(2*k+1)/(2*steps)})
 		}
 	}
@@ -345,7 +359,7 @@ func outsideShare(s *decompose.PictureShape, a, b decompose.Spot) float64 {
 	outside := 0
 	for i := range int64(steps) {
 		at := decompose.Spot{X: a.X + (b.X-a.X)*(2*i+1)/(2*steps), Y: a.Y + (b.Y-a.Y)*(2*i+1)/(2*steps)}
-		if roomIn(s, at) < 0 {
+		if !isInside(s, at) {
 			outside++
 		}
 	}
@@ -360,11 +374,8 @@ func roomIn(s *decompose.PictureShape, at decompose.Spot) float64 {
 		for _, ring := range rings {
 			for i := range ring {
 				a, b := ring[i], ring[(i+1)%len(ring)]
-				if (a.Y > at.Y) != (b.Y > at.Y) {
-					cross := float64(a.X) + float64(b.X-a.X)*float64(at.Y-a.Y)/float64(b.Y-a.Y)
-					if float64(at.X) < cross {
-						inside = !inside
-					}
+				if crossesRay(a, b, at) {
+					inside = !inside
 				}
 				near = math.Min(near, toSegment(at, a, b))
 			}
@@ -374,6 +385,29 @@ func roomIn(s *decompose.PictureShape, at decompose.Spot) float64 {
 		}
 	}
 	return most
+}
+
+// isInside tells whether a point is inside a shape.
+func isInside(s *decompose.PictureShape, at decompose.Spot) bool {
+	for _, rings := range s.Outlines {
+		inside := false
+		for _, ring := range rings {
+			for i := range ring {
+				if crossesRay(ring[i], ring[(i+1)%len(ring)], at) {
+					inside = !inside
+				}
+			}
+		}
+		if inside {
+			return true
+		}
+	}
+	return false
+}
+
+// crossesRay tells whether a segment crosses the level ray to the right of a point.
+func crossesRay(a, b, at decompose.Spot) bool {
+	return (a.Y > at.Y) != (b.Y > at.Y) && float64(at.X) < float64(a.X)+float64(b.X-a.X)*float64(at.Y-a.Y)/float64(b.Y-a.Y)
 }
 
 // toSegment gives the distance of a point to a segment.
