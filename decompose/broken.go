@@ -53,8 +53,9 @@ type solver struct {
 	a      *assignment
 	o      *Orders
 	groups []brokenGroup
-	index  map[int32]int       // group number to index in groups
-	broken []uint64            // bit by group number
+	index  map[int32]int // group number to index in groups
+	broken []uint64      // bit by group number
+	opt    *Options
 	apart  map[uint32][]uint32 // by node of a broken group: what is within the largest spacing and yet not near
 }
 
@@ -91,12 +92,14 @@ func (s *solver) of(node uint32) (int, bool) {
 func (s *solver) each(ctx context.Context, jobs int, work func(b *brokenGroup)) error {
 	var g errgroup.Group
 	g.SetLimit(max(jobs, 1))
+	done := s.opt.counted(int64(len(s.groups)), "odd components")
 	for i := range s.groups {
 		g.Go(func() error {
 			if err := ctx.Err(); err != nil {
 				return err
 			}
 			work(&s.groups[i])
+			done(1)
 			return nil
 		})
 	}

@@ -320,7 +320,7 @@ next:
 func (b *builder) search(sets union, win window) error {
 	scale := b.l.flat.forms.scale
 	s := &sweep{items: b.sorted, bands: b.bands.Data, polygons: b.polygons, spacing: b.l.rules.Reach() * scale,
-		anyMask: b.l.rules.AnyMask * scale, figures: uint32(b.l.flat.total), tags: b.l.keptTags()}
+		anyMask: b.l.rules.AnyMask * scale, figures: uint32(b.l.flat.total), tags: b.l.keptTags(), searched: b.opt.counted(int64(len(b.sorted)), "figures")}
 	sinks, err := s.run(b.ctx, sets, b.jobs, &b.limit)
 	if err == errTooManyPairs {
 		return &LimitError{Msg: fmt.Sprintf("layer %s: so many figures are nearer to each other than %d database units that their pairs do not fit --memory; check the spacing, or allow more memory",

@@ -9,6 +9,8 @@ type Options struct {
 	Top    string            // take this structure alone; "": all tops
 	held   int64             // bytes that layers done before hold
 	Stage  func(name string) // told when a stage begins, possibly again; may be nil
+	// Progress is told now and then how much of a stage is done, of how many things; it may be nil, and is called by several workers.
+	Progress func(done, of int64, things string)
 	// Drawings is for how many groups of a layer the result is to hold pictures, besides its maps; 0: no LayerResult.Drawing.
 	Drawings int
 }

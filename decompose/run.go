@@ -136,6 +136,7 @@ func (r *Run) layer(ctx context.Context, i int, orders Orderer) error {
 	a := l.assign(o)
 	r.assigned = append(r.assigned, a)
 	s := newSolver(l, a, o)
+	s.opt = &r.opt
 	if err := s.solve(ctx, r.opt.jobs()); err != nil {
 		return err
 	}

@@ -41,8 +41,9 @@ type sweep struct {
 	figures     uint32 // IDs from here on are probes
 	low, high   int64  // least X1, greatest X2
 	keepTouched bool
-	tags        []uint8 // by ordinal: only figures with equal tags hide each other; nil: all are equal
-	blocks      []int32 // greatest Y2 of each block of items
+	tags        []uint8           // by ordinal: only figures with equal tags hide each other; nil: all are equal
+	blocks      []int32           // greatest Y2 of each block of items
+	searched    func(items int64) // told of each stretch that is done; nil: nobody is
 }
 
 const (
@@ -87,7 +88,12 @@ func (s *sweep) run(ctx context.Context, sets union, jobs int, limit *atomic.Int
 			w := searchers.Get().(*searcher)
 			defer searchers.Put(w)
 			sinks[k] = pairSink{sets: sets, limit: limit}
-			return w.stretch(within, &sinks[k], k*stretchItems, min((k+1)*stretchItems, n))
+			end := min((k+1)*stretchItems, n)
+			err := w.stretch(within, &sinks[k], k*stretchItems, end)
+			if s.searched != nil {
+				s.searched(int64(end - k*stretchItems))
+			}
+			return err
 		})
 	}
 	if err := g.Wait(); err != nil {
