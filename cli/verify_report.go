@@ -138,6 +138,9 @@ func checkWords(k verify.Kind, r *decompose.LayerRules, rules *decompose.Rules) 
 	case verify.Stitches:
 		return "stitches by the rules"
 	case verify.SameMask:
+		if r.ByFacing != nil {
+			return "same-mask spacing by what faces what"
+		}
 		return "same-mask spacing " + rules.Length(float64(r.Spacing))
 	case verify.AnyMask:
 		return "any-mask spacing " + rules.Length(float64(r.AnyMask))

@@ -318,16 +318,16 @@ func (j *judge) anchored(p *probe, by uint32, hits []hit) error {
 			}
 			continue
 		}
-		key := wish{p.entry, j.shapeOf[h.fig]}
+		key := wish{mask, j.shapeOf[h.fig]}
 		on := j.flat.figs[h.fig].tag == mask
 		j.wishes[key] = j.wishes[key] || on
 	}
 	return nil
 }
 
-// wish is a wish for one shape.
+// wish is a wish for one shape; several entries may say the same.
 type wish struct {
-	entry int32
+	mask  tag
 	shape uint32
 }
 

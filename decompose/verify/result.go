@@ -57,7 +57,7 @@ type LayerCounts struct {
 	Overlaps            int64 // of A and B in them
 	Waived              int64 // pairs too near on one mask that a waiver accepts
 	Anchored            int64 // shapes that an anchor of any form holds
-	Wishes, WishesKept  int64 // one per wish and shape
+	Wishes, WishesKept  int64 // once per shape and mask
 	MarkersWithoutShape int64
 	LabelsWithoutShape  int64
 	WaivedPlaces        []Place // the first of the waived pairs
