@@ -121,9 +121,13 @@ func decomposeTo(ctx context.Context, o *Options, con *console, s steps) (*repor
 	}
 	if !o.Quiet {
 		for _, line := range r.Warnings {
-			fmt.Fprintf(con.err, "%s: warning: %s\n", program, oneLine(line))
+			fmt.Fprintf(con.err, "%s: %s %s\n", program, painterFor(con.err).paint(inkNote, "warning:"), oneLine(line))
 		}
-		report.WriteSummary(con.err, r) // the work is done and in place: a closed terminal does not undo it
+		ink := inkGood
+		if r.UnresolvedPairs() > 0 || r.FrozenFaults() > 0 {
+			ink = inkBad
+		}
+		report.WriteSummary(&firstLine{w: con.err, ink: ink, p: painterFor(con.err)}, r) // the work is done and in place: a closed terminal does not undo it
 	}
 	return r, nil
 }

@@ -3,7 +3,6 @@ package cli
 import (
 	"fmt"
 	"io"
-	"os"
 	"slices"
 	"sync"
 	"time"
@@ -11,13 +10,14 @@ import (
 	"maskpair/cli/report"
 )
 
-// This file times the stages of a run and, on a terminal, says which one is going on.
+// This file times the stages of a run and, on a terminal, says which one is going on, how far it is, and how long it will take.
 
 // Clock notes the stages of a run. Its methods may be called from several goroutines; Stage begins a stage and ends the one
 // before.
 type Clock struct {
 	mu     sync.Mutex
 	screen io.Writer // nil: nothing is shown
+	now    func() time.Time
 	begun  time.Time // the run
 	stage  time.Time // the stage
 	name   string
@@ -29,21 +29,25 @@ type Clock struct {
 const (
 	quietTime  = 400 * time.Millisecond // a run that is shorter shows nothing
 	redrawTime = 100 * time.Millisecond
+	// Before so much of a stage is done, or so much time has gone, nobody can say how long it will take.
+	leastShare = 0.02
+	leastTime  = 800 * time.Millisecond
+	// lineWidth is how long the line may be, so that it does not wrap on any usual terminal.
+	lineWidth = 79
 )
 
 // newClock starts the clock of a run. It shows the stages on w if that is a terminal.
 func newClock(w io.Writer, quiet bool) *Clock {
-	now := time.Now()
-	c := &Clock{begun: now, stage: now}
-	if f, ok := w.(*os.File); ok && !quiet {
-		if info, err := f.Stat(); err == nil && info.Mode()&os.ModeCharDevice != 0 {
-			c.screen = w
-		}
+	c := &Clock{now: time.Now}
+	c.begun = c.now()
+	c.stage = c.begun
+	if !quiet && isTerminal(w) {
+		c.screen = w
 	}
 	return c
 }
 
-// Stage begins a stage; name says what is done: "reading".
+// Stage begins a stage; name says what is done: "read".
 func (c *Clock) Stage(name string) {
 	c.mu.Lock()
 	defer c.mu.Unlock()
@@ -51,17 +55,49 @@ func (c *Clock) Stage(name string) {
 		return
 	}
 	c.end()
-	c.name, c.stage = name, time.Now()
+	c.name, c.stage = name, c.now()
 	c.draw("")
 }
 
-// Progress tells how much of the stage is done; of is the whole, 0 or less where that is not known.
+// Progress tells how many bytes of the stage are done; of is the whole, 0 or less where that is not known.
 func (c *Clock) Progress(done, of int64) {
+	c.tell(done, of, report.Bytes)
+}
+
+// Count tells how many things of the stage are done; of is the whole, 0 or less where that is not known.
+func (c *Clock) Count(done, of int64, things string) {
+	c.tell(done, of, func(n int64) string { return report.Count(n) + " " + things })
+}
+
+func (c *Clock) tell(done, of int64, word func(int64) string) {
 	c.mu.Lock()
 	defer c.mu.Unlock()
-	if of > 0 {
-		c.draw(fmt.Sprintf(" %.0f %%", min(100, 100*float64(done)/float64(of))))
+	if c.screen == nil {
+		return
 	}
+	if of <= 0 {
+		c.draw(" " + word(done))
+		return
+	}
+	share := min(1, float64(done)/float64(of))
+	c.draw(fmt.Sprintf(" %.0f %% of %s%s", 100*share, word(of), left(c.now().Sub(c.stage), share)))
+}
+
+// left words how long a stage will go on, if it goes on as it did.
+func left(gone time.Duration, share float64) string {
+	if share < leastShare || share >= 1 || gone < leastTime {
+		return ""
+	}
+	rest := time.Duration(float64(gone) * (1 - share) / share)
+	switch {
+	case rest < time.Second:
+		return ", a moment left"
+	case rest < 100*time.Second:
+		return fmt.Sprintf(", %d s left", (rest+time.Second-1)/time.Second)
+	case rest < 100*time.Minute:
+		return fmt.Sprintf(", %d min left", (rest+time.Minute-1)/time.Minute)
+	}
+	return fmt.Sprintf(", %d h left", (rest+time.Hour-1)/time.Hour)
 }
 
 // end notes the time of the stage that is going on; a stage may come again.
@@ -69,7 +105,7 @@ func (c *Clock) end() {
 	if c.name == "" {
 		return
 	}
-	seconds := time.Since(c.stage).Seconds()
+	seconds := c.now().Sub(c.stage).Seconds()
 	k := slices.IndexFunc(c.stages, func(s report.Stage) bool { return s.Name == c.name })
 	if k < 0 {
 		k = len(c.stages)
@@ -81,12 +117,16 @@ func (c *Clock) end() {
 
 // draw writes the line again, not too often.
 func (c *Clock) draw(rest string) {
-	now := time.Now()
-	if c.screen == nil || now.Sub(c.begun) < quietTime || now.Sub(c.shown) < redrawTime {
+	if c.screen == nil {
+		return
+	}
+	now := c.now()
+	if now.Sub(c.begun) < quietTime || now.Sub(c.shown) < redrawTime {
 		return
 	}
 	c.shown, c.line = now, true
-	fmt.Fprintf(c.screen, "\r\x1b[K%s: %s%s", program, c.name, rest)
+	text := program + ": " + c.name + rest
+	fmt.Fprintf(c.screen, "\r\x1b[K%s", text[:min(len(text), lineWidth)])
 }
 
 // stop ends the last stage and clears the line. It gives the stages and the seconds of the whole run.
@@ -99,5 +139,5 @@ func (c *Clock) stop() ([]report.Stage, float64) {
 		c.line = false
 	}
 	c.screen = nil
-	return c.stages, time.Since(c.begun).Seconds()
+	return c.stages, c.now().Sub(c.begun).Seconds()
 }

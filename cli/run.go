@@ -42,13 +42,14 @@ func run(ctx context.Context, args []string, con *console, s steps) int {
 		surveyCommand(con),
 		compareCommand(con, &status),
 		demoCommand(con, s),
+		completionCommand(con),
 	})
 	args, err := orderArguments(app, args)
 	if err == nil {
 		err = app.RunContext(ctx, append([]string{program}, args...))
 	}
 	if err != nil {
-		fmt.Fprintf(con.err, "%s: %s\n", program, oneLine(err.Error()))
+		fmt.Fprintf(con.err, "%s %s\n", painterFor(con.err).paint(inkBad, program+":"), oneLine(err.Error()))
 		return statusOf(err)
 	}
 	return status

@@ -55,7 +55,7 @@ func runDecompose(ctx context.Context, o *Options, w *work) (*report.Report, err
 	if err != nil {
 		return nil, err
 	}
-	opt := decompose.Options{Jobs: o.Jobs, Memory: o.Memory, Top: o.Top, Stage: w.clock.Stage}
+	opt := decompose.Options{Jobs: o.Jobs, Memory: o.Memory, Top: o.Top, Stage: w.clock.Stage, Progress: w.clock.Count}
 	if o.Page != "" {
 		opt.Drawings = report.PageCards
 	}
