@@ -1,6 +1,7 @@
 package anchor
 
 import (
+	"cmp"
 	"fmt"
 	"slices"
 	"strings"
@@ -13,7 +14,7 @@ import (
 // Orders gives the orders of a deck layer.
 func (s *Sources) Orders(layer int, v *decompose.View) (*decompose.Orders, error) {
 	st := &s.layer
-	st.hit = make([]bool, len(st.looks))
+	st.hit, st.end = make([]bool, len(st.looks)), make([]bool, len(st.looks))
 	st.masks = v.MarkerMasks()
 	st.marked = make([]bool, len(st.masks))
 	c := &collector{s: s, v: v, o: &decompose.Orders{}, held: make([]uint8, v.Nodes())}
@@ -44,7 +45,11 @@ type collector struct {
 }
 
 // end is what a probe of a tie or waiver has hit.
-type end struct{ probe, node uint32 }
+type end struct {
+	probe uint32
+	top   int32
+	node  uint32
+}
 
 const wished = 2 // by how many bits those of wishes stand behind those of anchors
 
@@ -88,16 +93,19 @@ func (c *collector) take() {
 			c.anchor(node, st.masks[probe-markers], probe)
 			return
 		}
-		st.hit[probe] = true
 		switch l := &st.looks[probe]; l.kind {
 		case kindAnchor:
+			st.hit[probe] = true
 			c.anchor(node, f.Anchors[l.entry].Mask, probe)
 		case kindWish:
+			st.hit[probe] = true
 			c.wish(node, f.Anchors[l.entry].Mask, probe)
 		case kindLabel:
+			st.hit[probe] = true
 			c.anchor(node, l.mask, probe)
 		default:
-			c.ends = append(c.ends, end{probe, node})
+			st.end[probe] = true
+			c.ends = append(c.ends, end{probe, int32(c.v.TopOf(node)), node})
 		}
 	})
 }
@@ -107,37 +115,39 @@ func (c *collector) twos() {
 	st := &c.s.layer
 	f := c.s.file()
 	slices.SortFunc(c.ends, func(a, b end) int {
-		if a.probe != b.probe {
-			return int(a.probe) - int(b.probe)
-		}
-		return int(a.node) - int(b.node)
+		return cmp.Or(cmp.Compare(a.probe, b.probe), cmp.Compare(a.top, b.top), cmp.Compare(a.node, b.node))
 	})
 	c.ends = slices.Compact(c.ends)
-	of := func(probe uint32) []end {
-		from, _ := slices.BinarySearchFunc(c.ends, probe, func(e end, p uint32) int { return int(e.probe) - int(p) })
+	// What an end has hit in a top.
+	of := func(probe uint32, top int32) []end {
+		from, _ := slices.BinarySearchFunc(c.ends, end{probe: probe, top: top}, func(e, want end) int {
+			return cmp.Or(cmp.Compare(e.probe, want.probe), cmp.Compare(e.top, want.top))
+		})
 		to := from
-		for to < len(c.ends) && c.ends[to].probe == probe {
+		for to < len(c.ends) && c.ends[to].probe == probe && c.ends[to].top == top {
 			to++
 		}
 		return c.ends[from:to]
 	}
-	for p := 0; p < len(st.looks); p++ {
+	for i := 0; i < len(c.ends); {
+		p := c.ends[i].probe
+		a := of(p, c.ends[i].top)
+		i += len(a)
+		if c.second(int(p)) {
+			continue
+		}
+		b := of(p+1, a[0].top)
+		if len(b) == 0 {
+			continue
+		}
+		st.hit[p] = true
 		l := &st.looks[p]
-		if l.kind != kindTie && l.kind != kindWaiver {
-			continue
-		}
-		if !st.hit[p] || !st.hit[p+1] {
-			p++
-			continue
-		}
-		a, b := of(uint32(p)), of(uint32(p+1))
 		if l.kind == kindTie {
 			e := &f.Ties[l.entry]
-			c.o.Ties = append(c.o.Ties, decompose.Tie{A: c.one(a), B: c.one(b), Opposite: e.Opposite, Source: uint32(p)})
+			c.o.Ties = append(c.o.Ties, decompose.Tie{A: c.one(a), B: c.one(b), Opposite: e.Opposite, Source: p})
 		} else {
 			c.waive(l.entry, a, b)
 		}
-		p++
 	}
 }
 
@@ -223,9 +233,8 @@ func (c *collector) anchorText(a decompose.Anchor) string {
 	case a.Source < c.markers():
 		l := &st.looks[a.Source]
 		p := &st.probes[a.Source]
-		at := c.v.BoxText(p.Box) + " in " + c.v.TopName(p.Top)
 		if l.kind == kindLabel {
-			return fmt.Sprintf("the label %s at %s", a.Mask, at)
+			return fmt.Sprintf("the label %s at %s in %s", a.Mask, c.v.BoxText(p.Box), c.v.TopName(p.Top))
 		}
 		e := &c.s.File.Anchors[l.entry]
 		return fmt.Sprintf("%s holds the shape at %s on %s", c.s.File.Cite("anchor", e.Name, e.Index, e.Line), c.v.Place(a.Node), a.Mask)
@@ -272,8 +281,7 @@ func (c *collector) missed(layer int) error {
 		case kindAnchor, kindWish:
 			found[kindAnchor][l.entry] = found[kindAnchor][l.entry] || st.hit[p]
 		case kindTie, kindWaiver:
-			found[l.kind][l.entry] = found[l.kind][l.entry] || st.hit[p] && st.hit[p+1]
-			p++
+			found[l.kind][l.entry] = found[l.kind][l.entry] || st.hit[p]
 		}
 	}
 	for i := range f.Anchors {
@@ -344,7 +352,7 @@ func (c *collector) lost(l look) []decompose.Probe {
 	st := &c.s.layer
 	var all, half []decompose.Probe
 	for p := range st.looks {
-		if st.looks[p].kind != l.kind || st.looks[p].entry != l.entry || st.hit[p] {
+		if st.looks[p].kind != l.kind || st.looks[p].entry != l.entry || st.hit[p] || st.end[p] {
 			continue
 		}
 		all = append(all, st.probes[p])
@@ -355,7 +363,7 @@ func (c *collector) lost(l look) []decompose.Probe {
 		if c.second(p) {
 			mate = p - 1
 		}
-		if st.hit[mate] {
+		if st.end[mate] {
 			half = append(half, st.probes[p])
 		}
 	}
@@ -365,15 +373,8 @@ func (c *collector) lost(l look) []decompose.Probe {
 	return all
 }
 
-// second tells whether a probe of a tie or waiver is the second of its two: the probes of an entry follow each other.
-func (c *collector) second(p int) bool {
-	st := &c.s.layer
-	n := 0
-	for q := p - 1; q >= 0 && st.looks[q] == st.looks[p]; q-- {
-		n++
-	}
-	return n%2 == 1
-}
+// second tells whether a probe of a tie or waiver is the second of its two.
+func (c *collector) second(p int) bool { return c.s.layer.looks[p].second }
 
 // warn tells of markers and labels that have hit no shape.
 func (c *collector) warn() {

@@ -1,6 +1,7 @@
 package anchor
 
 import (
+	"bytes"
 	"math"
 	"strconv"
 
@@ -57,12 +58,19 @@ const (
 // readPlain reads a plain file; false where it is not plain.
 func readPlain(name string, text []byte, rules *decompose.Rules) (*File, bool) {
 	r := &plainReader{text: text, line: 1, file: &File{Name: name}, rules: rules}
+	if n := bytes.Count(text, []byte("[[anchor]]")); n > 0 {
+		r.file.Anchors = make([]Entry, 0, n)
+	}
 	for r.at < len(r.text) {
 		if !r.statement() {
 			return nil, false
 		}
 	}
-	return r.file, r.close()
+	ok := r.close()
+	if len(r.file.Anchors) == 0 {
+		r.file.Anchors = nil
+	}
+	return r.file, ok
 }
 
 // blank passes blanks within a line.

@@ -10,6 +10,8 @@ import (
 func (s *Sources) Probes(layer int, v *decompose.View) ([]decompose.Probe, error) {
 	s.layer = layerState{}
 	f := s.file()
+	most := len(f.Anchors) + 2*len(f.Ties) + 2*len(f.Waivers)
+	s.layer.probes, s.layer.looks = make([]decompose.Probe, 0, most), make([]look, 0, most)
 	for i := range f.Anchors {
 		e := &f.Anchors[i]
 		if e.Layer != layer {
@@ -58,11 +60,10 @@ func (s *Sources) Probes(layer int, v *decompose.View) ([]decompose.Probe, error
 // place puts boxes of an entry where its coordinates are in force: in each top, or at each placement of the cell.
 func (s *Sources) place(v *decompose.View, cell string, l look, boxes ...decompose.Box) error {
 	if cell == "" {
-		for top := range v.Tops() {
-			for _, b := range boxes {
-				s.layer.probes = append(s.layer.probes, decompose.Probe{Top: top, Box: b})
-				s.layer.looks = append(s.layer.looks, l)
-			}
+		for i, b := range boxes {
+			l.second = i == 1
+			s.layer.probes = append(s.layer.probes, decompose.Probe{Top: decompose.AnyTop, Box: b})
+			s.layer.looks = append(s.layer.looks, l)
 		}
 		return nil
 	}
@@ -71,7 +72,8 @@ func (s *Sources) place(v *decompose.View, cell string, l look, boxes ...decompo
 		return err
 	}
 	for _, at := range p.at {
-		for _, b := range boxes {
+		for i, b := range boxes {
+			l.second = i == 1
 			s.layer.probes = append(s.layer.probes, at.ProbeAt(b))
 			s.layer.looks = append(s.layer.looks, l)
 		}

@@ -33,16 +33,18 @@ const (
 
 // look is what a probe is for. The two probes of a tie or waiver stand side by side.
 type look struct {
-	kind  kind
-	mask  decompose.Mask // of a label
-	entry int32          // of the file
+	kind   kind
+	mask   decompose.Mask // of a label
+	entry  int32          // of the file
+	second bool           // of the two probes of a tie or waiver
 }
 
 // layerState is what is known of the layer at hand.
 type layerState struct {
 	probes     []decompose.Probe
 	looks      []look
-	hit        []bool // by probe
+	hit        []bool // by probe; of a tie or waiver, the first one tells whether both have hit in one placement
+	end        []bool // by probe of a tie or waiver: it has hit
 	masks      []decompose.Mask
 	marked     []bool // by marker: it has hit
 	other      int    // labels that name no mask

@@ -280,7 +280,7 @@ func (b *builder) prepare(top int, win window) error {
 	w := flattener{f: f, win: win, items: b.items.Data, bands: b.bands.Data, nItem: nItem, nBand: nBand}
 	b.polygons = slices.Clip(f.polygons)
 	b.polygons = w.oddFigures(&b.l.odd[top], placement{0, -win.originX, -win.originY}, 0, b.polygons)
-	b.polygons = b.l.look.emit(top, &w, b.polygons)
+	b.polygons = b.l.look.emit(top, f.box[f.h.tops[top]].join(b.l.odd[top].box), &w, b.polygons)
 	b.opt.stage("sort")
 	sets := union(b.l.nodeOf.Data)
 	if b.joined {

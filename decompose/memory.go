@@ -211,8 +211,7 @@ type comparison struct {
 	begin, end uint32
 
 	state []uint8                 // by shape: see memory_match.go
-	items [2]*arena.Array[item]   // on A and on B
-	other [2]*arena.Array[item]   // scratch
+	own   *arena.Array[item]      // nil: the builder's arrays have room
 	bands *arena.Array[band]      // of both masks
 	on    [2][]item               // of the window at hand, sorted, without copies
 	owner [2]*arena.Array[uint32] // by place in on: 1 + shape of the equal item of the layout
@@ -223,9 +222,8 @@ type comparison struct {
 func newComparison(b *builder, e *earlier, top int, begin, end uint32) *comparison {
 	c := &comparison{b: b, e: e, top: top, begin: begin, end: end, state: make([]uint8, end-begin)}
 	bands := 0
-	for m := range c.items {
-		n, k := e.size(m, top)
-		c.items[m], c.other[m], c.owner[m] = arena.New[item](n), arena.New[item](n), arena.New[uint32](n)
+	for m := range c.e.masks {
+		_, k := e.size(m, top)
 		bands += k
 	}
 	c.bands = arena.New[band](bands)
@@ -233,25 +231,44 @@ func newComparison(b *builder, e *earlier, top int, begin, end uint32) *comparis
 }
 
 func (c *comparison) free() {
-	for m := range c.items {
-		c.items[m].Free()
-		c.other[m].Free()
+	c.own.Free()
+	for m := range c.owner {
 		c.owner[m].Free()
 	}
 	c.bands.Free()
 }
 
+// room gives an array for the items of both masks, and one to sort those of one mask with: what the builder's two arrays have left
+// beside its sorted items, or an array of its own.
+func (c *comparison) room() (items, scratch []item) {
+	onA, _ := c.e.size(int(A), c.top)
+	onB, _ := c.e.size(int(B), c.top)
+	busy, idle := c.b.items.Data, c.b.scratch.Data
+	kept := len(c.b.sorted)
+	if kept > 0 && len(idle) > 0 && &c.b.sorted[0] == &idle[0] {
+		busy, idle = idle, busy
+	}
+	if onA+onB <= len(idle) && max(onA, onB) <= len(busy)-kept {
+		return idle[:onA+onB], busy[kept:]
+	}
+	if c.own == nil {
+		c.own = arena.New[item](onA + onB + max(onA, onB))
+	}
+	return c.own.Data[:onA+onB], c.own.Data[onA+onB:]
+}
+
 // flatten fills on with the items of a window of the baseline.
 func (c *comparison) flatten(win window) error {
 	c.polys = append([]*geom.Polygon(nil), c.e.polygons...)
+	items, scratch := c.room()
 	nBand := uint64(0)
 	for m, f := range c.e.masks {
+		c.on[m] = nil
 		if f.all[f.h.tops[c.top]] == 0 {
-			c.on[m] = nil
 			continue
 		}
 		// Bands of the second mask come behind those of the first.
-		w := flattener{f: f, win: win, items: c.items[m].Data, bands: c.bands.Data}
+		w := flattener{f: f, win: win, items: items, bands: c.bands.Data}
 		if nBand == 0 {
 			var err error
 			if w.nItem, w.nBand, err = f.flatten(c.b.ctx, c.top, win, w.items, w.bands, c.b.jobs); err != nil {
@@ -263,8 +280,13 @@ func (c *comparison) flatten(win window) error {
 		}
 		c.polys = w.oddFigures(&c.e.odd[m][c.top], placement{0, -win.originX, -win.originY}, 0, c.polys)
 		nBand = w.nBand
-		sorted := sortItems(w.items[:w.nItem], c.other[m].Data[:w.nItem], c.b.jobs)
-		c.on[m] = dropCopies(sorted, nil, bandBit, nil)
+		sorted := dropCopies(sortItems(items[:w.nItem], scratch[:w.nItem], c.b.jobs), nil, bandBit, nil)
+		c.on[m] = items[:copy(items, sorted)]
+		items = items[len(sorted):]
+	}
+	for m := range c.owner {
+		c.owner[m].Free()
+		c.owner[m] = arena.New[uint32](len(c.on[m]))
 	}
 	return nil
 }

@@ -31,9 +31,6 @@ func (c *comparison) window(win window, whole bool) error {
 
 // match finds equal items.
 func (c *comparison) match() {
-	for m := range c.owner {
-		clear(c.owner[m].Data)
-	}
 	items := c.b.sorted
 	var at [2]int
 	for i := 0; i < len(items); {

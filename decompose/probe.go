@@ -12,10 +12,13 @@ import (
 
 // Probe is a place that looks for shapes of a deck layer: it hits what it touches.
 type Probe struct {
-	Top     int            // index into the tops
+	Top     int            // index into the tops, or AnyTop
 	Box     Box            // half database units of the top; a point is a box without extent
 	Outline *[4]geom.Point // corners, where the box lies at an odd angle (Box is then around them); else nil
 }
+
+// AnyTop is the top of a probe that looks in every top.
+const AnyTop = -1
 
 // sought is what a layer is built for beside its masks.
 type sought struct {
@@ -29,10 +32,12 @@ type sought struct {
 // lookout is all that looks for shapes of one layer.
 type lookout struct {
 	probes   []Probe
-	polygons []*geom.Polygon // of the probes with outlines that are at an angle, in order
-	markers  *flat           // nil: none
-	odd      []oddFigures    // of the markers, by top
-	figures  uint32          // probes have their IDs from here on, markers behind them
+	byTop    [][]uint32               // probes of each top, in order
+	anyTop   []uint32                 // probes that look in every top
+	polygons map[uint32]*geom.Polygon // of the probes with outlines that are at an angle
+	markers  *flat                    // nil: none
+	odd      []oddFigures             // of the markers, by top
+	figures  uint32                   // probes have their IDs from here on, markers behind them
 	scale    int64
 }
 
@@ -43,9 +48,15 @@ func newLookout(h *hierarchy, want *sought, g grid) (*lookout, error) {
 		return k, nil
 	}
 	k.probes = want.probes
+	k.byTop, k.polygons = make([][]uint32, len(h.tops)), map[uint32]*geom.Polygon{}
 	for i := range k.probes {
+		if top := k.probes[i].Top; top == AnyTop {
+			k.anyTop = append(k.anyTop, uint32(i))
+		} else {
+			k.byTop[top] = append(k.byTop[top], uint32(i))
+		}
 		if p := k.polygon(&k.probes[i]); p != nil {
-			k.polygons = append(k.polygons, p)
+			k.polygons[uint32(i)] = p
 		}
 	}
 	if want.markers == nil {
@@ -103,6 +114,15 @@ func (k *lookout) polygon(p *Probe) *geom.Polygon {
 	return nil
 }
 
+// box gives the box of a probe in work units.
+func (k *lookout) box(i uint32) Box {
+	b := k.probes[i].Box
+	if k.scale == 1 {
+		return Box{b.X1 / 2, b.Y1 / 2, b.X2 / 2, b.Y2 / 2}
+	}
+	return b
+}
+
 // number deals the IDs behind those of the figures.
 func (k *lookout) number(figures uint64) error {
 	k.figures = uint32(figures)
@@ -118,13 +138,14 @@ func (k *lookout) number(figures uint64) error {
 
 // size gives the number of items and bands that look for shapes of a top.
 func (k *lookout) size(top int) (items, bands int) {
-	for _, p := range k.polygons {
-		items += len(p.Bands())
-		bands += len(p.Bands())
-	}
-	for i := range k.probes {
-		if k.probes[i].Top == top {
-			items++
+	items = len(k.anyTop)
+	if k.byTop != nil {
+		items += len(k.byTop[top])
+		for i, p := range k.polygons {
+			if k.probes[i].Top == top {
+				items += len(p.Bands())
+				bands += len(p.Bands())
+			}
 		}
 	}
 	if k.markers == nil || k.markers.all[k.markers.h.tops[top]] == 0 {
@@ -143,30 +164,22 @@ func (k *lookout) size(top int) (items, bands int) {
 	return items, bands
 }
 
-// emit appends the items of all that looks for shapes of a top; polygons are appended to those of the layer.
-func (k *lookout) emit(top int, w *flattener, polygons []*geom.Polygon) []*geom.Polygon {
+// emit appends the items of all that looks for shapes of a top whose figures lie in a box; polygons are appended to those of the layer.
+func (k *lookout) emit(top int, within Box, w *flattener, polygons []*geom.Polygon) []*geom.Polygon {
 	at := placement{0, -w.win.originX, -w.win.originY}
-	next := 0
-	for i := range k.probes {
-		p := &k.probes[i]
-		id := k.figures + uint32(i)
-		if p.Outline != nil {
-			if made := k.polygon(p); made != nil {
-				polygons = append(polygons, k.polygons[next])
-				next++
-				if p.Top == top {
-					box := made.Box()
-					w.form(&form{polygon: made, box: Box(box)}, nil, uint32(len(polygons)), at, id)
-				}
+	if k.byTop != nil {
+		for _, i := range k.byTop[top] {
+			if made := k.polygons[i]; made != nil {
+				polygons = append(polygons, made)
+				w.form(&form{polygon: made, box: Box(made.Box())}, nil, uint32(len(polygons)), at, k.figures+i)
 				continue
 			}
+			w.probe(at.applyBox(k.box(i)), k.figures+i)
 		}
-		if p.Top == top {
-			b := p.Box
-			if k.scale == 1 {
-				b = Box{b.X1 / 2, b.Y1 / 2, b.X2 / 2, b.Y2 / 2}
-			}
-			w.probe(at.applyBox(b), id)
+	}
+	for _, i := range k.anyTop {
+		if b := k.box(i); b.X1 <= within.X2 && within.X1 <= b.X2 && b.Y1 <= within.Y2 && within.Y1 <= b.Y2 {
+			w.probe(at.applyBox(b), k.figures+i)
 		}
 	}
 	if k.markers == nil || k.markers.all[k.markers.h.tops[top]] == 0 {

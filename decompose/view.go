@@ -222,6 +222,9 @@ func (v *View) NearPair(a, b uint32) bool {
 	return found
 }
 
+// TopOf gives the top that a node lies in.
+func (v *View) TopOf(node uint32) int { return v.layout.topOf(node) }
+
 // Place words where a node is, in the deck's unit.
 func (v *View) Place(node uint32) string {
 	l := v.layout
@@ -250,6 +253,18 @@ func (v *View) Nearest(probes []Probe) string {
 	for top := range l.flat.h.tops {
 		figures += int(l.flat.all[l.flat.h.tops[top]])
 	}
+	var all []Probe
+	for _, p := range probes {
+		from, to := p.Top, p.Top+1
+		if p.Top == AnyTop {
+			from, to = 0, len(l.flat.h.tops)
+		}
+		for top := from; top < to; top++ {
+			p.Top = top
+			all = append(all, p)
+		}
+	}
+	probes = all
 	if most := mostMeasured/max(figures, 1) + 1; len(probes) > most {
 		probes = probes[:most]
 	}
