@@ -134,16 +134,16 @@ func TestCutsAgainstEnumeration(t *testing.T) {
 			"[layer.stitch]\nmin_overlap = 4\nmin_piece = 6\napply = " + apply + "\n"
 	}
 	tried, cut, left, resolvable := 0, 0, 0, 0
-	most := 200
+	most := 2000
 	if testing.Short() {
-		most = 40
+		most = 200
 	}
 	for tried < most {
 		wires := wireLayout(rng)
 		stream := drawWires(t, wires)
 		plain, _ := decomposed(t, stream, deck("false"), Options{Jobs: 1})
 		l := &plain.Layers[0]
-		if !slices.ContainsFunc(l.Unresolved, func(u Unresolved) bool { return len(u.Candidates) > 0 }) {
+		if len(l.Unresolved) == 0 {
 			continue
 		}
 		wantPairs, wantStitches := 0, 0
@@ -181,6 +181,10 @@ func TestCutsAgainstEnumeration(t *testing.T) {
 			continue
 		}
 		tried++
+		if !slices.ContainsFunc(l.Unresolved, func(u Unresolved) bool { return len(u.Candidates) > 0 }) {
+			left += wantPairs
+			continue
+		}
 		applied, _ := decomposed(t, stream, deck("true"), Options{Jobs: 1})
 		m := &applied.Layers[0]
 		if int(m.UnresolvedPairs) != wantPairs || int(m.Stitches) != wantStitches {
@@ -192,7 +196,7 @@ func TestCutsAgainstEnumeration(t *testing.T) {
 		cut += wantStitches
 		left += wantPairs
 	}
-	if cut < most/20 || left < most/20 || resolvable < most/20 {
+	if cut < most/100 || left < most || resolvable < most/100 {
 		t.Errorf("the layouts are too tame: %d cuts, %d pairs left, %d components resolved", cut, left, resolvable)
 	}
 	t.Logf("%d layouts, %d cuts, %d pairs left, %d components resolved", tried, cut, left, resolvable)
