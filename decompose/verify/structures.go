@@ -448,8 +448,8 @@ func onMask(e *element, rules *decompose.LayerRules) bool {
 	return l == rules.MaskA || l == rules.MaskB
 }
 
-// pieces says how many elements, those before from included, are the pieces of the figure at hand: boundaries on both masks
-// with the flags and properties of the figure, which together cover what it covers, and no more. 0 where they are not.
+// pieces says how many elements, those before from included, are the pieces of the figure at hand: closed boundaries on both
+// masks with the flags and properties of the figure, which together cover what it covers, and no more. 0 where they are not.
 func (c *comparer) pieces(from int, rules *decompose.LayerRules, shape *form) (int, error) {
 	e := &c.was
 	whole := &flat{forms: []form{*shape}}
@@ -465,7 +465,7 @@ func (c *comparer) pieces(from int, rules *decompose.LayerRules, shape *form) (i
 			return 0, nil
 		}
 		made := c.elementForm(f, rules)
-		if !made.hasArea() {
+		if xy := f.points(nil); !made.hasArea() || xy[0] != xy[len(xy)-1] {
 			return 0, nil
 		}
 		parts.forms = append(parts.forms, made)
