@@ -236,7 +236,8 @@ func (b *builder) laps(items []item, p, q []uint32, touches []hit) []lap {
 		for k := range i {
 			r, s := cut[i], cut[k]
 			w, h := min(r.X2, s.X2)-max(r.X1, s.X1), min(r.Y2, s.Y2)-max(r.Y1, s.Y1)
-			if w >= 0 && h >= 0 && (w > 0 || h > 0) {
+			// A corner point that lies in an overlap is a part of it.
+			if w >= 0 && h >= 0 && (w > 0 || h > 0 || isPoint(r) || isPoint(s)) {
 				parts.join(uint32(i), uint32(k))
 			}
 		}
@@ -254,6 +255,8 @@ func (b *builder) laps(items []item, p, q []uint32, touches []hit) []lap {
 	}
 	return out
 }
+
+func isPoint(r geom.Rect) bool { return r.X1 == r.X2 && r.Y1 == r.Y2 }
 
 // lapLength measures an overlap along the wire that is cut: in the direction in which one piece goes on at one side and the other at
 // the other side. Where neither direction tells, it is the shorter extent.

@@ -184,7 +184,7 @@ func (f *finder) part(cuts []Cut) (Split, []geom.Rect) {
 	for i := range s.Cuts {
 		c := &s.Cuts[i]
 		c.Low, c.High = s.beside(c, true), s.beside(c, false)
-		if c.Low < 0 || c.High < 0 || c.Low == c.High {
+		if c.Low < 0 || c.High < 0 || c.Low == c.High || s.meetsOther(i) {
 			f.reached(Useless)
 			bad = append(bad, c.Box)
 		}
@@ -263,6 +263,18 @@ func (s *Split) side(i int, at [][]int) (low []bool, parted bool) {
 		}
 	}
 	return low, !low[s.Cuts[i].High]
+}
+
+// meetsOther tells whether an overlap meets a core that is not at its ends, or an earlier overlap: their pieces could come to be on
+// opposite masks and would touch without overlapping.
+func (s *Split) meetsOther(i int) bool {
+	c := &s.Cuts[i]
+	for k, core := range s.Cores {
+		if k != c.Low && k != c.High && slices.ContainsFunc(core, func(r geom.Rect) bool { return meet(r, c.Box) }) {
+			return true
+		}
+	}
+	return slices.ContainsFunc(s.Cuts[:i], func(d Cut) bool { return meet(d.Box, c.Box) })
 }
 
 // beside gives the core at the lower or upper end of an overlap; -1 where there is none.

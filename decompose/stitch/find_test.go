@@ -96,3 +96,20 @@ func TestOverlapsLieOnTheGrid(t *testing.T) {
 		t.Errorf("cuts %v, want one that begins at 94", s.Cuts)
 	}
 }
+
+// The wire that is cut at [95, 105] meets, by the upper right corner of the overlap, a square that hangs on to the shape's right end by
+// a wire of its own, cut as well: its core would touch the left piece at that corner alone.
+func TestAnOverlapMeetsNoOtherCore(t *testing.T) {
+	shape := []geom.Rect{r(0, 0, 200, 20), r(105, 20, 125, 40)}
+	near := []geom.Rect{r(0, 40, 20, 60), r(180, 40, 200, 60)}
+	s, _ := Find(shape, near, nil, Rules{Spacing: 30, MinOverlap: 10, MinPiece: 20, Grid: 1})
+	for _, c := range s.Cuts {
+		for k, core := range s.Cores {
+			for _, q := range core {
+				if k != c.Low && k != c.High && meet(q, c.Box) {
+					t.Errorf("the overlap %v meets %v of core %d", c.Box, q, k)
+				}
+			}
+		}
+	}
+}

@@ -127,7 +127,8 @@ func (j *judge) overlaps(c *Check, meets []meet) []overlap {
 			if cut[k].X1 > cut[i].X2 {
 				break
 			}
-			if m := meeting(cut[i], cut[k]); m.X1 <= m.X2 && m.Y1 <= m.Y2 && (m.X1 < m.X2 || m.Y1 < m.Y2) {
+			// A corner point that lies in an overlap is a part of it.
+			if m := meeting(cut[i], cut[k]); m.X1 <= m.X2 && m.Y1 <= m.Y2 && (m.X1 < m.X2 || m.Y1 < m.Y2 || m == cut[i] || m == cut[k]) {
 				set.join(uint32(i), uint32(k))
 			}
 		}
