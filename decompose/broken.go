@@ -19,6 +19,7 @@ import (
 type brokenGroup struct {
 	group       int32
 	nodes       []uint32 // canonical order
+	ties        []Tie    // between them
 	first, last uint32   // least and greatest ordinal
 	canon       canon
 	edges       []exact.Edge // near pairs by place in nodes, ascending
@@ -73,6 +74,11 @@ func newSolver(l *layout, a *assignment, o *Orders) *solver {
 	for u := range uint32(l.nodes) {
 		if i, ok := s.of(u); ok {
 			s.groups[i].nodes = append(s.groups[i].nodes, u)
+		}
+	}
+	for _, t := range o.Ties {
+		if i, ok := s.of(t.A); ok {
+			s.groups[i].ties = append(s.groups[i].ties, t)
 		}
 	}
 	s.arrange()
@@ -356,16 +362,8 @@ func (s *solver) contract(b *brokenGroup) {
 		local[u] = uint32(b.atom(k))
 	}
 	p := newParity(make([]uint32, b.atoms()))
-	for _, t := range s.o.Ties {
-		u, ok := local[t.A]
-		if !ok {
-			continue
-		}
-		apart := uint32(0)
-		if t.Opposite {
-			apart = 1
-		}
-		p.relate(u, local[t.B], apart) // contradictions were refused before
+	for _, t := range b.ties {
+		p.relate(local[t.A], local[t.B], uint32(boolInt(t.Opposite))) // contradictions were refused before
 	}
 	b.rep, b.flip = make([]int32, b.atoms()), make([]uint8, b.atoms())
 	number := make([]int32, b.atoms())

@@ -335,10 +335,8 @@ func (s *solver) consistent(b *brokenGroup, may func(cut int) bool) bool {
 		for k, u := range b.nodes {
 			local[u] = uint32(p.first[k])
 		}
-		for _, t := range s.o.Ties {
-			if u, in := local[t.A]; in {
-				ok = q.relate(u, local[t.B], uint32(boolInt(t.Opposite))) && ok
-			}
+		for _, t := range b.ties {
+			ok = q.relate(local[t.A], local[t.B], uint32(boolInt(t.Opposite))) && ok
 		}
 	}
 	for i, e := range b.edges {

@@ -40,6 +40,9 @@ func (v *View) Alike(cell string, tie func(a, b uint32)) (found bool, err error)
 			found = true
 			if first[at] == 0 {
 				first[at] = n + 1
+				if v.Rules().Stitch != nil {
+					tie(n, n) // it is under an order, so that it is not cut
+				}
 			} else if first[at]-1 != n {
 				tie(first[at]-1, n)
 			}
