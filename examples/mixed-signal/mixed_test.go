@@ -1,0 +1,73 @@
+package main
+
+import (
+	"bytes"
+	"fmt"
+	"os"
+	"path/filepath"
+	"strings"
+	"testing"
+)
+
+// What must come out follows from the drawing: wires 20 apart alternate, so the bus beyond the gap has to turn over (6 wires) when two
+// lanes close the gap, and the clock (3 wires) when the guard ties it to the mirror, whose left finger is pinned.
+func TestWalk(t *testing.T) {
+	list, err := run(t.TempDir())
+	if err != nil {
+		t.Fatal(err)
+	}
+	for i, want := range []struct{ shapes, known, moved, kept int }{
+		{41, 0, 0, 2}, // 3 + 8 + 6 lanes, 3 mirrors of 5 + 2, 3 clock wires
+		{43, 41, 6, 1},
+		{44, 43, 3, 0},
+		{44, 44, 0, 0},
+	} {
+		o := &list[i]
+		if o.Shapes != want.shapes || o.Known != want.known || o.MovedN != want.moved || o.Kept != want.kept || o.Pairs != 0 {
+			t.Errorf("round %d: %+v, want %+v", i, *o, want)
+		}
+	}
+	for _, m := range list[1].Moved {
+		if m.Box[0] < 520 || m.Box[1] != 0 {
+			t.Errorf("the first edit moved %v, which is not in the bus beyond the gap", m.Box)
+		}
+	}
+	for _, m := range list[2].Moved {
+		if m.Box[0] < 240 || m.Box[2] > 340 || m.Box[1] != 700 {
+			t.Errorf("the second edit moved %v, which is not in the clock", m.Box)
+		}
+	}
+}
+
+// The table and the pictures of the README must be what the program says.
+func TestReadmeIsUpToDate(t *testing.T) {
+	dir := t.TempDir()
+	list, err := run(dir)
+	if err != nil {
+		t.Fatal(err)
+	}
+	readme, err := os.ReadFile("README.md")
+	if err != nil {
+		t.Fatal(err)
+	}
+	for i := range list {
+		if row := list[i].row(i); !strings.Contains(string(readme), row+"\n") {
+			t.Errorf("README.md lacks the row\n%s", row)
+		}
+	}
+	pictures, err := draw(dir)
+	if err != nil {
+		t.Fatal(err)
+	}
+	if len(pictures) != 3 {
+		t.Errorf("%d pictures, want 3", len(pictures))
+	}
+	for name, text := range pictures {
+		if kept, err := os.ReadFile(filepath.Join(".", name)); err != nil || !bytes.Equal(kept, text) {
+			t.Errorf("%s is not what the program draws (%v); run  go run ./examples/mixed-signal -update  and look at the change", name, err)
+		}
+		if !strings.Contains(string(readme), fmt.Sprintf("(%s)", name)) {
+			t.Errorf("README.md does not show %s", name)
+		}
+	}
+}
