@@ -27,8 +27,18 @@ func newFacingNames(l *layout) *facingNames {
 	return &facingNames{rules: rules, shapes: map[uint32]*facing.Shape{}}
 }
 
-// of gives the outline of a node.
-func (f *facingNames) of(node uint32, parts *geom.Parts) *facing.Shape {
+// of gives the outline of a node, of a large one only what can be seen from a box.
+func (f *facingNames) of(node uint32, parts *geom.Parts, from Box) *facing.Shape {
+	if len(parts.Rects) >= largeOutline {
+		seen := geom.Parts{Polygons: parts.Polygons}
+		sight := f.rules.Sight()
+		for _, r := range parts.Rects {
+			if r.X1-from.X2 <= sight && from.X1-r.X2 <= sight && r.Y1-from.Y2 <= sight && from.Y1-r.Y2 <= sight {
+				seen.Rects = append(seen.Rects, r)
+			}
+		}
+		return outlineOf(seen)
+	}
 	f.mu.Lock()
 	defer f.mu.Unlock()
 	s := f.shapes[node]
@@ -57,13 +67,13 @@ func (e *explainer) byFacing(b *brokenGroup, edge int, u, v uint32, out *Pair) b
 		}
 	}
 	if !b.cutting || b.pieces.pairs[edge] == nil {
-		offer(e.facing.of(u, e.parts[u]), e.facing.of(v, e.parts[v]))
+		offer(e.facing.of(u, e.parts[u], e.boxes[v]), e.facing.of(v, e.parts[v], e.boxes[u]))
 	} else {
 		forward := b.canon.back.inverse()
-		piece := func(atom int32, n uint32) *facing.Shape {
+		piece := func(atom int32, n, other uint32) *facing.Shape {
 			rects := b.pieces.rects[atom]
 			if rects == nil {
-				return e.facing.of(n, e.parts[n])
+				return e.facing.of(n, e.parts[n], e.boxes[other])
 			}
 			return outlineOf(geom.Parts{Rects: placedAll(rects, forward)})
 		}
@@ -75,7 +85,7 @@ func (e *explainer) byFacing(b *brokenGroup, edge int, u, v uint32, out *Pair) b
 			if turned {
 				q[0], q[1] = q[1], q[0]
 			}
-			offer(piece(q[0], u), piece(q[1], v))
+			offer(piece(q[0], u, v), piece(q[1], v, u))
 		}
 	}
 	if found {

@@ -46,6 +46,17 @@ func (r *Rules) Reach() int64 {
 	return reach
 }
 
+// Sight is how far from a box one must see of a shape to judge what is within reach of the box: farther than a tip is long, and than a
+// square that makes a part wide, from all that is within reach. Of a shape that is known only so far, edges end too early or are not
+// there, but none that is within reach comes to be of another kind.
+func (r *Rules) Sight() int64 {
+	more := r.TipWidth
+	for _, w := range r.Wide {
+		more = max(more, w.Width)
+	}
+	return r.Reach() + more + 1
+}
+
 // Equal tells whether all rules ask for one spacing, so that two shapes are near exactly if their distance is below it: where two
 // outlines come nearest of all is one of the places that are judged.
 func (r *Rules) Equal() bool {

@@ -1,10 +1,6 @@
 package facing
 
-import (
-	"slices"
-
-	"maskpair/decompose/geom"
-)
+import "maskpair/decompose/geom"
 
 // This file is the outline of one merged shape, in the pieces that rules look at.
 
@@ -101,6 +97,7 @@ type Maker struct {
 	merger  geom.Merger
 	outline geom.Outline
 	slanted slantedMaker
+	tidy    []geom.Rect
 }
 
 // Rect makes the shape of a single rectangle with area.
@@ -120,7 +117,7 @@ func (m *Maker) Rects(dst *Shape, rects []geom.Rect) {
 	}
 	dst.reset()
 	dst.box = boxOf(rects)
-	m.merger.Merge(&m.outline, rects)
+	m.merger.Merge(&m.outline, m.joined(rects))
 	for i := range m.outline.Loops() {
 		loop := m.outline.Loop(i)
 		for k := range loop {
@@ -146,6 +143,27 @@ func (m *Maker) Parts(dst *Shape, parts geom.Parts) {
 	m.slanted.make(dst, parts)
 	dst.addPoints(parts.Rects)
 	dst.index()
+}
+
+// joined gives fewer rectangles that cover the same, where one goes on where the one before it ends, as rails do that are drawn piece by
+// piece.
+func (m *Maker) joined(rects []geom.Rect) []geom.Rect {
+	m.tidy = m.tidy[:0]
+	for _, r := range rects {
+		if n := len(m.tidy); n > 0 {
+			last := &m.tidy[n-1]
+			if last.Y1 == r.Y1 && last.Y2 == r.Y2 && last.X1 <= r.X1 && r.X1 <= last.X2 {
+				last.X2 = max(last.X2, r.X2)
+				continue
+			}
+			if last.X1 == r.X1 && last.X2 == r.X2 && last.Y1 <= r.Y1 && r.Y1 <= last.Y2 {
+				last.Y2 = max(last.Y2, r.Y2)
+				continue
+			}
+		}
+		m.tidy = append(m.tidy, r)
+	}
+	return m.tidy
 }
 
 func (s *Shape) reset() {
@@ -221,35 +239,31 @@ type node struct {
 
 const leafEdges = 6
 
-// index sorts many edges into boxes.
+// index puts boxes around many edges. They come loop by loop and along each loop, so that halves of the row, and halves of those, are
+// near to each other as they are.
 func (s *Shape) index() {
 	if len(s.edges) > fewEdges {
 		s.split(0, len(s.edges))
 	}
 }
 
-func (s *Shape) split(first, end int) {
-	box := s.edges[first].box()
-	for i := first + 1; i < end; i++ {
-		box = box.Union(s.edges[i].box())
-	}
+func (s *Shape) split(first, end int) geom.Rect {
 	k := len(s.nodes)
-	s.nodes = append(s.nodes, node{box: box, first: int32(first), end: int32(end)})
+	s.nodes = append(s.nodes, node{first: int32(first), end: int32(end)})
+	var box geom.Rect
 	if end-first <= leafEdges {
-		return
-	}
-	tall := box.Y2-box.Y1 > box.X2-box.X1
-	slices.SortFunc(s.edges[first:end], func(a, b edge) int {
-		p, q := a.box(), b.box()
-		if tall {
-			return compare(p.Y1+p.Y2, q.Y1+q.Y2)
+		box = s.edges[first].box()
+		for i := first + 1; i < end; i++ {
+			box = box.Union(s.edges[i].box())
 		}
-		return compare(p.X1+p.X2, q.X1+q.X2)
-	})
-	mid := (first + end) / 2
-	s.split(first, mid)
-	s.nodes[k].right = int32(len(s.nodes))
-	s.split(mid, end)
+	} else {
+		mid := (first + end) / 2
+		box = s.split(first, mid)
+		s.nodes[k].right = int32(len(s.nodes))
+		box = box.Union(s.split(mid, end))
+	}
+	s.nodes[k].box = box
+	return box
 }
 
 func compare(a, b int64) int {
