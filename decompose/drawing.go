@@ -240,7 +240,7 @@ func (s *sketch) frame(l *layout) {
 		}
 	}
 	grown := func(b Box, by int64) Box { return Box{b.X1 - by, b.Y1 - by, b.X2 + by, b.Y2 + by} }
-	limit := grown(hull, 6*reach)
+	limit, around := grown(hull, 6*reach), grown(hull, 3*reach/2)
 	for i, u := range s.cycle {
 		if !s.drawn[i] {
 			continue
@@ -250,7 +250,7 @@ func (s *sketch) frame(l *layout) {
 	}
 	for i := range s.entry.Pairs {
 		p := &s.entry.Pairs[i]
-		if at := work(p.From).join(work(p.To)); at.touches(limit) {
+		if at := work(p.From).join(work(p.To)); at.touches(around) {
 			hull = hull.join(at)
 		}
 	}

@@ -84,7 +84,7 @@ const (
 	stepsShown  = 20
 	gapsShown   = 16
 	// Unresolved pairs off the cycle fill the table up to so many rows.
-	gapsElsewhere = 12
+	gapsElsewhere = 8
 	cutsShown     = 8
 	restShown     = 1000
 )
@@ -145,8 +145,13 @@ func whatItIs(u *decompose.Unresolved) string {
 	return "odd cycle of " + count(len(u.Cycle), "shape")
 }
 
-// placeOf is a point to look at.
+// placeOf is a point to look at: the first unresolved pair of the cycle, else the first of all.
 func placeOf(u *decompose.Unresolved) decompose.Spot {
+	for i := range u.Pairs {
+		if a, _ := stepsOf(u, &u.Pairs[i]); a > 0 {
+			return middle(u.Pairs[i].Gap)
+		}
+	}
 	if len(u.Pairs) > 0 {
 		return middle(u.Pairs[0].Gap)
 	}

@@ -77,6 +77,7 @@ type action = chromedp.Action[chromedp.Void]
 // start starts Chromium without a window; it needs no network.
 func start(t *testing.T) *browser {
 	t.Helper()
+	outside.Packages(t, "chromium")
 	opts := append(chromedp.DefaultExecAllocatorOptions[:],
 		chromedp.NoSandbox, chromedp.Flag("disable-gpu", true), chromedp.Flag("disable-quic", true),
 		chromedp.Flag("disable-component-update", true), chromedp.UserDataDir(t.TempDir()))
@@ -200,6 +201,9 @@ func TestPageInBrowser(t *testing.T) {
 		if n := ask[int](t, b, `[...document.querySelectorAll("table.jobs a")].filter(a => document.getElementById(a.hash.slice(1))?.matches("article.card")).length`); n != kinds {
 			t.Errorf("%d links lead to a card, of %d", n, kinds)
 		}
+		if n := ask[int](t, b, `[...document.querySelectorAll("header nav a, .map a")].filter(a => !document.getElementById((a.hash ?? a.getAttribute("href")).replace("#", ""))).length`); n > 0 {
+			t.Errorf("%d links lead nowhere", n)
+		}
 		// Each cycle's shapes have their numbers in the drawing.
 		missing := ask[[]string](t, b, `[...document.querySelectorAll("article.card")].filter(c =>
 			c.querySelectorAll(".steps li:not(.more)").length != c.querySelectorAll("svg.picture text.bead").length).map(c => c.id)`)
@@ -210,7 +214,7 @@ func TestPageInBrowser(t *testing.T) {
 
 	t.Run("words", func(t *testing.T) {
 		text := ask[string](t, b, `document.body.innerText`)
-		for _, want := range []string{"not a sign-off", "left <end>", "right & end", `measured on "silicon" & <accepted>`, "via & <pad>", hostile, "apply = true", "Moved against the baseline"} {
+		for _, want := range []string{"not a sign-off", "left <end>", "right & end", `measured on "silicon" & <accepted>`, "via & <pad>", hostile, "apply = true", "Moved against the baseline", "Too near on any masks", "Accepted by a waiver"} {
 			if !strings.Contains(text, want) {
 				t.Errorf("the page does not say %q", want)
 			}
