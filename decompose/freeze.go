@@ -284,7 +284,15 @@ func (c *frozenCheck) cluster(k *frozenCluster, m Mask, now, was map[uint32]geom
 	}
 	here, before := gather(k.shapes, now), gather(k.figures, was)
 	share := c.areas.shared(here, before)
-	lost, gained := c.areas.of(before).compare(share) != 0, c.areas.of(here).compare(share) != 0
+	lost := c.areas.of(before).compare(share) != 0
+	// Where both masks are made, new shapes are told as such.
+	known := k.shapes
+	if c.frozen == [2]bool{true, true} {
+		known = slices.DeleteFunc(slices.Clone(known), func(u uint32) bool { return c.l.memory.nodes[u]&recalledMask == NoMemory })
+	}
+	held := gather(known, now)
+	heldShare := c.areas.shared(held, before)
+	gained := c.areas.of(held).compare(heldShare) != 0
 	scale := float64(c.l.flat.forms.scale)
 	unit := scale * scale
 	edit := ""
@@ -308,15 +316,12 @@ func (c *frozenCheck) cluster(k *frozenCluster, m Mask, now, was map[uint32]geom
 	}
 	if gained {
 		box, node := emptyBox, uint32(0)
-		for _, u := range k.shapes {
+		for _, u := range known {
 			if p, ok := now[u]; ok && c.areas.shared(p, before).compare(c.areas.of(p)) != 0 {
 				box, node = box.join(boxOfParts(p)), u
 			}
 		}
-		if c.l.memory.nodes[node]&recalledMask == NoMemory && c.frozen == [2]bool{true, true} {
-			return // told as a new shape
-		}
-		c.add(FrozenFault{Kind: FrozenGained, Mask: m, Box: c.l.half(box), Area: (c.areas.of(here).float() - share.float()) / unit, Edit: c.edit(node)}, node)
+		c.add(FrozenFault{Kind: FrozenGained, Mask: m, Box: c.l.half(box), Area: (c.areas.of(held).float() - heldShare.float()) / unit, Edit: c.edit(node)}, node)
 	}
 }
 

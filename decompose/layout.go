@@ -106,6 +106,7 @@ func newLayout(ctx context.Context, h *hierarchy, sel *selection, rules *LayerRu
 	for rank, top := range h.byName {
 		l.first[rank] = shapes
 		if f.all[h.tops[top]] == 0 {
+			l.memory.lose(top)
 			continue
 		}
 		n, err := b.top(top, sets, shapes)

@@ -174,6 +174,19 @@ type memory struct {
 // looseFigure is a figure of the baseline that differs, or touches one that does; figures that hang together have one root.
 type looseFigure struct{ ordinal, root uint32 }
 
+// lose notes the figures of the baseline in a top that has none now.
+func (m *memory) lose(top int) {
+	if m == nil || !m.e.wantSame || m.e.tops[top] < 0 {
+		return
+	}
+	for _, f := range m.e.masks {
+		top := m.e.tops[top]
+		for o := f.first[top]; o < f.first[top]+f.all[f.h.tops[top]]; o++ {
+			m.loose = append(m.loose, looseFigure{uint32(o), uint32(o)})
+		}
+	}
+}
+
 // recall finds out what the shapes of the windows at hand were in the baseline. Their numbers run from begin to end; windows other than
 // the whole top are cut to their cores.
 func (b *builder) recall(top int, begin, end uint32, windows []window) error {

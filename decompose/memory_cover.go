@@ -16,7 +16,7 @@ import (
 type cover struct {
 	sets  union    // by figure of the baseline (see figure): what touches
 	masks []uint8  // by figure: 1 on A, 2 on B; 0: not looked at
-	outer []bool   // by figure: some of it lies over no shape; only where that is wanted
+	outer []bool   // by figure: some of what hangs together with it lies over no shape; only where that is wanted
 	laps  []lapped // no two equal once settled
 	area  map[uint32]*covered
 	areas areas
@@ -245,7 +245,7 @@ func (c *comparison) measure() error {
 	}
 	c.measureShapes(now, before, kept)
 	if v.outer != nil {
-		c.measureFigures(now, before, kept)
+		c.measureFigures(now, before, sets, kept)
 	}
 	return c.b.ctx.Err()
 }
@@ -385,39 +385,34 @@ func (c *comparison) part(to *geom.Parts, it *item, bands []band, polygons []*ge
 	}
 }
 
-// measureFigures finds the figures of the baseline of which some lies over no shape.
-func (c *comparison) measureFigures(now []uint32, before []former, hits []hit) {
+// measureFigures finds what hangs together in the baseline and lies over no shape in part. It goes by what hangs together, not by
+// figures: the search leaves out items that lie within others.
+func (c *comparison) measureFigures(now []uint32, before []former, sets union, hits []hit) {
 	v := c.cover
-	slices.SortFunc(hits, func(a, b hit) int { return cmp.Or(cmp.Compare(a.figure, b.figure), cmp.Compare(a.probe, b.probe)) })
-	type both struct{ was, here geom.Parts }
-	slanted := map[uint32]*both{} // by figure: a polygon is measured with all that any of its bands touches
-	at := 0
-	for i, w := range before {
-		from := at
-		for at < len(hits) && hits[at].figure == uint32(i) {
-			at++
-		}
-		f := c.figure(w)
-		if v.outer[f] {
-			continue
-		}
-		p := &both{}
-		if isBand(c.item(w).ID) {
-			if slanted[f] == nil {
-				slanted[f] = p
-			}
-			p = slanted[f]
-		}
-		c.part(&p.was, c.item(w), c.bands.Data, c.polys)
-		for _, h := range hits[from:at] {
-			c.part(&p.here, &c.b.sorted[now[h.probe]], c.b.bands.Data, c.b.polygons)
-		}
-		if !isBand(c.item(w).ID) {
-			v.outer[f] = v.areas.shared(p.was, p.here).compare(v.areas.of(p.was)) != 0
-		}
+	root := make([]uint32, len(before))
+	order := make([]uint32, len(before))
+	for i := range before {
+		root[i], order[i] = sets.find(uint32(i)), uint32(i)
 	}
-	for f, p := range slanted {
-		v.outer[f] = v.areas.shared(p.was, p.here).compare(v.areas.of(p.was)) != 0
+	slices.SortFunc(order, func(a, b uint32) int { return cmp.Or(cmp.Compare(root[a], root[b]), cmp.Compare(a, b)) })
+	for i := range hits {
+		hits[i].figure = root[hits[i].figure]
+	}
+	slices.SortFunc(hits, func(a, b hit) int { return cmp.Or(cmp.Compare(a.figure, b.figure), cmp.Compare(a.probe, b.probe)) })
+	hits = slices.Compact(hits)
+	at := 0
+	for i := 0; i < len(order); {
+		r := root[order[i]]
+		var was, here geom.Parts
+		for ; i < len(order) && root[order[i]] == r; i++ {
+			c.part(&was, c.item(before[order[i]]), c.bands.Data, c.polys)
+		}
+		for ; at < len(hits) && hits[at].figure == r; at++ {
+			c.part(&here, &c.b.sorted[now[hits[at].probe]], c.b.bands.Data, c.b.polygons)
+		}
+		if v.areas.shared(was, here).compare(v.areas.of(was)) != 0 {
+			v.outer[c.figure(before[r])] = true
+		}
 	}
 }
 
