@@ -252,12 +252,21 @@ func wires(t *testing.T, r *rand.Rand) []byte {
 				w.Property(2, "wire")
 			}
 			if r.IntN(2) == 0 {
-				at(10*r.Int32N(5), 110*k, 60+10*r.Int32N(20), 20)
+				// A ring of five: squares beside the ends of a wire, and two beyond that join them. A cut in the middle of the
+				// wire opens it.
+				at(0, 150*k, 180+10*r.Int32N(3), 20)
+				for i, dy := range []int32{45, 75, 75, 45} {
+					at(50*int32(i)+5*r.Int32N(2), 150*k+dy, 20, 20)
+				}
+				continue
+			}
+			if r.IntN(2) == 0 {
+				at(10*r.Int32N(5), 150*k, 60+10*r.Int32N(20), 20)
 			} else {
-				at(110*k, 10*r.Int32N(5), 20, 60+10*r.Int32N(20))
+				at(150*k, 10*r.Int32N(5), 20, 60+10*r.Int32N(20))
 			}
 			for range r.IntN(5) {
-				at(20*r.Int32N(14), 110*k+45+5*r.Int32N(3), 20+10*r.Int32N(3), 20)
+				at(20*r.Int32N(14), 150*k+45+5*r.Int32N(3), 20+10*r.Int32N(3), 20)
 			}
 		}
 		w.EndStructure()
@@ -265,7 +274,7 @@ func wires(t *testing.T, r *rand.Rand) []byte {
 	w.BeginStructure("top")
 	for range 1 + r.IntN(4) {
 		w.SRef(fmt.Sprintf("cell%d", r.IntN(cells)), gds.Strans{Mirror: r.IntN(2) == 0, Angle: 90 * float64(r.IntN(4))},
-			gds.Point{X: 250 * r.Int32N(4), Y: 250 * r.Int32N(4)})
+			gds.Point{X: 300 * r.Int32N(4), Y: 300 * r.Int32N(4)})
 	}
 	if r.IntN(2) == 0 {
 		w.Rectangle(gds.LayerType{Layer: 15}, rect(0, 0, 200, 200))
