@@ -27,7 +27,7 @@ type figure struct {
 }
 
 // elementRecord takes a record of an element.
-func (x *scan) elementRecord(rec gds.Record) error {
+func (x *scan) elementRecord(rec *gds.Record) error {
 	e := &x.el
 	switch rec.Kind {
 	case gds.LAYER, gds.DATATYPE, gds.TEXTTYPE, gds.BOXTYPE, gds.NODETYPE:
@@ -136,7 +136,7 @@ func rectangleWidth(xy []byte) uint32 {
 }
 
 // referenceRecord takes a record that only references have (and texts, where it says nothing of interest).
-func (x *scan) referenceRecord(rec gds.Record) error {
+func (x *scan) referenceRecord(rec *gds.Record) error {
 	e := &x.el
 	if e.kind != gds.SREF && e.kind != gds.AREF {
 		return nil
@@ -175,7 +175,7 @@ func (x *scan) referenceRecord(rec gds.Record) error {
 }
 
 // endElement counts the element that ENDEL ends.
-func (x *scan) endElement(rec gds.Record) error {
+func (x *scan) endElement(rec *gds.Record) error {
 	e := &x.el
 	x.state = inside
 	if e.kind == gds.SREF || e.kind == gds.AREF {
@@ -227,7 +227,7 @@ func (x *scan) endElement(rec gds.Record) error {
 }
 
 // endReference keeps a reference; one more to the same target joins the one before.
-func (x *scan) endReference(rec gds.Record) error {
+func (x *scan) endReference(rec *gds.Record) error {
 	e := &x.el
 	if !e.named || e.points == 0 {
 		x.state = element

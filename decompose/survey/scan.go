@@ -27,9 +27,9 @@ func Scan(ctx context.Context, r io.Reader, progress func(bytes int64)) (*Survey
 		rec := x.s.Record()
 		var err error
 		if x.state == element {
-			err = x.elementRecord(rec)
+			err = x.elementRecord(&rec)
 		} else {
-			err = x.record(rec)
+			err = x.record(&rec)
 		}
 		if err != nil {
 			return nil, err
@@ -156,7 +156,7 @@ func newScan(r io.Reader) *scan {
 }
 
 // record takes a record that stands in no element.
-func (x *scan) record(rec gds.Record) error {
+func (x *scan) record(rec *gds.Record) error {
 	switch rec.Kind {
 	case gds.BOUNDARY, gds.PATH, gds.SREF, gds.AREF, gds.TEXT, gds.BOX, gds.NODE:
 		if x.state != inside {
@@ -205,7 +205,7 @@ func (x *scan) record(rec gds.Record) error {
 func (x *scan) named() bool { return x.state == inside || x.state == element }
 
 // fault places what is wrong with a record.
-func (x *scan) fault(rec gds.Record, form string, args ...any) error {
+func (x *scan) fault(rec *gds.Record, form string, args ...any) error {
 	e := &gds.SyntaxError{Offset: rec.Offset, Record: rec.Kind, Err: fmt.Errorf(form, args...)}
 	if x.named() {
 		e.Structure = x.names[x.structure.name]
@@ -217,7 +217,7 @@ func (x *scan) fault(rec gds.Record, form string, args ...any) error {
 }
 
 // sized tells whether a record has the data type and the length that the manual fixes for it; what is wrong is a fault.
-func (x *scan) sized(rec gds.Record) error {
+func (x *scan) sized(rec *gds.Record) error {
 	if want := rec.Kind.Type(); rec.Type != want {
 		return x.fault(rec, "%w: %v holds data of type %d, not %d", gds.ErrType, rec.Kind, rec.Type, want)
 	}
@@ -227,7 +227,7 @@ func (x *scan) sized(rec gds.Record) error {
 	return nil
 }
 
-func (x *scan) readUnits(rec gds.Record) error {
+func (x *scan) readUnits(rec *gds.Record) error {
 	if err := x.sized(rec); err != nil {
 		return err
 	}
@@ -240,7 +240,7 @@ func (x *scan) readUnits(rec gds.Record) error {
 }
 
 // begin reads the name of a structure.
-func (x *scan) begin(rec gds.Record) error {
+func (x *scan) begin(rec *gds.Record) error {
 	if err := x.sized(rec); err != nil {
 		return err
 	}
