@@ -140,7 +140,25 @@ func judgeRun(f folder, s *twin.Solution, stream []byte, status int, said string
 	if err != nil {
 		return fmt.Errorf("the report: %v", err)
 	}
-	return s.CheckReport(r, v)
+	if err := s.CheckReport(r, v); err != nil {
+		return err
+	}
+	return verify(f, s, v)
+}
+
+// verify tells whether the command verify agrees about out.gds.
+func verify(f folder, s *twin.Solution, v *twin.Verdict) error {
+	want := 0
+	for i, l := range s.Layers {
+		if v.Unresolved[i] > 0 || l.AnyMask > 0 {
+			want = 1
+		}
+	}
+	status, said := f.run("verify", "@out.gds", "--deck", "@deck.toml", "--drawn", "@in.gds")
+	if status > 1 || s.Open == "" && status != want {
+		return fmt.Errorf("verify: status %d, want %d; it said: %s", status, want, said)
+	}
+	return nil
 }
 
 // layoutsVariable is the environment variable that makes random tests longer: it multiplies their numbers of layouts.

@@ -115,6 +115,9 @@ func (t *tracer) path(f *Flat) {
 	if half == 0 {
 		return
 	}
+	if kind != 0 && kind != 1 && kind != 2 && kind != 4 {
+		t.open = "a path of a type that the format does not have"
+	}
 	n := len(line)
 	if n == 1 {
 		if kind == 0 {

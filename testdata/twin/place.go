@@ -171,6 +171,9 @@ func (f *flattener) down(top string, c *Cell, at placement, depth int) error {
 				if f.left--; f.left < 0 {
 					return ErrTooMany{f.limit}
 				}
+				if e.Strans.AbsoluteMagnification || e.Strans.AbsoluteAngle {
+					f.open = "an absolute magnification or angle"
+				}
 				x, y := f.element(e, column, row)
 				if err := f.down(top, child, at.within(e.Strans, x, y), depth+1); err != nil {
 					return err

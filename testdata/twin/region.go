@@ -265,7 +265,8 @@ func distance(r, s *region, limit int64) *big.Rat {
 	bound := new(big.Rat).SetInt(new(big.Int).Mul(big.NewInt(limit), big.NewInt(limit)))
 	var best *big.Rat
 	if r.box && s.box {
-		best = new(big.Rat).SetInt64(gapX*gapX + gapY*gapY) // both below limit, which is a deck's length
+		x, y := new(big.Rat).SetInt64(gapX), new(big.Rat).SetInt64(gapY)
+		best = dot(x, y, x, y)
 	} else {
 		best = bound
 		// Floats find the pairs that may be the nearest, fractions measure these.

@@ -87,8 +87,8 @@ type Solution struct {
 
 // Limits of what is worked out.
 const (
-	MostFlat   = 20000 // flat elements and placements
-	MostShapes = 16    // of a component, for all its assignments to be tried
+	MostFlat   = 3000 // flat elements and placements
+	MostShapes = 16   // of a component, for all its assignments to be tried
 )
 
 // Solve works out what a layout, given as a stream, must come to.
@@ -226,7 +226,8 @@ func (s *Solution) layer(l *LayerSolution) {
 			best[key] = p.d
 		}
 	}
-	anyMask := big.NewRat(4*l.Layer.AnyMask*l.Layer.AnyMask, 1)
+	anyMask := new(big.Rat).SetInt64(2 * l.Layer.AnyMask)
+	anyMask.Mul(anyMask, anyMask)
 	for a := range l.Shapes {
 		for b := a + 1; b < len(l.Shapes); b++ {
 			if d := best[[2]int{a, b}]; d != nil {
