@@ -16,7 +16,8 @@ const decomposeHelp = `Puts every drawn figure of the layers that DECK.toml name
 are nearer than their same-mask spacing. The hierarchy of the layout is kept. What two masks cannot do is named: the
 smallest odd cycle or the orders that clash, the pairs that stay, and the cheapest way out.
 
-Without --output nothing is written: the command only answers, and reports.
+Without --output nothing is written: the command only answers, and reports. With --deck and nothing else it says in words
+what the deck means, and warns of rules that contradict each other.
 IN.gds may be compressed with gzip; - is standard input.
 
 Example:
@@ -42,6 +43,9 @@ func decomposeCommand(con *console, s steps, status *int) *cli.Command {
 		OnUsageError:    asUsageError,
 		Flags:           decomposeFlags(),
 		Action: func(c *cli.Context) error {
+			if onlyDeck(c) {
+				return runDeckCheck(c.String("deck"), con)
+			}
 			o, err := parseOptions(c)
 			if err != nil {
 				return err
