@@ -12,6 +12,7 @@ import (
 
 	"maskpair/cli"
 	"maskpair/testdata/orders"
+	"maskpair/testdata/twin"
 )
 
 // These tests run the whole program on small layouts with orders, wishes and baselines, and hold it against all assignments.
@@ -181,4 +182,69 @@ func TestOrders(t *testing.T) {
 	if t.Logf("%d layouts", done); done < int(layouts(1200))/4 {
 		t.Errorf("only %d layouts could be compared", done)
 	}
+}
+
+// TestOrdersVerified gives orders to layouts of any kind (slants, paths, odd placements, half units) and lets verify look whether they are
+// held; it has code of its own for what a place hits.
+func TestOrdersVerified(t *testing.T) {
+	f := newFolder(t)
+	done, failures := 0, 0
+	for seed := range layouts(1000) {
+		if failures == 5 {
+			t.Fatal("and so on")
+		}
+		r := rand.New(rand.NewPCG(seed, 21))
+		l, d := twin.Random(r)
+		var layers []orders.Layer
+		for _, k := range d.Layers {
+			layers = append(layers, orders.Layer{Name: k.Name, Drawn: k.Drawn, Masks: k.Masks, Spacing: k.Spacing})
+		}
+		stream := l.Bytes()
+		entries, err := orders.RandomEntriesFor(stream, layers, 1+r.IntN(5), r)
+		if err != nil {
+			continue // a stream that is to be refused
+		}
+		f.write("in.gds", stream)
+		f.write("deck.toml", []byte(d.TOML(l.DBU)))
+		f.write("anchors.toml", []byte(orders.FileFor(entries, layers, l.DBU)))
+		status, out, said := f.layout(nil)
+		if strings.Contains(said, "a fault in the program itself") {
+			failures++
+			t.Errorf("seed %d: %s\n%v\n%s", seed, said, l, orders.FileFor(entries, layers, l.DBU))
+		}
+		if status > 1 {
+			continue
+		}
+		done++
+		f.write("out.gds", out)
+		if status, said := f.run("verify", "@out.gds", "--deck", "@deck.toml", "--drawn", "@in.gds", "--anchors", "@anchors.toml"); status > 1 || !held(said) {
+			failures++
+			t.Errorf("seed %d: verify says, with status %d: %s\n%v\n%s\n%s", seed, status, said, l, d.TOML(l.DBU), orders.FileFor(entries, layers, l.DBU))
+		}
+		if bytes.Contains([]byte(d.TOML(l.DBU)), []byte("[marks]")) || strings.Contains(d.TOML(l.DBU), "redo") || strings.Contains(d.TOML(l.DBU), "keep_drawn") {
+			continue
+		}
+		if status, again, said := f.layout(out); status > 1 || !bytes.Equal(again, out) {
+			failures++
+			t.Errorf("seed %d: with its own output as baseline, status %d and other bytes: %s\n%v\n%s\n%s", seed, status, said, l, d.TOML(l.DBU), orders.FileFor(entries, layers, l.DBU))
+		}
+		f.write("in.gds", out)
+		if status, again, said := f.layout(nil); status > 1 || !bytes.Equal(again, out) {
+			failures++
+			t.Errorf("seed %d: with its own output as input, status %d and other bytes: %s\n%v\n%s\n%s", seed, status, said, l, d.TOML(l.DBU), orders.FileFor(entries, layers, l.DBU))
+		}
+	}
+	if t.Logf("%d layouts", done); done < int(layouts(1000))/5 {
+		t.Errorf("only %d layouts had orders that can be kept", done)
+	}
+}
+
+// held tells whether verify found the orders held, and nothing wrong with the rest but near pairs.
+func held(said string) bool {
+	for _, line := range strings.Split(said, "\n") {
+		if strings.Contains(line, "anchors, ties, markers and labels held") && !strings.HasSuffix(strings.TrimSpace(line), "ok") {
+			return false
+		}
+	}
+	return strings.Contains(said, "anchors, ties, markers and labels held")
 }

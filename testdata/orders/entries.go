@@ -4,7 +4,12 @@ import "math/rand/v2"
 
 // RandomEntries makes entries for a sketch. They may contradict each other, and a few may hit nothing.
 func RandomEntries(stream []byte, n int, r *rand.Rand) ([]Entry, error) {
-	d, err := flatten(stream, SketchLayers())
+	return RandomEntriesFor(stream, SketchLayers(), n, r)
+}
+
+// RandomEntriesFor makes entries for any stream.
+func RandomEntriesFor(stream []byte, layers []Layer, n int, r *rand.Rand) ([]Entry, error) {
+	d, err := flatten(stream, layers)
 	if err != nil || len(d.figures) == 0 {
 		return nil, err
 	}
@@ -24,6 +29,13 @@ func RandomEntries(stream []byte, n int, r *rand.Rand) ([]Entry, error) {
 			e.Cell = d.lib.Structures[f.cell].Name
 		}
 		p := spot(f)
+		if r.IntN(3) == 0 { // a point of the figure, where it is no rectangle
+			x, y := d.point(f.number)
+			if !inCell {
+				x, y = placePoint(d.placed[f.place].at, x, y)
+			}
+			p = [2]int64{x, y}
+		}
 		if r.IntN(80) == 0 {
 			p[0] += 500
 		}

@@ -107,7 +107,6 @@ func flattenUnder(stream []byte, layers []Layer, all bool) (*drawing, error) {
 	for i, t := range d.tops {
 		d.walk(int32(i), t, gds.Identity())
 	}
-	d.join()
 	return d, nil
 }
 

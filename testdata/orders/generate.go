@@ -27,6 +27,7 @@ func Generate(stream []byte, layers []Layer, t Taste, r *rand.Rand) (text string
 	if err != nil {
 		return "", 0, err
 	}
+	d.join()
 	g := &generator{Taste: t, drawing: d, r: r, parity: newParity(d.shapes + 1)}
 	if g.Placed == 0 {
 		g.Placed = 200

@@ -39,12 +39,15 @@ type Entry struct {
 	Cell     string
 }
 
-// FileOf gives entries as an anchor file in nm, for a database unit of 1 nm.
-func FileOf(entries []Entry) string {
+// FileOf gives entries for a sketch as an anchor file.
+func FileOf(entries []Entry) string { return FileFor(entries, SketchLayers(), 1e-9) }
+
+// FileFor gives entries as an anchor file in nm, for a database unit in metres.
+func FileFor(entries []Entry, layers []Layer, dbu float64) string {
 	var b strings.Builder
-	half := func(v int64) string { return strconv.FormatFloat(float64(v)/2, 'f', -1, 64) }
+	half := func(v int64) string { return strconv.FormatFloat(float64(v)/2*dbu*1e9, 'g', 12, 64) }
 	spot := func(p [2]int64) string { return "[" + half(p[0]) + ", " + half(p[1]) + "]" }
-	name := func(l int) string { return SketchLayers()[l].Name }
+	name := func(l int) string { return layers[l].Name }
 	for _, e := range entries {
 		switch e.Kind {
 		case EntryAnchor, EntryWish:
