@@ -567,8 +567,8 @@ func TestHelpAndVersion(t *testing.T) {
 		args  []string
 		words []string
 	}{
-		{[]string{"--help"}, []string{"decompose", "demo", caution}},
-		{[]string{"decompose", "--help"}, []string{"--deck", "--freeze", "Example:", "Exit status:", caution}},
+		{[]string{"--help"}, []string{"decompose", "demo", report.Caution}},
+		{[]string{"decompose", "--help"}, []string{"--deck", "--freeze", "Example:", "Exit status:", report.Caution}},
 		{[]string{"decompose", "@in.gds", "-h"}, []string{"--deck"}},
 		{[]string{"help", "decompose"}, []string{"--deck"}},
 		{[]string{"demo", "--help"}, []string{"DIR"}},

@@ -31,7 +31,7 @@ Exit status:
    4  it could not write, or was interrupted
 With 2, 3 and 4 nothing new is left at the place of an output.
 
-` + caution
+` + report.Caution
 
 func decomposeCommand(con *console, s steps, status *int) *cli.Command {
 	return &cli.Command{

@@ -248,7 +248,7 @@ func demoTell(w io.Writer, f *demoPaths, scene *picture.Scene, r *report.Report)
 		}
 		b.WriteString(strings.TrimRight(fmt.Sprintf("   %s %-56s %s", program, l[0], l[1]), " ") + "\n")
 	}
-	fmt.Fprintf(&b, "\n%s\n", caution)
+	fmt.Fprintf(&b, "\n%s\n", report.Caution)
 	_, err := w.Write(b.Bytes())
 	return err
 }

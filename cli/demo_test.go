@@ -8,6 +8,7 @@ import (
 	"strings"
 	"testing"
 
+	"maskpair/cli/report"
 	"maskpair/gds"
 )
 
@@ -36,7 +37,7 @@ func TestDemoWritesItsFiles(t *testing.T) {
 	if got := strings.Join(names, " "); got != "anchors.toml deck.toml layout.gds layout.svg masks.gds masks.svg report.html report.json" {
 		t.Errorf("the folder holds %s", got)
 	}
-	if !strings.Contains(b.out.String(), caution) {
+	if !strings.Contains(b.out.String(), report.Caution) {
 		t.Errorf("it does not give the caution")
 	}
 }

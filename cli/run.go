@@ -8,14 +8,13 @@ import (
 	"strings"
 
 	"github.com/urfave/cli/v2"
+
+	"maskpair/cli/report"
 )
 
 // This file holds the program as a function: commands, help, version, and the one place where an error is printed.
 
 const program = "maskpair"
-
-// caution is said wherever a person may take a result for more than it is.
-const caution = "The result is not a sign-off: verify it with the foundry's qualified flow and rules before any mask is made."
 
 // Run runs the program with the arguments behind its name and gives the exit status. When ctx ends, work stops within a
 // second, nothing new is left behind, and the status is 4.
@@ -63,7 +62,7 @@ func newApp(con *console, commands []*cli.Command) *cli.App {
 		UsageText: "maskpair COMMAND [options] ...\nmaskpair COMMAND --help",
 		Version:   version(),
 		Description: "Two shapes on one mask must not be nearer than the same-mask spacing. maskpair answers whether a layout\n" +
-			"can be done on two masks, writes the masks where it can, and names what cannot be done and why.\n\n" + caution,
+			"can be done on two masks, writes the masks where it can, and names what cannot be done and why.\n\n" + report.Caution,
 		HideHelpCommand: false,
 		Commands:        commands,
 		Action: func(c *cli.Context) error {

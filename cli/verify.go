@@ -9,6 +9,7 @@ import (
 
 	"github.com/urfave/cli/v2"
 
+	"maskpair/cli/report"
 	"maskpair/decompose"
 	"maskpair/decompose/verify"
 	"maskpair/gds"
@@ -32,7 +33,7 @@ Exit status:
    3  a layout cannot be processed
    4  the report could not be written, or the command was interrupted
 
-` + caution
+` + report.Caution
 
 // verifyOptions are the checked options of verify.
 type verifyOptions struct {

@@ -8,6 +8,7 @@ import (
 	"strings"
 	"unicode/utf8"
 
+	"maskpair/cli/report"
 	"maskpair/decompose"
 	"maskpair/decompose/verify"
 	"maskpair/gds"
@@ -66,7 +67,7 @@ type (
 func writeVerifyReport(w io.Writer, v *verification) error {
 	res := v.result
 	out := verifyJSON{OK: res.OK(), Faults: res.Faults(), Masked: fileJSON{v.masked.sha256, v.masked.bytes}, Tops: names(res.Tops),
-		Warnings: names(res.Warnings), Caution: caution, Layers: []verifyLayerJSON{}, Checks: []checkJSON{}}
+		Warnings: names(res.Warnings), Caution: report.Caution, Layers: []verifyLayerJSON{}, Checks: []checkJSON{}}
 	if v.drawn != nil {
 		out.Drawn = &fileJSON{v.drawn.sha256, v.drawn.bytes}
 	}
@@ -76,7 +77,7 @@ func writeVerifyReport(w io.Writer, v *verification) error {
 			l.Wishes, l.WishesKept, l.Waived, faultsJSON(l.WaivedPlaces)})
 	}
 	for _, c := range res.Checks {
-		out.Checks = append(out.Checks, checkJSON{string(c.Kind), utf8Name(c.Layer), c.Faults == 0, c.Faults, faultsJSON(c.Places)})
+		out.Checks = append(out.Checks, checkJSON{string(c.Kind), report.Text(c.Layer), c.Faults == 0, c.Faults, faultsJSON(c.Places)})
 	}
 	buffered := bufio.NewWriter(w)
 	e := json.NewEncoder(buffered)
@@ -92,7 +93,7 @@ func faultsJSON(places []verify.Place) []faultJSON {
 	out := []faultJSON{}
 	for i := range places {
 		p := &places[i]
-		out = append(out, faultJSON{utf8Name(p.Top), utf8Name(p.Structure), boxJSON(p.Box), boxJSON(p.Other), utf8Name(p.Text)})
+		out = append(out, faultJSON{report.Text(p.Top), report.Text(p.Structure), boxJSON(p.Box), boxJSON(p.Other), report.Text(p.Text)})
 	}
 	return out
 }
@@ -108,21 +109,9 @@ func boxJSON(b *decompose.Box) *[4]float64 {
 func names(list []string) []string {
 	out := []string{}
 	for _, s := range list {
-		out = append(out, utf8Name(s))
+		out = append(out, report.Text(s))
 	}
 	return out
-}
-
-// utf8Name gives a name of a stream as UTF-8: bytes that are none come out as the characters of the same number.
-func utf8Name(s string) string {
-	if utf8.ValidString(s) {
-		return s
-	}
-	var b strings.Builder
-	for i := range len(s) {
-		b.WriteRune(rune(s[i]))
-	}
-	return b.String()
 }
 
 // checkWords says what holds where a check finds nothing.
@@ -180,7 +169,7 @@ func writeVerifySummary(w io.Writer, v *verification) {
 		layers[res.Rules.Layers[i].Name] = &res.Rules.Layers[i]
 	}
 	for i, c := range res.Checks {
-		name := utf8Name(c.Layer)
+		name := report.Text(c.Layer)
 		if c.Layer == "" {
 			name = "stream"
 		}
@@ -215,7 +204,7 @@ func writeVerifySummary(w io.Writer, v *verification) {
 		if l.Wishes > 0 {
 			more = append(more, fmt.Sprintf("%d of %d wishes kept", l.WishesKept, l.Wishes))
 		}
-		line := fmt.Sprintf("%s: %d shapes, %d figures on A, %d on B", utf8Name(l.Name), l.Shapes, l.FiguresA, l.FiguresB)
+		line := fmt.Sprintf("%s: %d shapes, %d figures on A, %d on B", report.Text(l.Name), l.Shapes, l.FiguresA, l.FiguresB)
 		fmt.Fprintf(b, "  %s\n", strings.Join(append([]string{line}, more...), ", "))
 	}
 	if v.drawn == nil {
@@ -226,7 +215,7 @@ func writeVerifySummary(w io.Writer, v *verification) {
 	} else {
 		fmt.Fprintf(b, "%s: does not hold, %s.\n", v.masked.name, faultCount(res.Faults()))
 	}
-	fmt.Fprintln(b, caution)
+	fmt.Fprintln(b, report.Caution)
 }
 
 func faultCount(n int64) string {

@@ -12,6 +12,7 @@ import (
 	"strings"
 	"testing"
 
+	"maskpair/cli/report"
 	"maskpair/gds"
 )
 
@@ -111,7 +112,7 @@ func TestVerifyStatus(t *testing.T) {
 		if status >= 2 && strings.Count(errw, "\n") != 1 {
 			t.Errorf("%s: an error of more or less than one line:\n%s", c.name, errw)
 		}
-		if status < 2 && !strings.HasSuffix(errw, caution+"\n") {
+		if status < 2 && !strings.HasSuffix(errw, report.Caution+"\n") {
 			t.Errorf("%s: the caution is not the last line:\n%s", c.name, errw)
 		}
 	}
@@ -181,7 +182,7 @@ func TestVerifyReport(t *testing.T) {
 		return int(info.Size())
 	}
 	if got.OK || got.Faults != 1 || got.Masked.Bytes != size("bad.gds") || len(got.Masked.SHA256) != 64 || got.Drawn.Bytes != size("in.gds") ||
-		!slices.Equal(got.Top, []string{"chip"}) || len(got.Layers) != 1 || got.Layers[0].Shapes != 3 || got.Caution != caution {
+		!slices.Equal(got.Top, []string{"chip"}) || len(got.Layers) != 1 || got.Layers[0].Shapes != 3 || got.Caution != report.Caution {
 		t.Errorf("the report says %s", text)
 	}
 	failed := 0
@@ -236,7 +237,7 @@ func TestVerifySummary(t *testing.T) {
   not compared with what was drawn; --drawn does that
 @bad.gds: does not hold, 5 faults.
 `
-	if got := strings.ReplaceAll(errw, b.path("bad.gds"), "@bad.gds"); got != want+caution+"\n" {
-		t.Errorf("the summary is\n%swant\n%s", got, want+caution)
+	if got := strings.ReplaceAll(errw, b.path("bad.gds"), "@bad.gds"); got != want+report.Caution+"\n" {
+		t.Errorf("the summary is\n%swant\n%s", got, want+report.Caution)
 	}
 }
