@@ -7,14 +7,12 @@ package main
 
 import (
 	"bytes"
-	"context"
 	"fmt"
-	"io"
 	"os"
 	"path/filepath"
 
-	"maskpair/cli"
 	"maskpair/cli/picture"
+	"maskpair/examples/scenario"
 	"maskpair/gds"
 )
 
@@ -73,9 +71,8 @@ func draw() (map[string][]byte, error) {
 
 // run runs the program.
 func run(args ...string) error {
-	var said bytes.Buffer
-	if status := cli.Run(context.Background(), args, bytes.NewReader(nil), io.Discard, &said); status != 0 {
-		return fmt.Errorf("%s ends with status %d: %s", args[0], status, said.Bytes())
+	if status, said := scenario.Program(args...); status != 0 {
+		return fmt.Errorf("%s ends with status %d: %s", args[0], status, said)
 	}
 	return nil
 }

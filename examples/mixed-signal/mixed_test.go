@@ -1,18 +1,15 @@
 package main
 
 import (
-	"bytes"
-	"fmt"
-	"os"
 	"path/filepath"
-	"strings"
 	"testing"
 )
 
 // What must come out follows from the drawing: wires 20 apart alternate, so the bus beyond the gap has to turn over (6 wires) when two
 // lanes close the gap, and the clock (3 wires) when the guard ties it to the mirror, whose left finger is pinned.
 func TestWalk(t *testing.T) {
-	list, err := run(t.TempDir())
+	dir := t.TempDir()
+	list, err := block().Run(dir)
 	if err != nil {
 		t.Fatal(err)
 	}
@@ -37,37 +34,7 @@ func TestWalk(t *testing.T) {
 			t.Errorf("the second edit moved %v, which is not in the clock", m.Box)
 		}
 	}
-}
-
-// The table and the pictures of the README must be what the program says.
-func TestReadmeIsUpToDate(t *testing.T) {
-	dir := t.TempDir()
-	list, err := run(dir)
-	if err != nil {
-		t.Fatal(err)
-	}
-	readme, err := os.ReadFile("README.md")
-	if err != nil {
-		t.Fatal(err)
-	}
-	for i := range list {
-		if row := list[i].row(i); !strings.Contains(string(readme), row+"\n") {
-			t.Errorf("README.md lacks the row\n%s", row)
-		}
-	}
-	pictures, err := draw(dir)
-	if err != nil {
-		t.Fatal(err)
-	}
-	if len(pictures) != 3 {
-		t.Errorf("%d pictures, want 3", len(pictures))
-	}
-	for name, text := range pictures {
-		if kept, err := os.ReadFile(filepath.Join(".", name)); err != nil || !bytes.Equal(kept, text) {
-			t.Errorf("%s is not what the program draws (%v); run  go run ./examples/mixed-signal -update  and look at the change", name, err)
-		}
-		if !strings.Contains(string(readme), fmt.Sprintf("(%s)", name)) {
-			t.Errorf("README.md does not show %s", name)
-		}
+	if err := block().Stale(".", dir, list, filepath.Join("..", "..", "README.md")); err != nil {
+		t.Error(err)
 	}
 }
