@@ -101,12 +101,9 @@ func parseCompareOptions(c *cli.Context) (*compareOptions, error) {
 		}
 		o.jobs = n
 	}
-	if s := c.String("memory"); s != "" {
-		n, ok := parseSize(s)
-		if !ok {
-			return nil, usagef("--memory %s: give an amount like 4GiB, 500MB or 4096", s)
-		}
-		o.memory = n
+	var err error
+	if o.memory, err = memoryLimit(c.String("memory")); err != nil {
+		return nil, err
 	}
 	text, err := readText("deck", o.deckPath)
 	if err != nil {

@@ -10,6 +10,8 @@ import (
 	"path/filepath"
 	"strconv"
 	"strings"
+	"sync"
+	"sync/atomic"
 	"syscall"
 	"testing"
 	"time"
@@ -200,10 +202,51 @@ func TestKilled(t *testing.T) {
 	}
 }
 
+// TestRunsMeet has several runs that write to one place at once.
+func TestRunsMeet(t *testing.T) {
+	stream := openLayouts()[0].stream(t)
+	deck := openLayouts()[0].deck().TOML(0.25e-9)
+	for _, force := range []bool{false, true} {
+		f := newFolder(t)
+		f.write("in.gds", stream)
+		f.write("deck.toml", []byte(deck))
+		args := []string{"decompose", "in.gds", "--deck", "deck.toml", "--output", "out.gds", "--report", "report.json", "--quiet"}
+		if force {
+			args = append(args, "--force")
+		}
+		const runs = 6
+		var wg sync.WaitGroup
+		var done, late atomic.Int32
+		for range runs {
+			wg.Go(func() {
+				cmd, said := f.process(0, args...)
+				cmd.Run()
+				switch status := cmd.ProcessState.ExitCode(); {
+				case status == 1: // this layout has odd cycles
+					done.Add(1)
+				case status == 2 && strings.Contains(said.String(), "--force"):
+					late.Add(1)
+				default:
+					t.Errorf("%v, it said %s", cmd.ProcessState, said)
+				}
+			})
+		}
+		wg.Wait()
+		if want := map[bool]int32{false: 1, true: runs}[force]; done.Load() != want {
+			t.Errorf("force %v: %d runs were done and %d came late, want %d done", force, done.Load(), late.Load(), want)
+		}
+		if got := f.names(); got != "deck.toml in.gds out.gds report.json" {
+			t.Errorf("force %v: the folder holds %s", force, got)
+		}
+		if err := openLayouts()[0].deck().Restores(stream, f.read("out.gds")); err != nil {
+			t.Errorf("force %v: %v", force, err)
+		}
+	}
+}
+
 // TestBombsWithoutLimit gives the bombs that TestBombs has to a program that was not told how much memory it may use. It must
 // refuse them by itself; the limit of the address space only keeps the machine safe from a program that does not.
 func TestBombsWithoutLimit(t *testing.T) {
-	openBug(t, "without --memory a run has no limit")
 	f := faultBench(t)
 	f.write("in.gds", (&twin.Layout{Cells: []twin.Cell{
 		{Name: "leaf", Elements: []twin.Element{faultRect(0, 0, 4, 4)}},

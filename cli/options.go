@@ -38,7 +38,7 @@ type Options struct {
 	Freeze   Freeze // 0 none
 	Top      string // structure to decompose; "" every top
 	Jobs     int    // worker threads, at least 1
-	Memory   int64  // bytes that may be used; 0: not given
+	Memory   int64  // bytes that may be used; 0: no limit
 	Quiet    bool
 	Force    bool
 
@@ -64,7 +64,7 @@ func decomposeFlags() []cli.Flag {
 		&cli.StringFlag{Name: "freeze", Usage: "`A|B|both`: that mask is already made and must come out as in the baseline"},
 		&cli.StringFlag{Name: "top", Usage: "decompose the structure `CELL` alone"},
 		&cli.StringFlag{Name: "jobs", Usage: "use `N` threads (default: as many as there are processors); the result is the same for any"},
-		&cli.StringFlag{Name: "memory", Usage: "use at most `SIZE` of memory: 4GiB, 500MB, 4096 (bytes); K, M, G and T alone are binary"},
+		&cli.StringFlag{Name: "memory", Usage: "use at most `SIZE` of memory: 4GiB, 500MB, 4096 (bytes); K, M, G and T alone are binary (default: nine tenths of what the machine has)"},
 		&cli.BoolFlag{Name: "quiet", DisableDefaultText: true, Usage: "print nothing but errors"},
 		&cli.BoolFlag{Name: "force", DisableDefaultText: true, Usage: "replace outputs that exist"},
 	}
@@ -135,14 +135,24 @@ func parseOptions(c *cli.Context) (*Options, error) {
 		}
 		o.Jobs = n
 	}
-	if s := c.String("memory"); s != "" {
-		n, ok := parseSize(s)
-		if !ok {
-			return nil, usagef("--memory %s: give an amount like 4GiB, 500MB or 4096", s)
-		}
-		o.Memory = n
+	var err error
+	if o.Memory, err = memoryLimit(c.String("memory")); err != nil {
+		return nil, err
 	}
 	return o, o.readFiles()
+}
+
+// memoryLimit gives how many bytes a run may use: what --memory says, or, where it is not given, nine tenths of what the machine
+// has, so that a layout that cannot fit is refused instead of taking the machine down; 0 where that is not known.
+func memoryLimit(given string) (int64, error) {
+	if given == "" {
+		return machineMemory() / 10 * 9, nil
+	}
+	n, ok := parseSize(given)
+	if !ok {
+		return 0, usagef("--memory %s: give an amount like 4GiB, 500MB or 4096", given)
+	}
+	return n, nil
 }
 
 // readFiles reads deck and anchor file.

@@ -24,7 +24,7 @@ type output struct {
 	name   string // as on the command line
 	place  string // where the file goes, links followed; "" for standard output
 	stdout io.Writer
-	fresh  bool        // nothing was at the place
+	fresh  bool        // nothing was at the place, and nothing that comes up there may be replaced
 	before fs.FileInfo // what was there; nil also for a link to nothing
 	ctx    context.Context
 
@@ -49,7 +49,7 @@ func planOutput(role, path string, force bool, inputs []named, stdout io.Writer)
 	}
 	o.place = filepath.Clean(path)
 	if _, err := os.Lstat(o.place); err != nil {
-		o.fresh = true // whether the folder is fit shows in begin
+		o.fresh = !force // whether the folder is fit shows in begin
 		return o, nil
 	}
 	if o.before, _ = os.Stat(o.place); o.before != nil {

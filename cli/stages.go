@@ -3,6 +3,7 @@ package cli
 import (
 	"context"
 	"encoding/hex"
+	"fmt"
 	"io"
 
 	"maskpair/anchor"
@@ -61,7 +62,7 @@ func runDecompose(ctx context.Context, o *Options, w *work) (*report.Report, err
 	}
 	run, err := decompose.New(lib, rules, opt)
 	if err != nil {
-		return nil, err
+		return nil, ofLayout(o.Input, err)
 	}
 	defer run.Close()
 	if early != nil {
@@ -76,7 +77,7 @@ func runDecompose(ctx context.Context, o *Options, w *work) (*report.Report, err
 	}
 	result, err := run.Decompose(ctx, &anchor.Sources{File: file})
 	if err != nil {
-		return nil, err
+		return nil, ofLayout(o.Input, err)
 	}
 	if w.out != nil {
 		if err := run.Write(ctx, w.out, in.ReaderAt(), func(done int64) { w.clock.Progress(done, lib.Bytes) }); err != nil {
@@ -93,6 +94,18 @@ func runDecompose(ctx context.Context, o *Options, w *work) (*report.Report, err
 		Result:   result,
 		Warnings: run.Warnings,
 	}, nil
+}
+
+// ofLayout names the layout in an error that its content is to blame for. An error that is wrapped names its file already.
+func ofLayout(name string, err error) error {
+	switch err.(type) {
+	case *decompose.InputError, *decompose.LimitError:
+		if name == "-" {
+			name = "standard input"
+		}
+		return fmt.Errorf("%s: %w", name, err)
+	}
+	return err
 }
 
 // readBaseline indexes an earlier result.

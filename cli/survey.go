@@ -109,12 +109,9 @@ func parseSurveyOptions(c *cli.Context) (*surveyOptions, error) {
 		}
 		o.jobs = n
 	}
-	if s := c.String("memory"); s != "" {
-		n, ok := parseSize(s)
-		if !ok {
-			return nil, usagef("--memory %s: give an amount like 4GiB, 500MB or 4096", s)
-		}
-		o.memory = n
+	var err error
+	if o.memory, err = memoryLimit(c.String("memory")); err != nil {
+		return nil, err
 	}
 	return o, nil
 }

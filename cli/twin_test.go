@@ -12,6 +12,7 @@ import (
 	"testing"
 
 	"maskpair/cli"
+	"maskpair/gds"
 	"maskpair/testdata/twin"
 )
 
@@ -140,8 +141,8 @@ func judgeRun(f folder, s *twin.Solution, stream []byte, status int, said string
 	if err != nil {
 		return fmt.Errorf("the report: %v", err)
 	}
-	if err := s.CheckReport(r, v); err != nil {
-		return err
+	if err := s.CheckReport(r, v); err != nil || s.Only != "" {
+		return err // verify judges all tops
 	}
 	return verify(f, s, v)
 }
@@ -159,6 +160,66 @@ func verify(f folder, s *twin.Solution, v *twin.Verdict) error {
 		return fmt.Errorf("verify: status %d, want %d; it said: %s", status, want, said)
 	}
 	return nil
+}
+
+// TestAbsoluteTurns has placements whose magnification or angle is absolute below others that magnify or turn: what they place
+// may stand upright again, or keep its size.
+func TestAbsoluteTurns(t *testing.T) {
+	place := func(cell string, at gds.Point, s gds.Strans) twin.Element {
+		return twin.Element{Kind: twin.Reference, Text: cell, Points: []gds.Point{at}, Strans: s}
+	}
+	inner := []gds.Strans{{AbsoluteAngle: true}, {AbsoluteAngle: true, Angle: 90}, {AbsoluteMagnification: true}, {AbsoluteAngle: true, AbsoluteMagnification: true, Mirror: true}, {Magnification: 0.5}}
+	outer := []gds.Strans{{Angle: 90}, {Mirror: true, Angle: 270}, {Magnification: 3}, {Magnification: 2, Angle: 180}, {Angle: 30}}
+	f := newFolder(t)
+	for _, in := range inner {
+		for _, out := range outer {
+			l := &twin.Layout{DBU: 1e-9, Cells: []twin.Cell{
+				{Name: "leaf", Elements: []twin.Element{faultRect(0, 0, 30, 4)}},
+				{Name: "middle", Elements: []twin.Element{place("leaf", gds.Point{X: 5, Y: 5}, in)}},
+				{Name: "top", Elements: []twin.Element{place("middle", gds.Point{}, out), faultRect(-5, 20, 10, 24), faultRect(0, -20, 3, -10)}},
+			}}
+			d := twin.Deck{Layers: []twin.Layer{faultDeck.Layers[0]}}
+			d.Layers[0].Spacing = 12
+			if err := judge(f, l, &d, 1); err != nil {
+				t.Errorf("%+v inside %+v: %v", in, out, err)
+			}
+		}
+	}
+}
+
+// TestTwinTop takes one structure alone, a top or not.
+func TestTwinTop(t *testing.T) {
+	f := quickFolder(t)
+	taken := 0
+	for seed := range layouts(400) {
+		r := rand.New(rand.NewPCG(seed, 8))
+		l, d := twin.Random(r)
+		only := l.Cells[r.IntN(len(l.Cells))].Name
+		judgeOnly := func(l *twin.Layout) error {
+			stream := l.Bytes()
+			if whole, err := twin.Solve(stream, d); err != nil || whole.Status != 0 || whole.Open != "" {
+				return nil // what the other tops have wrong may be refused or not
+			}
+			s, err := twin.SolveTop(stream, d, only)
+			if err != nil {
+				return nil // a smaller layout may have lost the structure
+			}
+			f.write("in.gds", stream)
+			f.write("deck.toml", []byte(d.TOML(l.DBU)))
+			status, said := f.run("decompose", "@in.gds", "--deck", "@deck.toml", "--output", "@out.gds", "--report", "@report.json", "--force", "--top", only)
+			defer os.Remove(f.path("out.gds"))
+			defer os.Remove(f.path("report.json"))
+			taken++
+			return judgeRun(f, s, stream, status, said)
+		}
+		if err := judgeOnly(l); err != nil {
+			l, first := twin.Shrink(l, err, judgeOnly)
+			t.Fatalf("seed %d, --top %s: %v\nsmallest: %v\n%v\n%s", seed, only, err, first, l, d.TOML(l.DBU))
+		}
+	}
+	if taken < 20 {
+		t.Errorf("only %d layouts were judged", taken)
+	}
 }
 
 // layoutsVariable is the environment variable that makes random tests longer: it multiplies their numbers of layouts.

@@ -32,7 +32,7 @@ func (l *layout) checkMemory(opt *Options, before int64) error {
 		return nil
 	}
 	if need := before + l.estimate(); need > opt.Memory {
-		return &LimitError{Msg: fmt.Sprintf("layer %s: %d flat figures will need about %s of memory, more than --memory allows (%s); allow more, or decompose the blocks one by one with --top",
+		return &LimitError{Msg: fmt.Sprintf("layer %s: %d flat figures will need about %s of memory, more than the %s that this run may use; allow more with --memory, or decompose the blocks one by one with --top",
 			l.rules.Name, l.flat.total, sizeText(need), sizeText(opt.Memory))}
 	}
 	return nil

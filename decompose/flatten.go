@@ -271,15 +271,17 @@ func (f *flat) collectOdd(top int, odd *oddFigures) error {
 	if !f.h.odd[t] {
 		return nil
 	}
-	return f.collectOddIn(odd, t, gds.Identity(), f.first[top])
+	return f.collectOddIn(odd, t, gds.Identity(), false, f.first[top])
 }
 
-func (f *flat) collectOddIn(odd *oddFigures, s int32, at gds.Transform, ordinal uint64) error {
-	if f.all[s] == 0 || at.Rigid() && !f.h.odd[s] {
+// collectOddIn collects under a structure placed at a place; below tells whether a magnification or an odd angle is on the way
+// there, even where the place itself has neither, since two of them cancel out.
+func (f *flat) collectOddIn(odd *oddFigures, s int32, at gds.Transform, below bool, ordinal uint64) error {
+	if f.all[s] == 0 || !below && !f.h.odd[s] {
 		return nil
 	}
 	st := &f.lib.Structures[s]
-	if !at.Rigid() {
+	if below {
 		next := ordinal
 		for i := st.FirstFigure; i < st.EndFigure; i++ {
 			if !f.figure(i) {
@@ -298,7 +300,8 @@ func (f *flat) collectOddIn(odd *oddFigures, s int32, at gds.Transform, ordinal 
 			continue
 		}
 		n := elements(f.lib, ref)
-		if at.Rigid() && rigid(f.lib, ref) && !f.h.odd[ref.Target] {
+		inner := below || !rigid(f.lib, ref)
+		if !inner && !f.h.odd[ref.Target] {
 			ordinal += uint64(n) * f.all[ref.Target]
 			continue
 		}
@@ -309,7 +312,7 @@ func (f *flat) collectOddIn(odd *oddFigures, s int32, at gds.Transform, ordinal 
 		}
 		for row := range rows {
 			for column := range columns {
-				if err := f.collectOddIn(odd, ref.Target, gds.Compose(at, ref, p, column, row), ordinal); err != nil {
+				if err := f.collectOddIn(odd, ref.Target, gds.Compose(at, ref, p, column, row), inner, ordinal); err != nil {
 					return err
 				}
 				ordinal += f.all[ref.Target]

@@ -63,9 +63,14 @@ func (l *lattice) element(column, row int64) placement {
 	return p
 }
 
-// rigid tells whether a reference places by an orientation and a shift alone.
+// rigid tells whether a reference places by an orientation and a shift alone. With an absolute angle the turn depends on what
+// holds the reference; an absolute magnification of 1 is none unless something above magnifies, which is not rigid itself.
 func rigid(lib *gds.Library, ref *gds.Ref) bool {
-	return ref.Extra == 0 || lib.Placements[ref.Extra-1].Exact
+	if ref.Extra == 0 {
+		return true
+	}
+	p := &lib.Placements[ref.Extra-1]
+	return p.Exact && !p.AbsoluteAngle
 }
 
 // elements is the number of placements that a reference makes.

@@ -29,35 +29,20 @@ func (s *Solution) Check(stream []byte) (*Verdict, error) {
 	if want, got := s.Layout.Tops(), out.Tops(); !slices.Equal(want, got) {
 		return nil, fmt.Errorf("the output has the tops %q, want %q", got, want)
 	}
-	roles := s.Deck.roles()
-	found := make([]map[place]*[3]int, len(s.Layers)) // how often drawn, on A, on B
-	for i := range found {
-		found[i] = map[place]*[3]int{}
-	}
-	others := map[string]int{} // how often all else is in the output, less how often in the input
-	count := func(f Flat, n int) {
-		others[fmt.Sprintf("%s: %s %s", f.Top, layerName(f.Element.Layer), f.Key())] += n
-	}
-	if _, err := out.Flatten(2*MostFlat, func(f Flat) {
-		r, ok := roles[f.Element.Layer]
-		if !ok || f.Kind > Path {
-			count(f, 1)
-			return
-		}
-		p := place{f.Top, f.Key()}
-		if found[r.layer][p] == nil {
-			found[r.layer][p] = new([3]int)
-		}
-		found[r.layer][p][r.arrives+1]++
-	}); err != nil {
+	found, err := s.figures(out, s.tops())
+	if err != nil {
 		return nil, fmt.Errorf("the output: %v", err)
 	}
-	if _, err := s.Layout.Flatten(MostFlat, func(f Flat) {
-		if _, ok := roles[f.Element.Layer]; !ok || f.Kind > Path {
-			count(f, -1)
+	roles := s.Deck.roles()
+	others := map[string]int{} // how often all else is in the output, less how often in the input
+	for n, l := range map[int]*Layout{1: out, -1: s.Layout} {
+		if _, err := l.Flatten(2*MostFlat, func(f Flat) {
+			if _, ok := roles[f.Element.Layer]; !ok || f.Kind > Path {
+				others[fmt.Sprintf("%s: %s %s", f.Top, layerName(f.Element.Layer), f.Key())] += n
+			}
+		}); err != nil {
+			return nil, err
 		}
-	}); err != nil {
-		return nil, err
 	}
 	for _, key := range slices.Sorted(maps.Keys(others)) {
 		n := others[key]
@@ -81,7 +66,86 @@ func (s *Solution) Check(stream []byte) (*Verdict, error) {
 		}
 		v.Masks, v.Unresolved = append(v.Masks, masks), append(v.Unresolved, n)
 	}
+	if s.Only != "" && s.Open == "" {
+		return v, s.checkBeside(out, v)
+	}
 	return v, nil
+}
+
+// figures gives by deck layer how often each figure is in a layout drawn, on A and on B, under some cells.
+func (s *Solution) figures(l *Layout, tops []string) ([]map[place]*[3]int, error) {
+	roles := s.Deck.roles()
+	found := make([]map[place]*[3]int, len(s.Layers))
+	for i := range found {
+		found[i] = map[place]*[3]int{}
+	}
+	_, err := l.flatten(tops, "", 2*MostFlat, func(f Flat) {
+		if r, ok := roles[f.Element.Layer]; ok && f.Kind <= Path {
+			add(found[r.layer], f, r.arrives)
+		}
+	})
+	return found, err
+}
+
+func add(found map[place]*[3]int, f Flat, m Mask) {
+	p := place{f.Top, f.Key()}
+	if found[p] == nil {
+		found[p] = new([3]int)
+	}
+	found[p][m+1]++
+}
+
+// checkBeside judges the other tops where one structure was taken alone: what they place under it is on the masks that it has
+// there, all else is as it was.
+func (s *Solution) checkBeside(out *Layout, v *Verdict) error {
+	tops := slices.DeleteFunc(s.Layout.Tops(), func(top string) bool { return top == s.Only })
+	got, err := s.figures(out, tops)
+	if err != nil {
+		return fmt.Errorf("the output: %v", err)
+	}
+	roles := s.Deck.roles()
+	want := make([]map[place]*[3]int, len(s.Layers))
+	for i := range want {
+		want[i] = map[place]*[3]int{}
+	}
+	placement, next := 0, make([]int, len(s.Layers)) // figures come in the same order in each placement
+	if _, err := s.Layout.flatten(tops, s.Only, 2*MostFlat, func(f Flat) {
+		r, ok := roles[f.Element.Layer]
+		if !ok || f.Kind > Path {
+			return
+		}
+		m := r.arrives
+		if f.within > 0 {
+			if f.within != placement {
+				placement, next = f.within, make([]int, len(s.Layers))
+			}
+			l := &s.Layers[r.layer]
+			fig := &l.Figures[next[r.layer]]
+			next[r.layer]++
+			if fig.region != nil && (m == Drawn || l.Redo) {
+				if m == Drawn && l.KeepDrawn {
+					add(want[r.layer], f, Drawn)
+				}
+				m = v.Masks[r.layer][fig.shape]
+			}
+		}
+		add(want[r.layer], f, m)
+	}); err != nil {
+		return err
+	}
+	for i := range want {
+		for p, n := range want[i] {
+			if got[i][p] == nil || *got[i][p] != *n {
+				return fmt.Errorf("%s: beside %s, a figure ought to be %v times drawn, on A, on B, and is %v: %s: %s", s.Layers[i].Name, s.Only, *n, got[i][p], p.top, p.key)
+			}
+		}
+		for p, n := range got[i] {
+			if want[i][p] == nil {
+				return fmt.Errorf("%s: beside %s, the output has %v times drawn, on A, on B what the input has not: %s: %s", s.Layers[i].Name, s.Only, *n, p.top, p.key)
+			}
+		}
+	}
+	return nil
 }
 
 // mark tells whether what the key names lies on a layer of marks.

@@ -9,69 +9,68 @@ import (
 
 // This file flattens a layout: every element at every place that the hierarchy gives it.
 
-// placement takes points of a cell to the top. While all turns are quarter turns and all magnifications whole it counts in
-// whole units; else in floats, which decide nothing: what they leave near the middle between two units makes a layout open.
+// placement takes points of a cell to the top: mirrored about the x axis, magnified, turned and moved, in this order. While
+// all turns are quarter turns and all magnifications whole it counts in whole units; else in floats, which decide nothing: what
+// they leave near the middle between two units makes a layout open.
 type placement struct {
+	mirror     bool
+	scale      float64 // what a width that is not absolute is multiplied with
+	angle      float64 // degrees, counter-clockwise
 	exact      bool
-	a, b, c, d int64 // (x, y) goes to (a*x + b*y + x0, c*x + d*y + y0)
+	a, b, c, d int64 // where exact: (x, y) goes to (a*x + b*y + x0, c*x + d*y + y0)
 	x, y       int64
-	fa, fb     float64
+	fa, fb     float64 // else the same in floats
 	fc, fd     float64
 	fx, fy     float64
-	scale      float64 // what a width that is not absolute is multiplied with
 }
 
 var upright = placement{exact: true, a: 1, d: 1, scale: 1}
 
-// floats gives the placement counted in floats.
-func (p placement) floats() placement {
-	if p.exact {
-		p.fa, p.fb, p.fc, p.fd = float64(p.a), float64(p.b), float64(p.c), float64(p.d)
-		p.fx, p.fy = float64(p.x), float64(p.y)
-		p.exact = false
-	}
-	return p
-}
-
-// within gives the placement of what s and the place (x, y) put into a cell that p places.
+// within gives the placement of what s and the place (x, y) put into a cell that p places. An absolute magnification or angle
+// stands in place of what the parents add up to; where something lies and whether it is mirrored is not touched by it (GDSII
+// Stream Format Manual 6.0, STRANS).
 func (p placement) within(s gds.Strans, x, y int64) placement {
 	mag := s.Magnification
 	if mag == 0 {
 		mag = 1
 	}
-	quarters := s.Angle / 90
-	if p.exact && quarters == math.Trunc(quarters) && mag == math.Trunc(mag) && mag < 1<<20 && !s.AbsoluteMagnification && !s.AbsoluteAngle {
-		m := int64(mag)
-		q := placement{exact: true, a: 1, d: 1}
-		if s.Mirror {
-			q.d = -1
+	q := placement{mirror: p.mirror != s.Mirror, scale: p.scale * mag, angle: p.angle + s.Angle}
+	if p.mirror {
+		q.angle = p.angle - s.Angle
+	}
+	if s.AbsoluteMagnification {
+		q.scale = mag
+	}
+	if s.AbsoluteAngle {
+		q.angle = s.Angle
+	}
+	q.angle = math.Mod(q.angle, 360)
+	if quarters := q.angle / 90; p.exact && quarters == math.Trunc(quarters) && q.scale == math.Trunc(q.scale) && q.scale < 1<<20 {
+		q.exact = true
+		q.a, q.d = int64(q.scale), int64(q.scale)
+		if q.mirror {
+			q.d = -q.d
 		}
-		for range ((int64(quarters) % 4) + 4) % 4 {
+		for range (int64(quarters) + 4) % 4 {
 			q.a, q.b, q.c, q.d = -q.c, -q.d, q.a, q.b // a quarter turn more: (x, y) to (-y, x)
 		}
-		return placement{
-			exact: true, scale: p.scale * mag,
-			a: m * (p.a*q.a + p.b*q.c), b: m * (p.a*q.b + p.b*q.d),
-			c: m * (p.c*q.a + p.d*q.c), d: m * (p.c*q.b + p.d*q.d),
-			x: p.a*x + p.b*y + p.x, y: p.c*x + p.d*y + p.y,
-		}
+		q.x, q.y = p.a*x+p.b*y+p.x, p.c*x+p.d*y+p.y
+		return q
 	}
-	f := p.floats()
-	sin, cos := math.Sincos(s.Angle * math.Pi / 180)
-	if quarters == math.Trunc(quarters) {
+	sin, cos := math.Sincos(q.angle * math.Pi / 180)
+	if quarters := q.angle / 90; quarters == math.Trunc(quarters) {
 		sin, cos = math.Round(sin), math.Round(cos)
 	}
-	qa, qb, qc, qd := mag*cos, -mag*sin, mag*sin, mag*cos
-	if s.Mirror {
-		qb, qd = -qb, -qd
+	q.fa, q.fb, q.fc, q.fd = q.scale*cos, -q.scale*sin, q.scale*sin, q.scale*cos
+	if q.mirror {
+		q.fb, q.fd = -q.fb, -q.fd
 	}
-	fx, fy := float64(x), float64(y)
-	return placement{
-		scale: p.scale * mag,
-		fa:    f.fa*qa + f.fb*qc, fb: f.fa*qb + f.fb*qd,
-		fc: f.fc*qa + f.fd*qc, fd: f.fc*qb + f.fd*qd,
-		fx: f.fa*fx + f.fb*fy + f.fx, fy: f.fc*fx + f.fd*fy + f.fy,
+	if p.exact {
+		q.fx, q.fy = float64(p.a*x+p.b*y+p.x), float64(p.c*x+p.d*y+p.y)
+	} else {
+		q.fx, q.fy = p.fa*float64(x)+p.fb*float64(y)+p.fx, p.fc*float64(x)+p.fd*float64(y)+p.fy
 	}
+	return q
 }
 
 // apply gives the place of a point in floats.
@@ -92,8 +91,9 @@ func (p placement) whole(q gds.Point) (x, y int64) {
 // Flat is an element at a place.
 type Flat struct {
 	*Element
-	Top string
-	at  placement
+	Top    string
+	at     placement
+	within int // the placement of the watched cell that holds it, from 1; 0: none
 }
 
 // Key names the element at its place, without its layer: equal keys are equal figures with equal records.
@@ -131,25 +131,39 @@ type flattener struct {
 	left  int
 	limit int
 	open  string // why places are not certain
+	watch string // a cell whose placements are numbered
+	seen  int    // of them
 	emit  func(Flat)
 }
 
 // Flatten gives every element that is no reference at every place under every top, depth first. References to cells that are
 // not there give nothing. Not more than limit elements and placements are gone through.
 func (l *Layout) Flatten(limit int, emit func(Flat)) (open string, err error) {
-	f := flattener{l: l, cells: map[string]*Cell{}, left: limit, limit: limit, emit: emit}
+	return l.flatten(l.Tops(), "", limit, emit)
+}
+
+// flatten goes down from some cells, and numbers the placements of another that it comes across.
+func (l *Layout) flatten(tops []string, watch string, limit int, emit func(Flat)) (open string, err error) {
+	f := flattener{l: l, cells: map[string]*Cell{}, left: limit, limit: limit, watch: watch, emit: emit}
 	for i := range l.Cells {
 		f.cells[l.Cells[i].Name] = &l.Cells[i]
 	}
-	for _, top := range l.Tops() {
-		if err := f.down(top, f.cells[top], upright, 0); err != nil {
+	for _, top := range tops {
+		if f.cells[top] == nil {
+			return "", fmt.Errorf("there is no cell %s", top)
+		}
+		if err := f.down(top, f.cells[top], upright, 0, 0); err != nil {
 			return "", err
 		}
 	}
 	return f.open, nil
 }
 
-func (f *flattener) down(top string, c *Cell, at placement, depth int) error {
+func (f *flattener) down(top string, c *Cell, at placement, depth, within int) error {
+	if c.Name == f.watch && c.Name != top {
+		f.seen++
+		within = f.seen
+	}
 	if depth > len(f.l.Cells) {
 		return fmt.Errorf("a loop of references at %s", c.Name)
 	}
@@ -159,7 +173,7 @@ func (f *flattener) down(top string, c *Cell, at placement, depth int) error {
 			return ErrTooMany{f.limit}
 		}
 		if e.Kind < Reference {
-			f.emit(Flat{e, top, at})
+			f.emit(Flat{e, top, at, within})
 			continue
 		}
 		child := f.cells[e.Text]
@@ -171,11 +185,8 @@ func (f *flattener) down(top string, c *Cell, at placement, depth int) error {
 				if f.left--; f.left < 0 {
 					return ErrTooMany{f.limit}
 				}
-				if e.Strans.AbsoluteMagnification || e.Strans.AbsoluteAngle {
-					f.open = "an absolute magnification or angle"
-				}
 				x, y := f.element(e, column, row)
-				if err := f.down(top, child, at.within(e.Strans, x, y), depth+1); err != nil {
+				if err := f.down(top, child, at.within(e.Strans, x, y), depth+1, within); err != nil {
 					return err
 				}
 			}

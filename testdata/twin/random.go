@@ -428,6 +428,10 @@ func (m *maker) reference(name string) Element {
 		if m.chance(50) {
 			e.Strans.Angle = []float64{45, 30, 225, 37.5, 1, 359}[m.r.IntN(6)]
 		}
+		e.Strans.AbsoluteMagnification, e.Strans.AbsoluteAngle = m.chance(10), m.chance(10)
+	}
+	if m.chance(m.Odd / 2) {
+		e.Strans.AbsoluteMagnification, e.Strans.AbsoluteAngle = m.chance(50), m.chance(80)
 	}
 	return e
 }

@@ -83,7 +83,7 @@ func (s *Solution) CheckReport(r *Report, v *Verdict) error {
 	if len(r.Layers) != len(s.Layers) {
 		return fmt.Errorf("the report has %d layers, want %d", len(r.Layers), len(s.Layers))
 	}
-	tops := s.Layout.Tops()
+	tops := s.tops()
 	if slices.ContainsFunc(tops, func(name string) bool { return !utf8.ValidString(name) }) {
 		tops = slices.Clone(r.Input.Top) // JSON cannot hold such a name as it is
 	}
@@ -166,6 +166,9 @@ func (s *Solution) checkReport(l *LayerSolution, r *ReportLayer, masks []Mask) e
 			return fmt.Errorf("mask_area_dbu2 of %v is %v, want %s", m, got, want.RatString())
 		}
 	}
+	if slices.ContainsFunc(s.tops(), func(name string) bool { return !utf8.ValidString(name) }) {
+		return nil // the entries name their tops otherwise
+	}
 	return l.checkUnresolved(r, masks)
 }
 
@@ -239,6 +242,11 @@ func (l *LayerSolution) checkUnresolved(r *ReportLayer, masks []Mask) error {
 				return fmt.Errorf("%s: from %v to %v is %g, the distance is %g", where, p.From, p.To, d, math.Sqrt(p.DistanceSq))
 			}
 		}
+		for _, p := range u.Pairs {
+			if w := l.widen(p.DistanceSq); p.Widen == nil || *p.Widen != w {
+				return fmt.Errorf("%s: a pair at a square distance of %g must widen by %d, want %d", where, p.DistanceSq, *p.Widen, w)
+			}
+		}
 		var cycle [][4]float64
 		for _, c := range u.Cycle {
 			k := l.shapeAt(u.Top, c.Box)
@@ -264,6 +272,30 @@ func (l *LayerSolution) checkUnresolved(r *ReportLayer, masks []Mask) error {
 			if !l.near(u.Top, before, cycle[j]) {
 				return fmt.Errorf("%s: %v and %v follow in the cycle and are no near pair", where, before, cycle[j])
 			}
+		}
+	}
+	for i, u := range r.Unresolved {
+		if u.Cause != "odd_cycle" {
+			continue
+		}
+		least := 0
+		through := false
+		for _, p := range u.Pairs {
+			for _, pair := range l.Pairs {
+				x, y := l.boxOf(pair.A), l.boxOf(pair.B)
+				if l.Shapes[pair.A].Top == u.Top && masks[pair.A] == masks[pair.B] && (x == p.A && y == p.B || x == p.B && y == p.A) {
+					if n := l.oddCycle(pair); n > 0 && (least == 0 || n < least) {
+						least = n
+					}
+				}
+			}
+			for j := range u.Cycle {
+				a, b := u.Cycle[j].Box, u.Cycle[(j+1)%len(u.Cycle)].Box
+				through = through || a == p.A && b == p.B || a == p.B && b == p.A
+			}
+		}
+		if len(u.Cycle) != least || !through {
+			return fmt.Errorf("unresolved[%d]: a cycle of %d shapes, through one of its pairs: %v; the smallest odd cycle through one has %d", i, len(u.Cycle), through, least)
 		}
 	}
 	for k, n := range want {
@@ -302,4 +334,42 @@ func (l *LayerSolution) near(top string, a, b [4]float64) bool {
 		}
 	}
 	return false
+}
+
+// widen gives by how many whole units a distance falls short of the spacing.
+func (l *LayerSolution) widen(square float64) int64 {
+	d := math.Sqrt(square)
+	w := int64(math.Ceil(float64(l.Spacing) - d - 1e-9))
+	return max(w, 1)
+}
+
+// oddCycle gives the length of the shortest odd cycle through a pair, 0 where there is none: longer and longer paths are
+// tried.
+func (l *LayerSolution) oddCycle(pair NearPair) int {
+	c := &l.Components[l.Shapes[pair.A].Component]
+	neighbours := map[int][]int{}
+	for _, i := range c.Pairs {
+		p := l.Pairs[i]
+		neighbours[p.A] = append(neighbours[p.A], p.B)
+		neighbours[p.B] = append(neighbours[p.B], p.A)
+	}
+	on := map[int]bool{}
+	var reaches func(k, left int) bool
+	reaches = func(k, left int) bool {
+		if k == pair.B {
+			return left == 0
+		}
+		if left == 0 || on[k] {
+			return false
+		}
+		on[k] = true
+		defer delete(on, k)
+		return slices.ContainsFunc(neighbours[k], func(n int) bool { return reaches(n, left-1) })
+	}
+	for length := 2; length < len(c.Shapes); length += 2 {
+		if reaches(pair.A, length) {
+			return length + 1
+		}
+	}
+	return 0
 }

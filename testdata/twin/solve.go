@@ -79,6 +79,7 @@ type LayerSolution struct {
 type Solution struct {
 	Layout *Layout
 	Deck   *Deck
+	Only   string // the structure that is taken alone; "": all tops
 	Open   string // not empty: what the contract leaves open here; shapes and pairs may rightly come out otherwise
 	Status int    // 0: it can be processed; else the exit status with which it must be refused
 	Why    string // why it must be refused
@@ -92,17 +93,20 @@ const (
 )
 
 // Solve works out what a layout, given as a stream, must come to.
-func Solve(stream []byte, d *Deck) (*Solution, error) {
+func Solve(stream []byte, d *Deck) (*Solution, error) { return SolveTop(stream, d, "") }
+
+// SolveTop works out what a layout must come to where one structure is taken alone; "" stands for all tops.
+func SolveTop(stream []byte, d *Deck, only string) (*Solution, error) {
 	l, err := Read(stream)
 	if err != nil {
 		return nil, err
 	}
-	s := &Solution{Layout: l, Deck: d, Layers: make([]LayerSolution, len(d.Layers))}
+	s := &Solution{Layout: l, Deck: d, Only: only, Layers: make([]LayerSolution, len(d.Layers))}
 	for i := range d.Layers {
 		s.Layers[i].Layer = &d.Layers[i]
 	}
 	roles := d.roles()
-	open, err := l.Flatten(MostFlat, func(f Flat) {
+	open, err := l.flatten(s.tops(), "", MostFlat, func(f Flat) {
 		r, ok := roles[f.Element.Layer]
 		if ok && f.Kind <= Path {
 			s.take(&s.Layers[r.layer], f, r.arrives)
@@ -118,6 +122,14 @@ func Solve(stream []byte, d *Deck) (*Solution, error) {
 		s.layer(&s.Layers[i])
 	}
 	return s, nil
+}
+
+// tops gives the structures that are decomposed.
+func (s *Solution) tops() []string {
+	if s.Only != "" {
+		return []string{s.Only}
+	}
+	return s.Layout.Tops()
 }
 
 // take notes a figure.
@@ -160,7 +172,7 @@ func (r *region) within() bool {
 // fades tells whether a figure that was rounded at its place covers something as drawn and nothing there, or the other way
 // round. The contract does not say which of the two counts.
 func (f *Figure) fades() bool {
-	drawn := Flat{f.Element, f.Top, upright}
+	drawn := Flat{Element: f.Element, Top: f.Top, at: upright}
 	points, nonZero, _, _, _ := drawn.outline()
 	return (newRegion(points, nonZero) == nil) != (f.region == nil)
 }

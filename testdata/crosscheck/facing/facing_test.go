@@ -51,7 +51,10 @@ func draw(rng *rand.Rand, slanted bool) *layout {
 		l.Figures = append(l.Figures, [][2]int32{{x, y}, {x + w, y}, {x + w, y + h}, {x, y + h}})
 		if slanted && rng.IntN(4) == 0 {
 			x, y = x+rng.Int32N(w+1), y+rng.Int32N(h+1)
-			l.Figures = append(l.Figures, [][2]int32{{x, y}, {x + 3 + rng.Int32N(30), y + rng.Int32N(10)}, {x + rng.Int32N(10), y + 3 + rng.Int32N(30)}})
+			ux, uy, vx, vy := 3+rng.Int32N(30), rng.Int32N(10), rng.Int32N(10), 3+rng.Int32N(30)
+			if ux*vy != uy*vx { // the judge would join what a line touches; a figure without area is none
+				l.Figures = append(l.Figures, [][2]int32{{x, y}, {x + ux, y + uy}, {x + vx, y + vy}})
+			}
 		}
 	}
 	if !slanted && rng.IntN(2) == 0 {
