@@ -8,6 +8,7 @@ require (
 	github.com/crillab/gophersat v1.4.0
 	github.com/google/go-cmp v0.7.0
 	github.com/peterstace/simplefeatures v0.50.0
+	github.com/santhosh-tekuri/jsonschema/v6 v6.0.3
 	gonum.org/v1/gonum v0.17.0
 	maskpair v0.0.0
 )
@@ -20,6 +21,7 @@ require (
 	github.com/urfave/cli/v2 v2.27.7 // indirect
 	github.com/xrash/smetrics v0.0.0-20240521201337-686a1a2994c1 // indirect
 	golang.org/x/sync v0.25.0 // indirect
+	golang.org/x/text v0.23.0 // indirect
 )
 
 replace maskpair => ../..

@@ -24,6 +24,7 @@ import (
 
 // written is a report page with the JSON of the same run.
 type written struct {
+	dir    string // with the layouts, decks and masks
 	page   string // path
 	report map[string]any
 }
@@ -53,7 +54,7 @@ func write(t *testing.T) *written {
 	}
 	run("decompose", "before.gds", "--deck", "deck.toml", "--anchors", "anchors.toml", "--output", "masks.gds")
 	run("decompose", "layout.gds", "--deck", "deck.toml", "--anchors", "anchors.toml", "--baseline", "masks.gds", "--report", "report.json", "--html", "report.html")
-	w := &written{page: path("report.html")}
+	w := &written{dir: dir, page: path("report.html")}
 	data, err := os.ReadFile(path("report.json"))
 	if err != nil {
 		t.Fatal(err)

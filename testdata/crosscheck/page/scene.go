@@ -53,8 +53,8 @@ reason = "measured on \"silicon\" & <accepted>"
 `
 
 // makeScene draws the scene. Layer wire has one kind of odd cycle three times, which a cut resolves; one with slanted and bent shapes;
-// and orders that clash. Layer via has triangles: two to be mended, one accepted. One pair is too near on any masks. Since the edit
-// a shape more makes others move.
+// and orders that clash. Layer via has triangles: two to be mended, one accepted. One pair is too near on any masks, one
+// shape to itself. Since the edit a shape more makes others move.
 func makeScene() (*scene, error) {
 	draw := func(edited bool) ([]byte, error) {
 		var out bytes.Buffer
@@ -92,6 +92,9 @@ func makeScene() (*scene, error) {
 		w.SRef("pads", gds.Strans{Angle: 180}, gds.Point{X: 3000, Y: 2000})
 		box(wire, 0, 3000, 20, 3300)
 		box(wire, 30, 3000, 50, 3300) // 10 apart
+		box(wire, 4000, 0, 4300, 20)  // a U, whose arms are 20 apart
+		box(wire, 4000, 0, 4020, 60)
+		box(wire, 4000, 40, 4300, 60)
 		bars := func(from, n int32) {
 			for x := range n {
 				box(wire, from+40*x, 4000, from+40*x+20, 4300)
