@@ -123,6 +123,12 @@ func (e element) find(kind gds.Kind) record {
 	return nil
 }
 
+// cut tells whether the element is a piece of the figure that byHand names so by its property.
+func (e element) cut() bool {
+	v := e.find(gds.PROPVALUE)
+	return v != nil && strings.HasPrefix(string(v.data()), "cut")
+}
+
 func (e element) figure() bool    { return e.kind() == gds.BOUNDARY || e.kind() == gds.PATH }
 func (e element) reference() bool { return e.kind() == gds.SREF || e.kind() == gds.AREF }
 
@@ -337,7 +343,7 @@ var breakers = []breaker{
 	change("a label with another text", isKind(gds.TEXT), func(_ *masked, e *element, _ *rand.Rand) {
 		(*e)[indexOf(*e, gds.STRING)] = newRecord(gds.STRING, []byte("other"))
 	}),
-	change("a property gone", has(gds.PROPATTR), func(_ *masked, e *element, _ *rand.Rand) {
+	change("a property gone", func(_ *masked, e element) bool { return e.find(gds.PROPATTR) != nil && !e.cut() }, func(_ *masked, e *element, _ *rand.Rand) {
 		i := indexOf(*e, gds.PROPATTR)
 		*e = without(without(*e, i), i)
 	}),
@@ -622,7 +628,7 @@ var breakers = []breaker{
 	}},
 	{name: "a piece without its property", do: func(m *masked, l *library, rng *rand.Rand) bool {
 		s, at, ok := pick(l, rng, func(_ *structure, e element) bool {
-			return m.onMask(e) && e.find(gds.PROPVALUE) != nil && strings.HasPrefix(string(e.find(gds.PROPVALUE).data()), "cut")
+			return m.onMask(e) && e.cut()
 		})
 		if ok {
 			e := s.elements[at]
