@@ -61,7 +61,7 @@ func decomposeFlags() []cli.Flag {
 		&cli.StringFlag{Name: "baseline", Usage: "as few shapes as possible leave the mask that they have in `EARLIER.gds`, an earlier result"},
 		&cli.StringFlag{Name: "report", Usage: "write the full account to `REPORT.json`"},
 		&cli.StringFlag{Name: "html", Usage: "write a page for a person, with drawings of what is to be mended, to `REPORT.html`"},
-		&cli.StringFlag{Name: "freeze", Usage: "`A|B|both`: that mask is already made and must come out as in the baseline"},
+		&cli.StringFlag{Name: "freeze", Usage: "mask `A|B|both` is already made and must come out as in the baseline"},
 		&cli.StringFlag{Name: "top", Usage: "decompose the structure `CELL` alone"},
 		&cli.StringFlag{Name: "jobs", Usage: "use `N` threads (default: as many as there are processors); the result is the same for any"},
 		&cli.StringFlag{Name: "memory", Usage: "use at most `SIZE` of memory: 4GiB, 500MB, 4096 (bytes); K, M, G and T alone are binary (default: nine tenths of what the machine has)"},

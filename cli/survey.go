@@ -228,7 +228,7 @@ func openStream(path string, stdin io.Reader) (*stream, error) {
 	if path != "-" {
 		f, err := os.Open(path)
 		if err != nil {
-			return nil, fmt.Errorf("%s: %w", path, reason(err))
+			return nil, fmt.Errorf("%s: %w; give a layout that can be read", path, reason(err))
 		}
 		info, err := f.Stat()
 		switch {

@@ -71,7 +71,7 @@ func TestSurveySays(t *testing.T) {
 	}
 	squeezed := strings.Join(strings.Fields(out), " ")
 	for _, want := range []string{
-		"database unit 1 nm", "structures 2", `tops "caf\xe9"`, "depth 2", "references 0, and 1 arrays", "placements 2",
+		"database unit 1 nm", "structures 2", `tops "caf\xe9"`, "depth 2", "references 0", "arrays 1", "placements 2",
 		"10/0 6 9 all all 0 20 20 (all)", "10/1 0 0 1",
 		"10/0: 9 figures in 9 shapes", "20 4 ####", // four gaps of 20 between bars
 		"1 to 20 0 9 0 1", "21 to 30 4 5 0 3", // spacing, near pairs, components, odd, largest

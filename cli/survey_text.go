@@ -19,9 +19,9 @@ func writeSurvey(w *bufio.Writer, found *surveyed) {
 	nm := nanometres(s)
 	fmt.Fprintf(w, "%s: %s bytes of stream, database unit %s nm\n", found.name, report.Count(s.Bytes), nm.number(1))
 	table := [][]string{{"structures", report.Count(int64(s.Structures))}, {"tops", tops(s.Tops)}, {"depth", report.Count(int64(s.Depth))},
-		{"references", fmt.Sprintf("%s, and %s arrays", report.Count(s.References), report.Count(s.Arrays))}}
+		{"references", report.Count(s.References)}, {"arrays", report.Count(s.Arrays)}}
 	if s.OddReferences > 0 {
-		table = append(table, []string{"", report.Count(s.OddReferences) + " of them with a magnification or an odd angle"})
+		table = append(table, []string{"", report.Count(s.OddReferences) + " of these with a magnification or an odd angle"})
 	}
 	table = append(table, []string{"placements", flat(s.Placements)})
 	if len(s.Missing) > 0 {

@@ -53,7 +53,7 @@ func Open(path string, spool bool, stdin io.Reader) (*Input, error) {
 	} else {
 		f, err := os.Open(path)
 		if err != nil {
-			return nil, err // names the path
+			return nil, fmt.Errorf("%s: %w; give a layout that can be read", path, errors.Unwrap(err)) // of an *fs.PathError
 		}
 		in.file, src = f, f
 		if in.info, err = f.Stat(); err != nil {

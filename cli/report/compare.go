@@ -190,7 +190,7 @@ func (s *summary) changes(l *decompose.LayerComparison) {
 
 // change words one change.
 func (s *summary) change(c *decompose.ChangedShape) string {
-	at := "(" + s.place(decompose.Spot{X: c.Box.X1, Y: c.Box.Y1}) + ") to (" + s.place(decompose.Spot{X: c.Box.X2, Y: c.Box.Y2}) + ") in " + Text(c.Top)
+	at := s.box(c.Box) + " in " + Text(c.Top)
 	switch {
 	case c.Was == "":
 		return fmt.Sprintf("%s, on %s: %s", c.Kind, c.Now, at)

@@ -268,9 +268,9 @@ func TestSummaryGroupsWorstFirst(t *testing.T) {
 	for _, want := range []string{
 		"chip.gds does not fit on two masks as drawn. Unresolved near pairs: metal1 5.",
 		"3 times: an odd cycle of 3 shapes, 1 pair left on one mask",
-		"at (1.5, -2 nm) in cell knot",
-		"the pair: from (20, 0.5 nm) to (30, 0.5 nm) in top chip, on mask B; widen the gap by 26 nm",
-		"1 stitch would do, the first over (-10.5, 0 nm) to (20, 40.5 nm)",
+		"at (1.5, -2) nm in cell knot",
+		"the pair: from (20, 0.5) to (30, 0.5) nm in top chip, on mask B; widen the gap by 26 nm",
+		"1 stitch would do, over (-10.5, 0) to (20, 40.5) nm",
 		"once: orders that clash over 0 shapes, 2 pairs left on one mask",
 		"no stitch: a shape under an order is never cut",
 		"1.50 s, 3 MiB of memory at most, 2 workers",

@@ -141,9 +141,9 @@ func (s *summary) layer(l *decompose.LayerResult) {
 	groups := l.Groups()
 	s.line("")
 	if len(groups) == 1 {
-		s.line("%s: the unresolved components are all of one kind", Text(l.Name))
+		s.line("%s: the components that two masks cannot do as drawn are all of one kind", Text(l.Name))
 	} else {
-		s.line("%s: %s kinds of unresolved components, worst first", Text(l.Name), Count(int64(len(groups))))
+		s.line("%s: %s kinds of components that two masks cannot do as drawn, worst first", Text(l.Name), Count(int64(len(groups))))
 	}
 	for _, g := range groups[:min(len(groups), groupsShown)] {
 		s.group(&l.Unresolved[g.Shown], int64(len(g.Members)))
@@ -159,9 +159,19 @@ func (s *summary) group(u *decompose.Unresolved, occurs int64) {
 	if u.Cause == decompose.OrderClash {
 		what = "orders that clash over " + count(len(u.Cycle), "shape")
 	}
-	s.line("  %s: %s, %s left on one mask", times(occurs), what, count(len(u.Pairs), "pair"))
+	made := 0
+	for _, c := range u.Candidates {
+		if c.Made {
+			made++
+		}
+	}
+	came := count(len(u.Pairs), "pair") + " left on one mask"
+	if len(u.Pairs) == 0 && made > 0 {
+		came = "mended by " + count(made, "stitch")
+	}
+	s.line("  %s: %s, %s", times(occurs), what, came)
 	if u.Cell != "" {
-		s.line("      at (%s) in cell %s", s.place(u.CellPlace), Text(u.Cell))
+		s.line("      at %s in cell %s", s.place(u.CellPlace), Text(u.Cell))
 	}
 	if len(u.Pairs) > 0 {
 		p := &u.Pairs[0]
@@ -169,7 +179,7 @@ func (s *summary) group(u *decompose.Unresolved, occurs int64) {
 		if len(u.Pairs) > 1 {
 			first = "the first pair"
 		}
-		line := fmt.Sprintf("      %s: from (%s) to (%s) in top %s, on mask %v", first, s.place(p.From), s.place(p.To), Text(u.Top), p.Mask)
+		line := fmt.Sprintf("      %s: from %s in top %s, on mask %v", first, s.between(p.From, p.To), Text(u.Top), p.Mask)
 		if p.Widen > 0 {
 			line += "; widen the gap by " + s.r.Rules.Length(float64(p.Widen))
 		}
@@ -187,21 +197,18 @@ func (s *summary) group(u *decompose.Unresolved, occurs int64) {
 		if n == 1 {
 			line = fmt.Sprintf("      cheapest by moving: widen one gap by %s", s.r.Rules.Length(float64(total)))
 		}
-		s.line("%s, from (%s) to (%s)", line, s.place(p.From), s.place(p.To))
-	}
-	made := 0
-	for _, c := range u.Candidates {
-		if c.Made {
-			made++
-		}
+		s.line("%s, from %s", line, s.between(p.From, p.To))
 	}
 	switch {
-	case made > 0:
+	case made > 0 && len(u.Pairs) > 0:
 		s.line("      %s made", count(made, "stitch"))
+	case made > 0:
 	case len(u.LeastStitches) > 0:
-		c := u.Candidates[u.LeastStitches[0]]
-		s.line("      %s would do, the first over (%s) to (%s)", count(len(u.LeastStitches), "stitch"),
-			s.place(decompose.Spot{X: c.Box.X1, Y: c.Box.Y1}), s.place(decompose.Spot{X: c.Box.X2, Y: c.Box.Y2}))
+		first := ""
+		if len(u.LeastStitches) > 1 {
+			first = "the first "
+		}
+		s.line("      %s would do, %sover %s", count(len(u.LeastStitches), "stitch"), first, s.box(u.Candidates[u.LeastStitches[0]].Box))
 	case len(u.Candidates) > 0:
 		s.line("      %s for a stitch, but no set of them is enough", count(len(u.Candidates), "place"))
 	case u.NoCandidate != "":
@@ -210,8 +217,19 @@ func (s *summary) group(u *decompose.Unresolved, occurs int64) {
 }
 
 // place words a place in the deck's unit.
-func (s *summary) place(at decompose.Spot) string {
-	return s.r.Rules.Number(float64(at.X)/2) + ", " + s.r.Rules.Number(float64(at.Y)/2) + " " + s.r.Rules.Unit
+func (s *summary) place(at decompose.Spot) string { return s.spot(at) + " " + s.r.Rules.Unit }
+
+// between words the way from one place to another in the deck's unit.
+func (s *summary) between(from, to decompose.Spot) string { return s.spot(from) + " to " + s.place(to) }
+
+// box words a box in the deck's unit.
+func (s *summary) box(b decompose.Box) string {
+	return s.between(decompose.Spot{X: b.X1, Y: b.Y1}, decompose.Spot{X: b.X2, Y: b.Y2})
+}
+
+// spot words a place without the unit.
+func (s *summary) spot(at decompose.Spot) string {
+	return "(" + s.r.Rules.Number(float64(at.X)/2) + ", " + s.r.Rules.Number(float64(at.Y)/2) + ")"
 }
 
 // cost tells what the run took.

@@ -58,8 +58,3 @@ func (s *summary) more(n int) {
 		s.line("  %s more: write a --report for the full list", Count(int64(rest)))
 	}
 }
-
-// box words a box in the deck's unit.
-func (s *summary) box(b decompose.Box) string {
-	return "(" + s.place(decompose.Spot{X: b.X1, Y: b.Y1}) + ") to (" + s.place(decompose.Spot{X: b.X2, Y: b.Y2}) + ")"
-}
