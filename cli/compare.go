@@ -4,8 +4,6 @@ import (
 	"context"
 	"encoding/hex"
 	"fmt"
-	"runtime"
-	"strconv"
 
 	"github.com/urfave/cli/v2"
 
@@ -33,12 +31,11 @@ Exit status:
 
 // compareOptions are the checked options of compare.
 type compareOptions struct {
+	limits
 	earlier, later string
 	deckPath       string
 	deck           *decompose.Deck
 	report         string
-	jobs           int
-	memory         int64
 	quiet, force   bool
 }
 
@@ -50,14 +47,12 @@ func compareCommand(con *console, status *int) *cli.Command {
 		Description:     compareHelp,
 		HideHelpCommand: true,
 		OnUsageError:    asUsageError,
-		Flags: []cli.Flag{
+		Flags: append([]cli.Flag{
 			&cli.StringFlag{Name: "deck", Usage: "layers and masks are in `DECK.toml`; needed"},
 			&cli.StringFlag{Name: "report", Usage: "write the full list to `R.json`"},
-			&cli.StringFlag{Name: "jobs", Usage: "use `N` threads (default: as many as there are processors)"},
-			&cli.StringFlag{Name: "memory", Usage: "use at most `SIZE` of memory: 4GiB, 500MB, 4096 (bytes)"},
 			&cli.BoolFlag{Name: "quiet", DisableDefaultText: true, Usage: "print nothing but errors"},
 			&cli.BoolFlag{Name: "force", DisableDefaultText: true, Usage: "replace a report that exists"},
-		},
+		}, limitFlags()...),
 		Action: func(c *cli.Context) error {
 			o, err := parseCompareOptions(c)
 			if err != nil {
@@ -73,11 +68,9 @@ func compareCommand(con *console, status *int) *cli.Command {
 }
 
 func parseCompareOptions(c *cli.Context) (*compareOptions, error) {
-	o := &compareOptions{deckPath: c.String("deck"), report: c.String("report"), jobs: runtime.GOMAXPROCS(0), quiet: c.Bool("quiet"), force: c.Bool("force")}
-	for _, f := range c.Command.Flags {
-		if s, ok := f.(*cli.StringFlag); ok && c.IsSet(s.Name) && c.String(s.Name) == "" {
-			return nil, usagef("--%s is empty; give it a value or leave it out", s.Name)
-		}
+	o := &compareOptions{deckPath: c.String("deck"), report: c.String("report"), quiet: c.Bool("quiet"), force: c.Bool("force")}
+	if err := noneEmpty(c); err != nil {
+		return nil, err
 	}
 	switch n := c.Args().Len(); {
 	case n < 2:
@@ -94,15 +87,8 @@ func parseCompareOptions(c *cli.Context) (*compareOptions, error) {
 	case o.deckPath == "":
 		return nil, usagef("no rule deck given; add --deck DECK.toml")
 	}
-	if s := c.String("jobs"); s != "" {
-		n, err := strconv.Atoi(s)
-		if err != nil || n < 1 {
-			return nil, usagef("--jobs %s: give a number of threads, 1 or more", s)
-		}
-		o.jobs = n
-	}
 	var err error
-	if o.memory, err = memoryLimit(c.String("memory")); err != nil {
+	if o.limits, err = parseLimits(c); err != nil {
 		return nil, err
 	}
 	text, err := readText("deck", o.deckPath)
@@ -140,7 +126,7 @@ func compareTo(ctx context.Context, o *compareOptions, con *console) (*report.Co
 	if err != nil {
 		return nil, err
 	}
-	r.Run.Version, r.Run.Jobs, r.Run.Peak = version(), o.jobs, peakMemory()
+	r.Run.Version, r.Run.Jobs, r.Run.Peak = version(), o.Jobs, peakMemory()
 	r.Run.Stages, r.Run.Seconds = clock.stop()
 	if account != nil {
 		if err := await(ctx, func() error { return report.WriteComparisonJSON(account, r) }); err != nil {
@@ -196,7 +182,7 @@ func runCompare(ctx context.Context, o *compareOptions, con *console, clock *Clo
 	if err != nil {
 		return nil, err
 	}
-	opt := decompose.Options{Jobs: o.jobs, Memory: o.memory, Stage: clock.Stage}
+	opt := decompose.Options{Jobs: o.Jobs, Memory: o.Memory, Stage: clock.Stage}
 	res, err := decompose.Compare(ctx, earlier.lib, later.lib, o.earlier, o.later, rules, opt)
 	if err != nil {
 		return nil, err

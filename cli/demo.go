@@ -133,7 +133,7 @@ func demo(ctx context.Context, dir string, force bool, con *console, s steps) er
 		return err
 	}
 	o := &Options{Input: f.layout, DeckPath: f.deck, Deck: deck, Anchors: f.anchors, anchors: []byte(demoAnchors), Output: f.masks,
-		Report: f.report, Page: f.page, Jobs: runtime.GOMAXPROCS(0), Force: force}
+		Report: f.report, Page: f.page, limits: limits{Jobs: runtime.GOMAXPROCS(0)}, Force: force}
 	r, err := decomposeTo(ctx, o, con, s)
 	if err != nil {
 		return err

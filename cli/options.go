@@ -3,8 +3,6 @@ package cli
 import (
 	"io"
 	"os"
-	"runtime"
-	"strconv"
 	"strings"
 
 	"github.com/urfave/cli/v2"
@@ -27,6 +25,7 @@ const (
 
 // Options are the checked options of decompose.
 type Options struct {
+	limits
 	Input    string // "-" is standard input
 	DeckPath string
 	Deck     *decompose.Deck
@@ -37,8 +36,6 @@ type Options struct {
 	Page     string // path; "" none
 	Freeze   Freeze // 0 none
 	Top      string // structure to decompose; "" every top
-	Jobs     int    // worker threads, at least 1
-	Memory   int64  // bytes that may be used; 0: no limit
 	Quiet    bool
 	Force    bool
 
@@ -54,7 +51,7 @@ func (o *Options) ParseAnchors(rules *decompose.Rules) (*anchor.File, error) {
 }
 
 func decomposeFlags() []cli.Flag {
-	return []cli.Flag{
+	return append([]cli.Flag{
 		&cli.StringFlag{Name: "deck", Usage: "layers, masks and spacings are in `DECK.toml`; needed"},
 		&cli.StringFlag{Name: "output", Usage: "write the layout with its masks to `OUT.gds`; - is standard output; without it, only answer and report"},
 		&cli.StringFlag{Name: "anchors", Usage: "which shapes go on which mask, which alike, and what is accepted, is in `ANCHORS.toml`"},
@@ -63,11 +60,9 @@ func decomposeFlags() []cli.Flag {
 		&cli.StringFlag{Name: "html", Usage: "write a page for a person, with drawings of what is to be mended, to `REPORT.html`"},
 		&cli.StringFlag{Name: "freeze", Usage: "mask `A|B|both` is already made and must come out as in the baseline"},
 		&cli.StringFlag{Name: "top", Usage: "decompose the structure `CELL` alone"},
-		&cli.StringFlag{Name: "jobs", Usage: "use `N` threads (default: as many as there are processors); the result is the same for any"},
-		&cli.StringFlag{Name: "memory", Usage: "use at most `SIZE` of memory: 4GiB, 500MB, 4096 (bytes); K, M, G and T alone are binary (default: nine tenths of what the machine has)"},
 		&cli.BoolFlag{Name: "quiet", DisableDefaultText: true, Usage: "print nothing but errors"},
 		&cli.BoolFlag{Name: "force", DisableDefaultText: true, Usage: "replace outputs that exist"},
-	}
+	}, limitFlags()...)
 }
 
 // parseOptions checks the options of decompose and reads deck and anchor file.
@@ -80,15 +75,11 @@ func parseOptions(c *cli.Context) (*Options, error) {
 		Report:   c.String("report"),
 		Page:     c.String("html"),
 		Top:      c.String("top"),
-		Jobs:     runtime.GOMAXPROCS(0),
 		Quiet:    c.Bool("quiet"),
 		Force:    c.Bool("force"),
 	}
-	for _, f := range c.Command.Flags {
-		name := f.Names()[0]
-		if s, ok := f.(*cli.StringFlag); ok && c.IsSet(s.Name) && c.String(name) == "" {
-			return nil, usagef("--%s is empty; give it a value or leave it out", name)
-		}
+	if err := noneEmpty(c); err != nil {
+		return nil, err
 	}
 	switch n := c.Args().Len(); {
 	case n == 0:
@@ -128,31 +119,11 @@ func parseOptions(c *cli.Context) (*Options, error) {
 	if o.Freeze != 0 && o.Baseline == "" {
 		return nil, usagef("--freeze needs --baseline: the layout that holds the masks as they were made")
 	}
-	if s := c.String("jobs"); s != "" {
-		n, err := strconv.Atoi(s)
-		if err != nil || n < 1 {
-			return nil, usagef("--jobs %s: give a number of threads, 1 or more", s)
-		}
-		o.Jobs = n
-	}
 	var err error
-	if o.Memory, err = memoryLimit(c.String("memory")); err != nil {
+	if o.limits, err = parseLimits(c); err != nil {
 		return nil, err
 	}
 	return o, o.readFiles()
-}
-
-// memoryLimit gives how many bytes a run may use: what --memory says, or, where it is not given, nine tenths of what the machine
-// has, so that a layout that cannot fit is refused instead of taking the machine down; 0 where that is not known.
-func memoryLimit(given string) (int64, error) {
-	if given == "" {
-		return machineMemory() / 10 * 9, nil
-	}
-	n, ok := parseSize(given)
-	if !ok {
-		return 0, usagef("--memory %s: give an amount like 4GiB, 500MB or 4096", given)
-	}
-	return n, nil
 }
 
 // readFiles reads deck and anchor file.

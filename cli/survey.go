@@ -8,8 +8,6 @@ import (
 	"fmt"
 	"io"
 	"os"
-	"runtime"
-	"strconv"
 
 	"github.com/urfave/cli/v2"
 
@@ -48,13 +46,11 @@ func surveyCommand(con *console) *cli.Command {
 		Description:     surveyHelp,
 		HideHelpCommand: true,
 		OnUsageError:    asUsageError,
-		Flags: []cli.Flag{
+		Flags: append([]cli.Flag{
 			&cli.StringFlag{Name: "layer", Usage: "look for the gaps between the shapes of layer/datatype `L/D`"},
 			&cli.BoolFlag{Name: "deck-starter", DisableDefaultText: true, Usage: "print a rule deck for that layer to start from, and nothing else"},
 			&cli.BoolFlag{Name: "json", DisableDefaultText: true, Usage: "print JSON"},
-			&cli.StringFlag{Name: "jobs", Usage: "use `N` threads (default: as many as there are processors)"},
-			&cli.StringFlag{Name: "memory", Usage: "use at most `SIZE` of memory for near pairs: 4GiB, 500MB, 4096 (bytes)"},
-		},
+		}, limitFlags()...),
 		Action: func(c *cli.Context) error {
 			o, err := parseSurveyOptions(c)
 			if err != nil {
@@ -67,16 +63,15 @@ func surveyCommand(con *console) *cli.Command {
 
 // surveyOptions are the checked options of survey.
 type surveyOptions struct {
+	limits
 	input       string
 	layer       *gds.LayerType // nil: not given
 	deckStarter bool
 	json        bool
-	jobs        int
-	memory      int64
 }
 
 func parseSurveyOptions(c *cli.Context) (*surveyOptions, error) {
-	o := &surveyOptions{deckStarter: c.Bool("deck-starter"), json: c.Bool("json"), jobs: runtime.GOMAXPROCS(0)}
+	o := &surveyOptions{deckStarter: c.Bool("deck-starter"), json: c.Bool("json")}
 	switch n := c.Args().Len(); {
 	case n == 0:
 		return nil, usagef("no layout given; write %s survey IN.gds", program)
@@ -102,15 +97,8 @@ func parseSurveyOptions(c *cli.Context) (*surveyOptions, error) {
 	if o.deckStarter && o.json {
 		return nil, usagef("--deck-starter prints a deck and --json prints JSON; give one of them")
 	}
-	if s := c.String("jobs"); s != "" {
-		n, err := strconv.Atoi(s)
-		if err != nil || n < 1 {
-			return nil, usagef("--jobs %s: give a number of threads, 1 or more", s)
-		}
-		o.jobs = n
-	}
 	var err error
-	if o.memory, err = memoryLimit(c.String("memory")); err != nil {
+	if o.limits, err = parseLimits(c); err != nil {
 		return nil, err
 	}
 	return o, nil
@@ -209,7 +197,7 @@ func lookForGaps(ctx context.Context, o *surveyOptions, found *surveyed, clock *
 	if len(found.layer.Widths) > 0 {
 		width = found.layer.Widths[0].Width
 	}
-	return survey.FindGaps(ctx, lib, *o.layer, free, width, survey.Limits{Jobs: o.jobs, Memory: o.memory}, nil)
+	return survey.FindGaps(ctx, lib, *o.layer, free, width, survey.Limits{Jobs: o.Jobs, Memory: o.Memory}, nil)
 }
 
 // stream is an opened layout, unpacked as it is read.

@@ -85,10 +85,8 @@ func parseVerifyOptions(c *cli.Context) (*verifyOptions, error) {
 		quiet:       c.Bool("quiet"),
 		force:       c.Bool("force"),
 	}
-	for _, f := range c.Command.Flags {
-		if s, ok := f.(*cli.StringFlag); ok && c.IsSet(s.Name) && c.String(s.Name) == "" {
-			return nil, usagef("--%s is empty; give it a value or leave it out", s.Name)
-		}
+	if err := noneEmpty(c); err != nil {
+		return nil, err
 	}
 	switch n := c.Args().Len(); {
 	case n == 0:
