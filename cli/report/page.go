@@ -241,12 +241,18 @@ func (m *pageMaker) layer(l *decompose.LayerResult) layerRow {
 }
 
 // length words a length in database units.
-func (m *pageMaker) length(dbu int64) string { return m.r.Rules.Length(float64(dbu)) }
+func (m *pageMaker) length(dbu int64) string { return m.inUnit(m.r.Rules.Number(float64(dbu))) }
+
+// inUnit puts the unit behind a number, so that no line ends between them.
+func (m *pageMaker) inUnit(number string) string { return number + noBreak + m.r.Rules.Unit }
+
+// noBreak is a space at which no line ends.
+const noBreak = "\u00a0"
 
 // area words an area that is given in square database units.
 func (m *pageMaker) area(dbu2 float64) string {
 	s := summary{r: m.r}
-	return strings.Replace(s.area(dbu2), " um2", " µm²", 1)
+	return strings.Replace(s.area(dbu2), " um2", noBreak+"µm²", 1)
 }
 
 // at words a point: "120, 340".
@@ -264,7 +270,7 @@ func shareOf(a, b float64) string {
 	if a+b <= 0 {
 		return ""
 	}
-	return fmt.Sprintf("%.1f %% on A", 100*a/(a+b))
+	return fmt.Sprintf("%.1f"+noBreak+"%% on A", 100*a/(a+b))
 }
 
 // input tells what was read and by what.

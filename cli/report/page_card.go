@@ -265,7 +265,7 @@ func (m *pageMaker) distance(sq float64) string {
 	if at := strings.IndexByte(word, '.'); at >= 0 && len(word)-at > 4 {
 		word = "≈ " + strconv.FormatFloat(d/m.r.Rules.UnitDBU, 'f', 2, 64)
 	}
-	return word + " " + m.r.Rules.Unit
+	return m.inUnit(strings.Replace(word, " ", noBreak, 1))
 }
 
 // gaps lists the gaps of the cycle, those of unresolved pairs first, then unresolved pairs elsewhere.

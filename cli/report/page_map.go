@@ -45,14 +45,30 @@ func (m *pageMaker) maps() {
 			if len(m.p.Maps) == mapsShown {
 				return
 			}
-			m.p.Maps = append(m.p.Maps, m.mapOf(i, l, &l.Drawing.Maps[k]))
+			v := m.mapOf(i, l, &l.Drawing.Maps[k])
+			if len(m.p.Maps) > 0 {
+				v.leaveOut(&m.p.Maps[0])
+			}
+			m.p.Maps = append(m.p.Maps, v)
+		}
+	}
+}
+
+// leaveOut drops the notes that stand below the first maps already.
+func (v *mapView) leaveOut(first *mapView) {
+	for i := range v.Panels {
+		p := &v.Panels[i]
+		for k := range first.Panels {
+			if q := &first.Panels[k]; q.Title == p.Title && q.Note == p.Note {
+				p.Note = ""
+			}
 		}
 	}
 }
 
 func (m *pageMaker) mapOf(layer int, l *decompose.LayerResult, t *decompose.TileMap) mapView {
 	v := mapView{Layer: Text(l.Name), Top: Text(t.Top),
-		Extent: fmt.Sprintf("(%s) to (%s) %s", m.at(decompose.Spot{X: t.Box.X1, Y: t.Box.Y1}), m.at(decompose.Spot{X: t.Box.X2, Y: t.Box.Y2}), m.r.Rules.Unit)}
+		Extent: m.inUnit(fmt.Sprintf("(%s) to (%s)", m.at(decompose.Spot{X: t.Box.X1, Y: t.Box.Y1}), m.at(decompose.Spot{X: t.Box.X2, Y: t.Box.Y2})))}
 	g := grid{t: t, tile: max(3, mapSide/max(t.NX, t.NY))}
 	v.Panels = append(v.Panels, m.unresolvedMap(g, l), g.density(), g.balance())
 	if l.MovedShapes > 0 {
@@ -125,7 +141,7 @@ func (g grid) density() mapPanel {
 	tile := float64(b.X2-b.X1) * float64(b.Y2-b.Y1) / 4 // square database units
 	note := "Nothing is drawn here."
 	if most > 0 && tile > 0 {
-		note = fmt.Sprintf("A full square is a tile covered to %.0f %%, the densest.", math.Min(100, 100*most/tile))
+		note = fmt.Sprintf("A full square is a tile covered to %.0f"+noBreak+"%%, the densest.", math.Min(100, 100*most/tile))
 	}
 	return mapPanel{"How dense", note, g.svg("Map of density", g.marks("dense", func(t *decompose.Tile) int { return levelOf(cover(t) / most) }))}
 }

@@ -290,7 +290,7 @@ func TestPageWords(t *testing.T) {
 		t.Errorf("placed: %q", got)
 	}
 	for sq, want := range map[float64]string{400: "0.02 um", 2e6: "≈ 1.41 um", 0: "0 um"} {
-		if got := m.distance(sq); got != want {
+		if got := strings.ReplaceAll(m.distance(sq), noBreak, " "); got != want {
 			t.Errorf("the root of %g is %q, want %q", sq, got, want)
 		}
 	}
