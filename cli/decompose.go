@@ -3,10 +3,12 @@ package cli
 import (
 	"context"
 	"fmt"
+	"strings"
 
 	"github.com/urfave/cli/v2"
 
 	"maskpair/cli/report"
+	"maskpair/decompose"
 )
 
 // This file is the command decompose around its stages: outputs planned and begun, the stages run, report and layout put in
@@ -63,6 +65,7 @@ func decomposeCommand(con *console, s steps, status *int) *cli.Command {
 func decomposeTo(ctx context.Context, o *Options, con *console, s steps) (*report.Report, error) {
 	clock := newClock(con.err, o.Quiet)
 	defer clock.stop()
+	clock.Head(o.Input + ": " + layersOf(o.Deck))
 	inputs := []named{{"--deck", o.DeckPath}}
 	if o.Input != "-" {
 		inputs = append(inputs, named{"the layout", o.Input})
@@ -134,4 +137,13 @@ func decomposeTo(ctx context.Context, o *Options, con *console, s steps) (*repor
 		report.WriteSummary(&firstLine{w: con.err, ink: ink, p: painterFor(con.err)}, r) // the work is done and in place: a closed terminal does not undo it
 	}
 	return r, nil
+}
+
+// layersOf words which layers a deck puts on masks: "metal1 (19/0), contact (18/0, 18/5)".
+func layersOf(d *decompose.Deck) string {
+	var list []string
+	for i := range d.Layers {
+		list = append(list, fmt.Sprintf("%s (%s)", report.Text(d.Layers[i].Name), layerNames(d.Layers[i].Drawn...)))
+	}
+	return strings.Join(list, ", ")
 }

@@ -24,6 +24,7 @@ type Clock struct {
 	stages []report.Stage
 	shown  time.Time // last time that the line was written
 	line   bool      // there is a line to clear
+	head   string    // a line that stands above it; written once
 }
 
 const (
@@ -45,6 +46,13 @@ func newClock(w io.Writer, quiet bool) *Clock {
 		c.screen = w
 	}
 	return c
+}
+
+// Head sets the line that stands above the stages of a run that is long enough to show them.
+func (c *Clock) Head(line string) {
+	c.mu.Lock()
+	defer c.mu.Unlock()
+	c.head = program + ": " + line + "\n"
 }
 
 // Stage begins a stage; name says what is done: "read".
@@ -126,7 +134,8 @@ func (c *Clock) draw(rest string) {
 	}
 	c.shown, c.line = now, true
 	text := program + ": " + c.name + rest
-	fmt.Fprintf(c.screen, "\r\x1b[K%s", text[:min(len(text), lineWidth)])
+	fmt.Fprintf(c.screen, "\r\x1b[K%s%s", c.head, text[:min(len(text), lineWidth)])
+	c.head = ""
 }
 
 // stop ends the last stage and clears the line. It gives the stages and the seconds of the whole run.

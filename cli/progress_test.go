@@ -10,6 +10,7 @@ import (
 	"github.com/google/go-cmp/cmp"
 
 	"maskpair/cli/report"
+	"maskpair/decompose"
 )
 
 // handClock is a clock that goes when told, and writes into a buffer.
@@ -70,6 +71,26 @@ func TestClockShowsWhereItIs(t *testing.T) {
 	c.Progress(1, 2) // behind the end nothing is written
 	if last(screen) != "" {
 		t.Errorf("behind the end the screen shows %q", last(screen))
+	}
+}
+
+// What is decomposed stands once above the stages, and stays when the line below it is cleared.
+func TestClockHead(t *testing.T) {
+	c, screen, wait := handClock()
+	d, err := decompose.ParseDeck("deck.toml", []byte(testDeck))
+	if err != nil {
+		t.Fatal(err)
+	}
+	c.Head("chip.gds: " + layersOf(d))
+	c.Stage("read")
+	for range 3 {
+		wait(time.Second)
+		c.Progress(0, 0)
+	}
+	c.stop()
+	text := strings.NewReplacer("\r", "", "\x1b[K", "").Replace(screen.String())
+	if want := "maskpair: chip.gds: metal1 (19/0)\nmaskpair: read"; !strings.HasPrefix(text, want) || strings.Count(text, "\n") != 1 {
+		t.Errorf("the screen shows %q, want %q first", text, want)
 	}
 }
 
