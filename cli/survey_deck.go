@@ -34,27 +34,27 @@ func writeDeckStarter(w *bufio.Writer, found *surveyed) {
 	width = max(1, width)
 	fmt.Fprintf(w, "# [layer.stitch]\n# min_overlap = %s\n# min_piece = %s\n# apply = false # true: the output is cut\n", nm.number(width), nm.number(2*width))
 	marks := freeMarks(found.survey)
-	fmt.Fprintf(w, "\n[marks] # what stays unresolved is drawn in the output, on layers that are free in this layout\nunresolved = %q\ncycle = %q\nstitch = %q\n",
+	fmt.Fprintf(w, "\n[marks] # what stays unresolved is drawn in the output, on layers that are free in this layout\nunresolved = %q\ncycle = %q\n# stitch = %q # where a cut might help, with [layer.stitch]\n",
 		layerName(gds.LayerType{Layer: marks}), layerName(gds.LayerType{Layer: marks, Type: 1}), layerName(gds.LayerType{Layer: marks, Type: 2}))
 }
 
-// suggest chooses a spacing and says why: the largest at which two masks do it, else the least at which anything is near.
+// suggest chooses a spacing and says why: the largest at which two masks do it, else the largest at which only the nearest shapes are near.
 func suggest(g *survey.Gaps) (spacing int64, why string) {
-	first := int64(0)
+	first := int64(0) // end of the first step at which anything is near
 	for _, s := range g.Steps {
 		if s.NearPairs == 0 {
 			spacing, why = s.To, "no two shapes are nearer"
 			continue
 		}
 		if first == 0 {
-			first = s.From
+			first = s.To
 		}
 		if s.Odd == 0 {
 			spacing, why = s.To, "the largest that was tried at which two masks can do it as drawn"
 		}
 	}
 	if first != 0 && spacing < first {
-		return first, "the least at which any two shapes are near"
+		return first, "the largest at which only the nearest shapes are near; two masks cannot do all of it as drawn"
 	}
 	return max(spacing, 1), why
 }

@@ -11,6 +11,7 @@ import (
 	"testing"
 
 	"maskpair/decompose"
+	"maskpair/decompose/survey"
 	"maskpair/gds"
 )
 
@@ -147,10 +148,31 @@ func TestDeckStarter(t *testing.T) {
 	if l.SameMask.Value != 30 {
 		t.Errorf("spacing %g", l.SameMask.Value)
 	}
-	// The part that is commented out is a deck as well.
-	open := strings.NewReplacer("# [layer.stitch]", "[layer.stitch]", "# min_overlap", "min_overlap", "# min_piece", "min_piece", "# apply", "apply").Replace(out)
-	if deck, err = decompose.ParseDeck("deck.toml", []byte(open)); err != nil || deck.Layers[0].Stitch == nil {
+	for _, r := range deck.Remarks() {
+		t.Errorf("%s: %s", r.Key, r.Text)
+	}
+	// The parts that are commented out are a deck as well.
+	open := strings.NewReplacer("# stitch", "stitch", "# [layer.stitch]", "[layer.stitch]", "# min_overlap", "min_overlap", "# min_piece", "min_piece", "# apply", "apply").Replace(out)
+	if deck, err = decompose.ParseDeck("deck.toml", []byte(open)); err != nil || deck.Layers[0].Stitch == nil || deck.Marks.Stitch == nil || len(deck.Remarks()) > 0 {
 		t.Errorf("with the stitch lines: %v", err)
+	}
+}
+
+// Where two masks cannot do even what is nearest, the starter has the most at which nothing else is near.
+func TestSuggestion(t *testing.T) {
+	for _, c := range []struct {
+		steps []survey.Step
+		want  int64
+	}{
+		{[]survey.Step{{From: 1, To: 20}, {From: 21, To: 40, NearPairs: 5, Odd: 1}, {From: 41, To: 84, NearPairs: 9, Odd: 1}}, 40},
+		{[]survey.Step{{From: 1, To: 20}, {From: 21, To: 40, NearPairs: 5}, {From: 41, To: 84, NearPairs: 9, Odd: 1}}, 40},
+		{[]survey.Step{{From: 1, To: 20}, {From: 21, To: 40, NearPairs: 5}, {From: 41, To: 84, NearPairs: 9}}, 84},
+		{[]survey.Step{{From: 1, To: 20}}, 20},
+		{nil, 1},
+	} {
+		if got, why := suggest(&survey.Gaps{Steps: c.steps}); got != c.want {
+			t.Errorf("%v: %d (%s), want %d", c.steps, got, why, c.want)
+		}
 	}
 }
 

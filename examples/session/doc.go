@@ -1,3 +1,3 @@
-// Package session holds the terminal sessions in README to what the program prints: its test runs their commands in a shell and compares
-// what comes out, line by line.
+// Package session holds README to what it shows: its test runs the commands of the terminal sessions in a shell and compares what they
+// print, line by line, and follows the links of all pages.
 package session

@@ -4,6 +4,7 @@ import (
 	"os"
 	"os/exec"
 	"path/filepath"
+	"regexp"
 	"slices"
 	"strings"
 	"testing"
@@ -116,5 +117,52 @@ func TestReadme(t *testing.T) {
 	}
 	if ran < 4 {
 		t.Errorf("%d commands were run, want at least 4: demo, an edit, decompose, verify", ran)
+	}
+}
+
+// Links of the pages within the project lead to files, and to headings that are there.
+func TestLinks(t *testing.T) {
+	top := filepath.Join("..", "..")
+	link := regexp.MustCompile(`\]\(([^)\s]+)\)`)
+	heading := regexp.MustCompile(`(?m)^#+ (.+)$`)
+	dropped := regexp.MustCompile(`[^\w\- ]`)
+	found := 0
+	err := filepath.WalkDir(top, func(path string, d os.DirEntry, err error) error {
+		if err != nil || filepath.Ext(path) != ".md" {
+			return err
+		}
+		text, err := os.ReadFile(path)
+		if err != nil {
+			return err
+		}
+		for _, m := range link.FindAllStringSubmatch(string(text), -1) {
+			file, section, _ := strings.Cut(m[1], "#")
+			if strings.Contains(file, "://") {
+				continue
+			}
+			found++
+			target := path
+			if file != "" {
+				target = filepath.Join(filepath.Dir(path), filepath.FromSlash(file))
+			}
+			there, err := os.ReadFile(target)
+			if err != nil {
+				t.Errorf("%s: %s: %v", path, m[1], err)
+				continue
+			}
+			known := slices.ContainsFunc(heading.FindAllStringSubmatch(string(there), -1), func(h []string) bool {
+				return strings.ReplaceAll(dropped.ReplaceAllString(strings.ToLower(h[1]), ""), " ", "-") == section
+			})
+			if section != "" && !known {
+				t.Errorf("%s: %s: no such heading", path, m[1])
+			}
+		}
+		return nil
+	})
+	if err != nil {
+		t.Fatal(err)
+	}
+	if found < 20 {
+		t.Errorf("%d links, want some dozens", found)
 	}
 }
