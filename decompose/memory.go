@@ -33,10 +33,18 @@ func (r *Run) Remember(name string, lib *gds.Library) error {
 	if err != nil {
 		return err
 	}
-	for i, t := range b.tops {
-		if t < 0 {
-			r.warn("the baseline %s has no structure %s; its shapes have no memory", name, r.h.name(r.h.tops[i]))
+	var unknown []string
+	for _, i := range r.h.byName {
+		if b.tops[i] < 0 {
+			unknown = append(unknown, r.h.name(r.h.tops[i]))
 		}
+	}
+	switch len(unknown) {
+	case 0:
+	case 1:
+		r.warn("the baseline %s has no structure %s; its shapes have no memory", name, unknown[0])
+	default:
+		r.warn("the baseline %s does not have %d of the %d tops: %s; their shapes have no memory", name, len(unknown), len(b.tops), firstOf(unknown))
 	}
 	r.baseline = b
 	return nil

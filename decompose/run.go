@@ -5,6 +5,7 @@ import (
 	"fmt"
 	"io"
 	"slices"
+	"strings"
 
 	"maskpair/gds"
 )
@@ -56,10 +57,23 @@ func New(lib *gds.Library, rules *Rules, opt Options) (*Run, error) {
 	return r, nil
 }
 
+// firstOf names some things and counts the rest, so that a line stays a line however many there are.
+func firstOf(names []string) string {
+	const most = 3
+	if len(names) <= most+1 {
+		return strings.Join(names, ", ")
+	}
+	return fmt.Sprintf("%s and %d more", strings.Join(names[:most], ", "), len(names)-most)
+}
+
 // warnMissing tells of what the stream lacks or has where no figure can be.
 func (r *Run) warnMissing() {
-	for _, name := range r.lib.Missing {
-		r.warn("structure %s is placed but not in the stream; its references stay as they are", name)
+	switch missing := r.lib.Missing; len(missing) {
+	case 0:
+	case 1:
+		r.warn("structure %s is placed but not in the stream; its references stay as they are", missing[0])
+	default:
+		r.warn("%d structures are placed but not in the stream: %s; their references stay as they are", len(missing), firstOf(missing))
 	}
 	layers := make([]gds.LayerType, 0, len(r.lib.Boxes))
 	for l := range r.lib.Boxes {
