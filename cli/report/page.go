@@ -76,6 +76,7 @@ type fact struct{ Label, Text string }
 // layerRow is one layer of the summary.
 type layerRow struct {
 	Name, Spacing, Figures, Shapes, NearPairs, Components string
+	ByFacing                                              bool // spacing by what faces what as well
 	Unresolved                                            string
 	Bad                                                   bool
 	Proof                                                 string
@@ -114,7 +115,7 @@ func newPage(r *Report) *page {
 	p.Caution = Caution
 	m.verdict(Text(path.Base(name)))
 	for i := range r.Result.Layers {
-		p.Layers = append(p.Layers, m.layer(&r.Result.Layers[i]))
+		p.Layers = append(p.Layers, m.layer(&r.Result.Layers[i], &r.Rules.Layers[i]))
 	}
 	m.cards()
 	m.maps()
@@ -209,9 +210,9 @@ func haveHas(n int64, thing string) string {
 }
 
 // layer words a layer for the summary.
-func (m *pageMaker) layer(l *decompose.LayerResult) layerRow {
+func (m *pageMaker) layer(l *decompose.LayerResult, rules *decompose.LayerRules) layerRow {
 	row := layerRow{
-		Name: Text(l.Name), Spacing: m.length(l.Spacing), Figures: Count(l.Figures), Shapes: Count(l.Shapes), NearPairs: Count(l.NearPairs),
+		Name: Text(l.Name), Spacing: m.length(l.Spacing), ByFacing: rules.ByFacing != nil, Figures: Count(l.Figures), Shapes: Count(l.Shapes), NearPairs: Count(l.NearPairs),
 		Components: Count(l.Components), Unresolved: Count(l.UnresolvedPairs), Bad: l.UnresolvedPairs > 0,
 		AreaA: m.area(l.AreaA), AreaB: m.area(l.AreaB), Balance: balanceBar(l.AreaA, l.AreaB), ShareA: shareOf(l.AreaA, l.AreaB),
 	}

@@ -63,7 +63,8 @@ type cardGap struct {
 	Label    string // "5 – 1"
 	Distance string
 	Needed   string
-	Left     bool // its shapes are on one mask
+	Rule     string // by what faces what, with its spacing
+	Left     bool   // its shapes are on one mask
 	From, To string
 }
 
@@ -278,6 +279,9 @@ func (m *pageMaker) gaps(c *card, u *decompose.Unresolved, picture *decompose.Pi
 		if p.Widen > 0 {
 			g.Needed = m.length(p.Widen)
 		}
+		if rules.ByFacing != nil {
+			g.Rule = p.Rule + noBreak + m.length(p.Spacing)
+		}
 		if a, b := stepsOf(u, p); a > 0 {
 			g.Label = fmt.Sprintf("%d – %d", a, b)
 			inCycle[[2]int{a, b}] = true
@@ -293,7 +297,7 @@ func (m *pageMaker) gaps(c *card, u *decompose.Unresolved, picture *decompose.Pi
 				continue
 			}
 			g := cardGap{Label: fmt.Sprintf("%d – %d", a, b), Distance: m.distance(k.DistanceSq), From: m.at(k.At), To: m.at(k.Other)}
-			if short := float64(rules.Spacing) - math.Sqrt(k.DistanceSq); short > 0 {
+			if short := float64(rules.Spacing) - math.Sqrt(k.DistanceSq); short > 0 && rules.ByFacing == nil {
 				g.Needed = m.length(int64(math.Ceil(short)))
 			}
 			c.Gaps = append(c.Gaps, g)

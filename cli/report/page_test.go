@@ -52,6 +52,20 @@ func TestPageSaysWhatCounts(t *testing.T) {
 	}
 }
 
+// Where spacing goes by what faces what, an unresolved pair is told with its rule: its gap may well be above same_mask_spacing.
+func TestPageNamesRules(t *testing.T) {
+	r := sample()
+	for _, rules := range []*decompose.FacingRules{nil, {TipToTip: 36, TipWidth: 10}} {
+		r.Rules.Layers = []decompose.LayerRules{{Name: "metal1", Spacing: 30, ByFacing: rules}, {Name: "metal2", Spacing: 40}}
+		text := strings.ReplaceAll(pageOf(t, r), noBreak, " ")
+		for _, words := range []string{"tip_to_tip 36 nm", "and by what faces what"} {
+			if strings.Contains(text, words) != (rules != nil) {
+				t.Errorf("rules %+v: the page says %q: %v", rules, words, rules == nil)
+			}
+		}
+	}
+}
+
 func TestPageWhereAllFits(t *testing.T) {
 	r := sample()
 	r.Result.Layers = r.Result.Layers[1:]
