@@ -3,6 +3,7 @@ package decompose
 import (
 	"maskpair/decompose/geom"
 	"maskpair/gds"
+	"maskpair/gds/arena"
 )
 
 // This file turns drawn figures that are no plain rectangle into forms: the rectangles of a Manhattan figure, or an any-angle polygon
@@ -64,6 +65,13 @@ const halfUnit = 2
 func newForms(lib *gds.Library, sel *selection, g grid) *forms {
 	f := &forms{grid: g, of: make([]form, len(lib.Outlines)), rounded: make([]bool, len(lib.Outlines))}
 	var points []geom.Point
+	guess := 0 // a rectangle for every two corners, which nearly all outlines keep to
+	for i := range lib.Figures {
+		if o := lib.Figures[i].Outline; o != 0 && sel.tag[lib.Figures[i].Class] != none {
+			guess += int(lib.Outlines[o-1].Count) / 2
+		}
+	}
+	f.rects = arena.Make[geom.Rect](0, guess)
 	for i := range lib.Figures {
 		o := lib.Figures[i].Outline
 		if o == 0 || sel.tag[lib.Figures[i].Class] == none {

@@ -3,20 +3,21 @@ package decompose
 import (
 	"context"
 	"math/bits"
-	"sync"
+	"slices"
 	"sync/atomic"
 
 	"golang.org/x/sync/errgroup"
 
 	"maskpair/decompose/geom"
+	"maskpair/gds/arena"
 )
 
 // This file finds which items touch and which are near. A line sweeps upwards; an item is active from its lower edge until the line
 // is a spacing above its upper edge. Active items lie in buckets by their left edge, in one level per power of two of their width, so
 // that an item is in one bucket however wide it is, and a query looks at the buckets within its reach of each level. What is looked at
 // is within the spacing in y and, but for the outermost buckets, in x: the work grows with the pairs found and not with the size of
-// figures or of their bounding boxes. The sorted items are cut in stretches that depend on their number alone; each stretch starts
-// with what is active there.
+// figures or of their bounding boxes. The sorted items are cut in stretches that depend on the items alone; each stretch starts with
+// what is active there (see plan).
 
 // pairSink takes what a sweep finds.
 type pairSink struct {
@@ -33,7 +34,6 @@ type hit struct{ probe, figure uint32 }
 // sweep is one window of one top, ready to be searched.
 type sweep struct {
 	items       []item // sorted by (Y1, X1)
-	next        []uint32
 	bands       []band
 	polygons    []*geom.Polygon
 	spacing     int64  // work units
@@ -42,13 +42,11 @@ type sweep struct {
 	low, high   int64  // least X1, greatest X2
 	keepTouched bool
 	tags        []uint8           // by ordinal: only figures with equal tags hide each other; nil: all are equal
-	blocks      []int32           // greatest Y2 of each block of items
 	searched    func(items int64) // told of each stretch that is done; nil: nobody is
 }
 
 const (
-	stretchItems = 1 << 16
-	blockItems   = 1 << 10
+	stretchItems = 1 << 16 // at least
 	levels       = 33
 	mostBuckets  = 1 << 20
 )
@@ -67,62 +65,108 @@ func (s *sweep) run(ctx context.Context, sets union, jobs int, limit *atomic.Int
 		return []pairSink{sink}, ctx.Err()
 	}
 	s.low, s.high = int64(s.items[0].X1), int64(s.items[0].X2)
-	s.blocks = make([]int32, (n+blockItems-1)/blockItems)
 	for i := range s.items {
 		it := &s.items[i]
 		s.low, s.high = min(s.low, int64(it.X1)), max(s.high, int64(it.X2))
-		if b := &s.blocks[i/blockItems]; i%blockItems == 0 || it.Y2 > *b {
-			*b = it.Y2
-		}
 	}
-	stretches := (n + stretchItems - 1) / stretchItems
-	sinks := make([]pairSink, stretches)
-	searchers := sync.Pool{New: func() any { return newSearcher(s) }}
-	g, within := errgroup.WithContext(ctx)
-	g.SetLimit(max(jobs, 1))
-	for k := range stretches {
-		if within.Err() != nil {
-			break
+	var sinks []*pairSink
+	jobs = max(jobs, 1)
+	idle := make(chan *searcher, jobs)
+	for range jobs {
+		idle <- newSearcher(s)
+	}
+	defer func() {
+		for range jobs {
+			(<-idle).room.Free()
 		}
+	}()
+	g, within := errgroup.WithContext(ctx)
+	g.SetLimit(jobs)
+	s.plan(func(st stretch) bool {
+		sink := &pairSink{sets: sets, limit: limit}
+		sinks = append(sinks, sink)
 		g.Go(func() error {
-			w := searchers.Get().(*searcher)
-			defer searchers.Put(w)
-			sinks[k] = pairSink{sets: sets, limit: limit}
-			end := min((k+1)*stretchItems, n)
-			err := w.stretch(within, &sinks[k], k*stretchItems, end)
+			w := <-idle
+			defer func() { idle <- w }()
+			err := w.stretch(within, sink, &st)
 			if s.searched != nil {
-				s.searched(int64(end - k*stretchItems))
+				s.searched(int64(st.to - st.from))
 			}
 			return err
 		})
-	}
+		return within.Err() == nil
+	})
 	if err := g.Wait(); err != nil {
 		return nil, err
 	}
-	return sinks, ctx.Err()
+	out := make([]pairSink, len(sinks))
+	for i := range sinks {
+		out[i] = *sinks[i]
+	}
+	return out, ctx.Err()
+}
+
+// stretch is a part of the sorted items, with those before it that are active where it begins.
+type stretch struct {
+	from, to int
+	active   []uint32
+}
+
+// plan cuts the items in stretches and gives them to fn, in order, until that is false. What is active where a stretch begins costs
+// time to go through, and of wires that all stand beside each other it can be nearly all items before it. So a stretch is at least
+// half as long as the list it begins with: the lists then come to less than three times the items, however these lie.
+func (s *sweep) plan(fn func(stretch) bool) {
+	st := stretch{}
+	var reaching []uint32
+	for st.from < len(s.items) {
+		st.to = min(st.from+max(stretchItems, len(st.active)/2), len(s.items))
+		if !fn(st) || st.to == len(s.items) {
+			return
+		}
+		line := int64(s.items[st.to].Y1)
+		reaching = reaching[:0]
+		for _, i := range st.active {
+			if int64(s.items[i].Y2)+s.spacing > line {
+				reaching = append(reaching, i)
+			}
+		}
+		for i := st.from; i < st.to; i++ {
+			if int64(s.items[i].Y2)+s.spacing > line {
+				reaching = append(reaching, uint32(i))
+			}
+		}
+		st = stretch{from: st.to, active: slices.Clone(reaching)}
+	}
 }
 
 // searcher is what one worker needs to search a stretch.
 type searcher struct {
 	s      *sweep
 	sink   *pairSink
-	next   []uint32 // by item relative to base: next in its bucket, plus 1
+	room   *arena.Array[active]
+	active []active // of room, as far as it is in use; the first is none
+	free   uint32   // room that has become free, as a list; 0: none
 	level  [levels]level
 	used   uint64 // bit k: level k has been filled in this stretch
 	shift0 int    // log2 of the width of the buckets of level 0
 	slots  int64
-	alive  map[uint32]uint32 // next of items from before the stretch
-	base   uint32
+}
+
+// active is an active item in the list of its bucket. It is a copy: few items are active at a time, and what is looked at again and
+// again then lies close together.
+type active struct {
+	item
+	next uint32 // in the bucket, or the list of free room; 0: none
 }
 
 // level holds the active items of one class of widths. Buckets far apart share a slot; coordinates tell their items apart.
 type level struct {
-	heads []uint32 // first item of the slot, plus 1
+	heads []uint32 // first item of the slot, in active; 0: none
 	taken occupancy
 }
 
 func newSearcher(s *sweep) *searcher {
-	w := &searcher{s: s, alive: map[uint32]uint32{}}
+	w := &searcher{s: s}
 	// Buckets about as wide as the spacing: a query then looks at about four of level 0.
 	w.shift0 = bits.Len64(uint64(max(s.spacing, 1) - 1))
 	span := (s.high-s.low)>>w.shift0 + 1
@@ -139,11 +183,10 @@ func newSearcher(s *sweep) *searcher {
 	if w.slots < 64 {
 		w.slots = 64
 	}
-	w.next = make([]uint32, min(len(s.items), stretchItems))
 	return w
 }
 
-func (w *searcher) stretch(ctx context.Context, sink *pairSink, from, to int) error {
+func (w *searcher) stretch(ctx context.Context, sink *pairSink, st *stretch) error {
 	s := w.s
 	w.sink = sink
 	for u := w.used; u != 0; u &= u - 1 {
@@ -152,20 +195,15 @@ func (w *searcher) stretch(ctx context.Context, sink *pairSink, from, to int) er
 		l.taken.clear()
 	}
 	w.used = 0
-	w.base = uint32(from)
-	clear(w.alive)
-	line := int64(s.items[from].Y1)
-	for b := 0; b*blockItems < from; b++ {
-		if int64(s.blocks[b])+s.spacing <= line {
-			continue
-		}
-		for i := b * blockItems; i < min((b+1)*blockItems, from); i++ {
-			if int64(s.items[i].Y2)+s.spacing > line {
-				w.insert(uint32(i))
-			}
-		}
+	if most := 1 + len(st.active) + st.to - st.from; w.room == nil || len(w.room.Data) < most {
+		w.room.Free()
+		w.room = arena.New[active](most)
 	}
-	for i := from; i < to; i++ {
+	w.active, w.free = w.room.Data[:1], 0
+	for _, i := range st.active {
+		w.insert(&s.items[i])
+	}
+	for i := st.from; i < st.to; i++ {
 		if i&1023 == 0 {
 			if err := ctx.Err(); err != nil {
 				return err
@@ -175,7 +213,7 @@ func (w *searcher) stretch(ctx context.Context, sink *pairSink, from, to int) er
 			}
 		}
 		if !w.query(&s.items[i]) {
-			w.insert(uint32(i))
+			w.insert(&s.items[i])
 		}
 	}
 	sink.near.flush(sink.limit)
@@ -206,8 +244,7 @@ func (w *searcher) levelOf(it *item) int {
 	return max(0, bits.Len64(wide)-w.shift0)
 }
 
-func (w *searcher) insert(i uint32) {
-	it := &w.s.items[i]
+func (w *searcher) insert(it *item) {
 	k := w.levelOf(it)
 	l := &w.level[k]
 	if w.used&(1<<k) == 0 {
@@ -221,23 +258,16 @@ func (w *searcher) insert(i uint32) {
 	if l.heads[slot] == 0 {
 		l.taken.set(slot)
 	}
-	w.setNext(i, l.heads[slot])
-	l.heads[slot] = i + 1
-}
-
-func (w *searcher) setNext(i, v uint32) {
-	if i >= w.base {
-		w.next[i-w.base] = v
+	n := w.free
+	if n == 0 {
+		n = uint32(len(w.active))
+		w.active = append(w.active, active{*it, l.heads[slot]})
 	} else {
-		w.alive[i] = v
+		a := &w.active[n]
+		w.free = a.next
+		*a = active{*it, l.heads[slot]}
 	}
-}
-
-func (w *searcher) nextOf(i uint32) uint32 {
-	if i >= w.base {
-		return w.next[i-w.base]
-	}
-	return w.alive[i]
+	l.heads[slot] = n
 }
 
 // query finds what the item touches or is near to among the active ones; true: the item lies within another rectangle, with
@@ -290,31 +320,23 @@ func (w *searcher) slotRange(l *level, from, to uint32, q *item) bool {
 
 // slot compares an item with those of one slot, and drops from it what the sweep has left behind.
 func (w *searcher) slot(l *level, slot uint32, q *item) bool {
-	s := w.s
-	spacing := s.spacing
+	spacing := w.s.spacing
 	line := int64(q.Y1)
-	before := uint32(0)
-	for e := l.heads[slot]; e != 0; {
-		i := e - 1
-		it := &s.items[i]
-		after := w.nextOf(i)
-		dy := line - int64(it.Y2)
-		if dy >= spacing {
-			if before == 0 {
-				l.heads[slot] = after
-				if after == 0 {
-					l.taken.unset(slot)
-				}
-			} else {
-				w.setNext(before-1, after)
-			}
-			e = after
+	for link := &l.heads[slot]; *link != 0; {
+		n := *link
+		a := &w.active[n]
+		if line-int64(a.Y2) >= spacing {
+			*link = a.next
+			a.next, w.free = w.free, n
 			continue
 		}
-		before, e = e, after
-		if w.compare(it, q) {
+		if w.compare(&a.item, q) {
 			return true
 		}
+		link = &a.next
+	}
+	if l.heads[slot] == 0 {
+		l.taken.unset(slot)
 	}
 	return false
 }

@@ -44,6 +44,14 @@ func (c *Cutter) Rectangles(dst []Rect, outline []Point, fill Fill) ([]Rect, boo
 	if r, ok := plainRect(outline); ok {
 		return append(dst, r), true
 	}
+	if lower, upper, ok := plainL(outline); ok {
+		return append(dst, lower, upper), true
+	}
+	return c.scan(dst, outline, fill)
+}
+
+// scan cuts an outline of any form.
+func (c *Cutter) scan(dst []Rect, outline []Point, fill Fill) ([]Rect, bool) {
 	c.sweep.clear()
 	if !c.sweep.addOutline(outline, false) {
 		return dst, false
@@ -91,6 +99,54 @@ func plainRect(outline []Point) (Rect, bool) {
 		return Rect{min(a.X, c.X), min(a.Y, c.Y), max(a.X, c.X), max(a.Y, c.Y)}, true
 	}
 	return Rect{}, false
+}
+
+// plainL recognises the six corners of an L, with or without the closing point, and gives its slabs below and above the inner corner.
+//
+// Six edges that are upright and level in turn have three abscissas and three ordinates. Where a corner lies inside the box of all,
+// the box has the other two of each: its neighbours then lie on sides of the box, the other three are corners of the box, and the
+// outline is an L.
+func plainL(outline []Point) (lower, upper Rect, ok bool) {
+	if len(outline) == 7 && outline[6] == outline[0] {
+		outline = outline[:6]
+	}
+	if len(outline) != 6 {
+		return lower, upper, false
+	}
+	box, inner := Rect{outline[0].X, outline[0].Y, outline[0].X, outline[0].Y}, -1
+	for _, p := range outline[1:] {
+		box = Rect{min(box.X1, p.X), min(box.Y1, p.Y), max(box.X2, p.X), max(box.Y2, p.Y)}
+	}
+	for i, p := range outline {
+		if p.X > box.X1 && p.X < box.X2 && p.Y > box.Y1 && p.Y < box.Y2 {
+			inner = i
+		}
+	}
+	if inner < 0 {
+		return lower, upper, false
+	}
+	var p [6]Point // from the inner corner on
+	for i := range p {
+		p[i] = outline[(inner+i)%6]
+	}
+	if p[0].X != p[1].X { // the other way round, so that the first edge is upright
+		p[1], p[2], p[4], p[5] = p[5], p[4], p[2], p[1]
+	}
+	if p[0].X != p[1].X || p[1].Y != p[2].Y || p[2].X != p[3].X || p[3].Y != p[4].Y || p[4].X != p[5].X || p[5].Y != p[0].Y {
+		return lower, upper, false
+	}
+	lower, upper = box, box
+	lower.Y2, upper.Y1 = p[0].Y, p[0].Y
+	short := &upper
+	if p[1].Y == box.Y1 {
+		short = &lower
+	}
+	if p[5].X == box.X1 {
+		short.X1 = p[0].X
+	} else {
+		short.X2 = p[0].X
+	}
+	return lower, upper, true
 }
 
 // cut runs the scan over the edges loaded into the sweep.

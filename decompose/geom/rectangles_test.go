@@ -259,3 +259,43 @@ func BenchmarkRectanglesMeander(b *testing.B) {
 	}
 	b.ReportMetric(float64(b.Elapsed().Nanoseconds())/float64(b.N)/float64(len(outline)), "ns/point")
 }
+
+// An L is cut without a scan; every outline of six edges, upright and level in turn, comes out as a scan cuts it.
+func TestSixCornersAreCutAsByScan(t *testing.T) {
+	var c Cutter
+	found := 0
+	for n := range 1 << 12 { // three abscissas and three ordinates from 0 to 3
+		v := func(i int) int64 { return int64(n >> (2 * i) & 3) }
+		level := []Point{{v(0), v(3)}, {v(1), v(3)}, {v(1), v(4)}, {v(2), v(4)}, {v(2), v(5)}, {v(0), v(5)}}
+		upright := make([]Point, len(level))
+		for i, p := range level {
+			upright[len(level)-1-i] = Point{p.Y, p.X}
+		}
+		for _, outline := range [][]Point{level, append(slices.Clone(level), level[0]), upright, append(slices.Clone(upright), upright[0])} {
+			if _, _, ok := plainL(outline); ok {
+				found++
+			}
+			for _, fill := range []Fill{EvenOdd, NonZero} {
+				got, _ := c.Rectangles(nil, outline, fill)
+				want, _ := c.scan(nil, outline, fill)
+				if !slices.Equal(got, want) {
+					t.Fatalf("%v is cut to %v, by a scan to %v", outline, got, want)
+				}
+			}
+		}
+	}
+	// Boxes with a point inside: 4 of a row of 4 (1 + 1 + 2) by 4 of a column, with one of four corners left out: 64 figures. Each is
+	// drawn from any of six corners in two directions, with and without the closing point.
+	if want := 64 * 6 * 2 * 2; found != want {
+		t.Errorf("%d outlines were taken for an L, there are %d", found, want)
+	}
+}
+
+func BenchmarkRectanglesOfL(b *testing.B) {
+	var c Cutter
+	var dst []Rect
+	outline := []Point{{0, 0}, {900, 0}, {900, 20}, {20, 20}, {20, 900}, {0, 900}, {0, 0}}
+	for b.Loop() {
+		dst, _ = c.Rectangles(dst[:0], outline, EvenOdd)
+	}
+}
