@@ -22,9 +22,10 @@ type Clock struct {
 	stage  time.Time // the stage
 	name   string
 	stages []report.Stage
-	shown  time.Time // last time that the line was written
-	line   bool      // there is a line to clear
-	head   string    // a line that stands above it; written once
+	memory func() int64 // most memory that the process had in use so far; nil: not known
+	shown  time.Time    // last time that the line was written
+	line   bool         // there is a line to clear
+	head   string       // a line that stands above it; written once
 }
 
 const (
@@ -39,7 +40,7 @@ const (
 
 // newClock starts the clock of a run. It shows the stages on w if that is a terminal.
 func newClock(w io.Writer, quiet bool) *Clock {
-	c := &Clock{now: time.Now}
+	c := &Clock{now: time.Now, memory: peakMemory}
 	c.begun = c.now()
 	c.stage = c.begun
 	if !quiet && isTerminal(w) {
@@ -113,14 +114,35 @@ func (c *Clock) end() {
 	if c.name == "" {
 		return
 	}
-	seconds := c.now().Sub(c.stage).Seconds()
-	k := slices.IndexFunc(c.stages, func(s report.Stage) bool { return s.Name == c.name })
+	s := c.find(c.name)
+	s.Seconds += c.now().Sub(c.stage).Seconds()
+	if c.memory != nil {
+		s.Peak = c.memory()
+	}
+	c.name = ""
+}
+
+// find gives the notes of a stage, new ones where it has none.
+func (c *Clock) find(name string) *report.Stage {
+	k := slices.IndexFunc(c.stages, func(s report.Stage) bool { return s.Name == name })
 	if k < 0 {
 		k = len(c.stages)
-		c.stages = append(c.stages, report.Stage{Name: c.name})
+		c.stages = append(c.stages, report.Stage{Name: name})
 	}
-	c.stages[k].Seconds += seconds
-	c.name = ""
+	return &c.stages[k]
+}
+
+// Work notes how much of something a stage did; what is told of the same things adds up.
+func (c *Clock) Work(stage, things string, n int64) {
+	c.mu.Lock()
+	defer c.mu.Unlock()
+	s := c.find(stage)
+	k := slices.IndexFunc(s.Work, func(w report.Work) bool { return w.Things == things })
+	if k < 0 {
+		k = len(s.Work)
+		s.Work = append(s.Work, report.Work{Things: things})
+	}
+	s.Work[k].Count += n
 }
 
 // draw writes the line again, not too often.

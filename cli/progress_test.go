@@ -61,11 +61,19 @@ func TestClockShowsWhereItIs(t *testing.T) {
 	wait(time.Second)
 	c.Stage("read")
 	wait(time.Second)
+	peak := int64(5 << 20)
+	c.memory = func() int64 { return peak }
+	c.Work("pairs", "compared", 3)
+	c.Work("read", "bytes", 10)
+	c.Work("pairs", "near", 1)
+	c.Work("pairs", "compared", 4)
 	stages, seconds := c.stop()
 	if last(screen) != "" {
 		t.Errorf("at the end the screen shows %q", last(screen))
 	}
-	if diff := cmp.Diff([]report.Stage{{Name: "read", Seconds: 3.05}, {Name: "pairs", Seconds: 3}}, stages); diff != "" || seconds != 6.05 {
+	want := []report.Stage{{Name: "read", Seconds: 3.05, Peak: peak, Work: []report.Work{{Things: "bytes", Count: 10}}},
+		{Name: "pairs", Seconds: 3, Work: []report.Work{{Things: "compared", Count: 7}, {Things: "near", Count: 1}}}}
+	if diff := cmp.Diff(want, stages); diff != "" || seconds != 6.05 {
 		t.Errorf("%g s: %s", seconds, diff)
 	}
 	c.Progress(1, 2) // behind the end nothing is written

@@ -48,6 +48,9 @@ func runDecompose(ctx context.Context, o *Options, w *work) (*report.Report, err
 	if err := ctx.Err(); err != nil {
 		return nil, err
 	}
+	w.clock.Work("read", "bytes", lib.Bytes)
+	w.clock.Work("read", "figures", int64(len(lib.Figures)))
+	w.clock.Work("read", "references", int64(len(lib.Refs)))
 	rules, err := o.Deck.Resolve(lib.DBU)
 	if err != nil {
 		return nil, err
@@ -56,7 +59,7 @@ func runDecompose(ctx context.Context, o *Options, w *work) (*report.Report, err
 	if err != nil {
 		return nil, err
 	}
-	opt := decompose.Options{Jobs: o.Jobs, Memory: o.Memory, Top: o.Top, Stage: w.clock.Stage, Progress: w.clock.Count}
+	opt := decompose.Options{Jobs: o.Jobs, Memory: o.Memory, Top: o.Top, Stage: w.clock.Stage, Progress: w.clock.Count, Work: w.clock.Work}
 	if o.Page != "" {
 		opt.Drawings = report.PageCards
 	}
@@ -80,12 +83,14 @@ func runDecompose(ctx context.Context, o *Options, w *work) (*report.Report, err
 		return nil, ofLayout(o.Input, err)
 	}
 	if w.out != nil {
-		if err := run.Write(ctx, w.out, in.ReaderAt(), func(done int64) { w.clock.Progress(done, lib.Bytes) }); err != nil {
+		out := &metered{w: w.out}
+		if err := run.Write(ctx, out, in.ReaderAt(), func(done int64) { w.clock.Progress(done, lib.Bytes) }); err != nil {
 			return nil, err
 		}
 		if err := in.Changed(); err != nil {
 			return nil, err
 		}
+		w.clock.Work("write", "bytes", out.bytes)
 	}
 	sum, bytes := in.Sum()
 	return &report.Report{
@@ -93,6 +98,7 @@ func runDecompose(ctx context.Context, o *Options, w *work) (*report.Report, err
 		Rules:    rules,
 		Result:   result,
 		Warnings: run.Warnings,
+		Run:      report.Run{Estimate: run.Estimate()},
 	}, nil
 }
 
@@ -106,6 +112,18 @@ func ofLayout(name string, err error) error {
 		return fmt.Errorf("%s: %w", name, err)
 	}
 	return err
+}
+
+// metered counts what is written.
+type metered struct {
+	w     io.Writer
+	bytes int64
+}
+
+func (m *metered) Write(p []byte) (int, error) {
+	n, err := m.w.Write(p)
+	m.bytes += int64(n)
+	return n, err
 }
 
 // readBaseline indexes an earlier result.

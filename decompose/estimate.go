@@ -26,12 +26,14 @@ func indexBytes(lib *gds.Library) int64 {
 		int64(len(lib.Placements))*int64(unsafe.Sizeof(gds.Placement{})) + int64(len(lib.Structures))*int64(unsafe.Sizeof(gds.Structure{}))
 }
 
+// Estimate is the memory in bytes that the layers done so far were expected to need, process and index included.
+func (r *Run) Estimate() int64 { return r.opt.most }
+
 // checkMemory refuses a layer that will not fit into the memory that the run may use.
 func (l *layout) checkMemory(opt *Options, before int64) error {
-	if opt.Memory <= 0 {
-		return nil
-	}
-	if need := before + l.estimate(); need > opt.Memory {
+	need := before + l.estimate()
+	opt.most = max(opt.most, need)
+	if opt.Memory > 0 && need > opt.Memory {
 		return &LimitError{Msg: fmt.Sprintf("layer %s: %d flat figures will need about %s of memory, more than the %s that this run may use; allow more with --memory, or decompose the blocks one by one with --top",
 			l.rules.Name, l.flat.total, sizeText(need), sizeText(opt.Memory))}
 	}

@@ -8,6 +8,7 @@ import (
 	"slices"
 
 	"maskpair/gds"
+	"maskpair/gds/arena"
 )
 
 // This file deals the free choices. A group that no order and no memory binds may be turned over; what decides must serve the
@@ -22,6 +23,11 @@ import (
 func (l *layout) deal(ctx context.Context, a *assignment, s *solver, jobs int) error {
 	d := &dealer{l: l, a: a}
 	shared := d.hashFigures()
+	if shared {
+		d.findPlaces()
+		defer d.places.Free()
+	}
+	defer func() { s.opt.work(stageChoose, "figures", d.visited) }()
 	d.turn(shared)
 	if !shared || len(s.groups) == 0 {
 		return nil
@@ -121,14 +127,23 @@ type dealer struct {
 	a     *assignment
 	delta []float64 // by group, as the masks are now
 
-	shared  []bool   // by structure: placed more than once and with figures of its own
-	hash    []uint64 // by figure of the library: what it is; only of shared structures
-	h0, h1  []uint64 // by group: its shared figures with their masks as they are now, and turned over
-	size    []uint32 // by group: shared flat figures
-	classOf []int32  // by group; -1: no shared figures
+	shared  []bool              // by structure: placed more than once and with figures of its own
+	hash    []uint64            // by figure of the library: what it is; only of shared structures
+	signs   [][2]uint64         // by figure of the library: the same on A, and on B
+	places  *arena.Array[place] // placements of shared structures, in the order of their ordinals
+	visited int64               // flat figures, each as often as it was gone through
+	h0, h1  []uint64            // by group: its shared figures with their masks as they are now, and turned over
+	size    []uint32            // by group: shared flat figures
+	classOf []int32             // by group; -1: no shared figures
 	classes []class
 	homes   []int8    // by figure: +1 A, -1 B
 	now     []float64 // by class: area on A less that on B, before the descent
+}
+
+// place is a placement of a shared structure.
+type place struct {
+	first     uint32 // ordinal of its first own figure
+	structure int32
 }
 
 // class is a set of groups with the same shared figures on the same relative masks.
@@ -177,13 +192,16 @@ func (d *dealer) hashFigures() bool {
 	if !any {
 		return false
 	}
-	d.hash = make([]uint64, len(f.lib.Figures))
+	d.hash, d.signs = make([]uint64, len(f.lib.Figures)), make([][2]uint64, len(f.lib.Figures))
 	for _, s := range f.h.bottom {
 		if !d.shared[s] {
 			continue
 		}
 		name := mixString(f.h.name(s))
-		f.ownFigures(s, func(_, i uint32) { d.hash[i] = hashFigure(f.lib, i, name) })
+		f.ownFigures(s, func(_, i uint32) {
+			h := hashFigure(f.lib, i, name)
+			d.hash[i], d.signs[i] = h, [2]uint64{mix(h, 0), mix(h, 1)}
+		})
 	}
 	return true
 }
@@ -205,15 +223,33 @@ func hashFigure(lib *gds.Library, i uint32, h uint64) uint64 {
 	return mix(mix(h, sum), uint64(uint32(o.Width)))
 }
 
-// eachShared calls fn for every flat figure of a shared structure.
-func (d *dealer) eachShared(fn func(ordinal, figure uint32)) {
+// findPlaces lists the placements of shared structures, so that they can be gone through often.
+func (d *dealer) findPlaces() {
 	f := d.l.flat
+	n := uint64(0)
+	for _, s := range f.h.bottom {
+		if d.shared[s] {
+			n += f.h.placed[s]
+		}
+	}
+	d.places = arena.New[place](int(n))
+	list := d.places.Data[:0]
 	for top := range f.h.tops {
 		f.visit(top, func(s int32, _ placement, _ bool, first uint32) {
 			if d.shared[s] {
-				f.ownFigures(s, func(k, figure uint32) { fn(first+k, figure) })
+				list = append(list, place{first, s})
 			}
 		})
+	}
+}
+
+// eachShared calls fn for every placement of a shared structure, with its own figures, whose ordinals begin at first.
+func (d *dealer) eachShared(fn func(first uint32, figures []uint32)) {
+	list := d.l.flat.list
+	for _, p := range d.places.Data {
+		own := list[p.structure]
+		d.visited += int64(len(own))
+		fn(p.first, own)
 	}
 }
 
@@ -221,12 +257,14 @@ func (d *dealer) eachShared(fn func(ordinal, figure uint32)) {
 func (d *dealer) hashGroups() {
 	d.h0, d.h1, d.size = make([]uint64, d.a.groups), make([]uint64, d.a.groups), make([]uint32, d.a.groups)
 	node, group, mask := d.l.nodeOf.Data, d.a.group.Data, d.a.mask.Data
-	d.eachShared(func(ordinal, figure uint32) {
-		n := node[ordinal]
-		g, m := group[n], uint64(mask[n])
-		d.size[g]++
-		d.h0[g] += mix(d.hash[figure], m)
-		d.h1[g] += mix(d.hash[figure], m^1)
+	d.eachShared(func(first uint32, figures []uint32) {
+		for k, n := range node[first : first+uint32(len(figures))] {
+			g, m := group[n], mask[n]&1
+			sign := &d.signs[figures[k]]
+			d.size[g]++
+			d.h0[g] += sign[m]
+			d.h1[g] += sign[m^1]
+		}
 	})
 }
 
@@ -272,19 +310,27 @@ func (d *dealer) fillClasses() {
 	for i := range d.classes {
 		d.classes[i].members = make([]member, 0, d.size[d.classes[i].example])
 	}
-	node, group, mask := d.l.nodeOf.Data, d.a.group.Data, d.a.mask.Data
-	d.eachShared(func(ordinal, figure uint32) {
-		n := node[ordinal]
-		g := group[n]
-		c := &d.classes[d.classOf[g]]
-		if c.example != int32(g) {
-			return
+	example := make([]uint64, (d.l.nodes+63)/64) // bit by node: in the group of a class
+	group, mask := d.a.group.Data, d.a.mask.Data
+	for n, g := range group {
+		if c := d.classOf[g]; c >= 0 && d.classes[c].example == int32(g) {
+			example[n>>6] |= 1 << (n & 63)
 		}
-		m := mask[n]
-		if d.canonical(int(g)) < 0 {
-			m ^= 1
+	}
+	node := d.l.nodeOf.Data
+	d.eachShared(func(first uint32, figures []uint32) {
+		for k, n := range node[first : first+uint32(len(figures))] {
+			if example[n>>6]>>(n&63)&1 == 0 {
+				continue
+			}
+			g := group[n]
+			c := &d.classes[d.classOf[g]]
+			m := mask[n]
+			if d.canonical(int(g)) < 0 {
+				m ^= 1
+			}
+			c.members = append(c.members, member{figures[k], int32(1 - m), int32(m)})
 		}
-		c.members = append(c.members, member{figure, int32(1 - m), int32(m)})
 	})
 	for i := range d.classes {
 		c := &d.classes[i]

@@ -48,7 +48,8 @@ type builder struct {
 	items    *arena.Array[item]
 	scratch  *arena.Array[item]
 	bands    *arena.Array[band]
-	sinks    []pairSink
+	sinks    []pairSink // with near pairs
+	done     built
 	areas    geom.AreaScratch
 	sorted   []item                 // of the window at hand
 	slanted  map[uint32]*geom.Parts // shapes of the top at hand that have slanted figures
@@ -60,7 +61,7 @@ type builder struct {
 
 // newLayout builds one deck layer; sought says what looks for its shapes, nil: nothing.
 func newLayout(ctx context.Context, h *hierarchy, sel *selection, rules *LayerRules, number int, sought *sought, opt *Options) (*layout, error) {
-	opt.stage("flatten")
+	opt.stage(stageFlatten)
 	g := gridOf(h.lib, sel)
 	if sought.needsHalves(h) {
 		g.scale = 2
@@ -123,7 +124,8 @@ func newLayout(ctx context.Context, h *hierarchy, sel *selection, rules *LayerRu
 	if l.given != nil {
 		l.given.apply(l)
 	}
-	opt.stage("pairs")
+	b.done.tell(opt)
+	opt.stage(stagePairs)
 	l.near = gather(b.sinks, l.nodeOf.Data, l.nodes, l.given)
 	if err := l.judgeFacing(ctx, b.kept, opt.jobs()); err != nil {
 		return nil, err
@@ -193,12 +195,12 @@ func (b *builder) top(top int, sets union, shapes uint32) (uint32, error) {
 		if err := b.prepare(top, win); err != nil {
 			return 0, err
 		}
-		b.opt.stage("pairs")
+		b.opt.stage(stagePairs)
 		if err := b.search(sets, win); err != nil {
 			return 0, err
 		}
 	}
-	b.opt.stage("shapes")
+	b.opt.stage(stageShapes)
 	from, to := uint32(f.first[top]), uint32(f.first[top]+f.all[f.h.tops[top]])
 	sets.point(from, to)
 	b.joined = true
@@ -272,7 +274,7 @@ func (b Box) shift(x, y int64) Box { return Box{b.X1 + x, b.Y1 + y, b.X2 + x, b.
 
 // prepare flattens a window of a top and sorts its items.
 func (b *builder) prepare(top int, win window) error {
-	b.opt.stage("flatten")
+	b.opt.stage(stageFlatten)
 	f := b.l.flat
 	nItem, nBand, err := f.flatten(b.ctx, top, win, b.items.Data, b.bands.Data, b.jobs)
 	if err != nil {
@@ -282,12 +284,15 @@ func (b *builder) prepare(top int, win window) error {
 	b.polygons = slices.Clip(f.polygons)
 	b.polygons = w.oddFigures(&b.l.odd[top], placement{0, -win.originX, -win.originY}, 0, b.polygons)
 	b.polygons = b.l.look.emit(top, f.box[f.h.tops[top]].join(b.l.odd[top].box), &w, b.polygons)
-	b.opt.stage("sort")
+	b.opt.stage(stageSort)
 	sets := union(b.l.nodeOf.Data)
 	if b.joined {
 		sets = nil
 	}
-	b.sorted = dropCopies(sortItems(b.items.Data[:w.nItem], b.scratch.Data[:w.nItem], b.jobs), sets, uint32(f.total), b.l.keptTags())
+	sorted := sortItems(b.items.Data[:w.nItem], b.scratch.Data[:w.nItem], b.jobs)
+	b.sorted = dropCopies(sorted, sets, uint32(f.total), b.l.keptTags())
+	b.done.items += int64(w.nItem)
+	b.done.copies += int64(len(sorted) - len(b.sorted))
 	return nil
 }
 
@@ -321,7 +326,7 @@ next:
 func (b *builder) search(sets union, win window) error {
 	scale := b.l.flat.forms.scale
 	s := &sweep{items: b.sorted, bands: b.bands.Data, polygons: b.polygons, spacing: b.l.rules.Reach() * scale,
-		anyMask: b.l.rules.AnyMask * scale, figures: uint32(b.l.flat.total), tags: b.l.keptTags(), searched: b.opt.counted(int64(len(b.sorted)), "figures")}
+		anyMask: b.l.rules.AnyMask * scale, figures: uint32(b.l.flat.total), tags: b.l.keptTags(), progress: b.opt.counted(int64(len(b.sorted)), "figures")}
 	sinks, err := s.run(b.ctx, sets, b.jobs, &b.limit)
 	if err == errTooManyPairs {
 		return &LimitError{Msg: fmt.Sprintf("layer %s: so many figures are nearer to each other than %d database units that their pairs do not fit the memory that this run may use; check the spacing, or allow more with --memory",
@@ -332,9 +337,11 @@ func (b *builder) search(sets union, win window) error {
 	}
 	for i := range sinks {
 		b.l.hits = append(b.l.hits, sinks[i].hits...)
-		sinks[i].hits = nil
+		b.done.add(&sinks[i].done)
+		if len(sinks[i].near.blocks) > 0 {
+			b.sinks = append(b.sinks, pairSink{near: sinks[i].near})
+		}
 	}
-	b.sinks = append(b.sinks, sinks...)
 	return nil
 }
 
@@ -371,6 +378,7 @@ func (b *builder) ordinal(it *item) (uint32, bool) {
 
 // numberShapes numbers the shapes of the window at hand that have no number yet.
 func (b *builder) numberShapes(sets union, shapes uint32) uint32 {
+	b.done.numbered += int64(len(b.sorted))
 	for i := range b.sorted {
 		o, ok := b.ordinal(&b.sorted[i])
 		if !ok {
@@ -396,6 +404,7 @@ func (b *builder) numberShapes(sets union, shapes uint32) uint32 {
 func (b *builder) measure(begin, end uint32) {
 	count := arena.New[uint32](int(end-begin) + 1)
 	defer count.Free()
+	b.done.numbered += 2 * int64(len(b.sorted))
 	n := count.Data
 	node := b.l.nodeOf.Data
 	for i := range b.sorted {

@@ -6,6 +6,7 @@ import (
 	"slices"
 
 	"maskpair/decompose/exact"
+	"maskpair/gds/arena"
 )
 
 // This file chooses among the equally good solutions of broken groups. A group with an odd cycle has many, and which one it takes
@@ -19,24 +20,20 @@ func (d *dealer) usualMasks() []int8 {
 	tables := make([]variantTable, len(f.lib.Structures))
 	node, mask := l.nodeOf.Data, d.a.mask.Data
 	var words []uint32
-	for top := range f.h.tops {
-		f.visit(top, func(s int32, _ placement, _ bool, first uint32) {
-			if !d.shared[s] {
-				return
+	for _, p := range d.places.Data {
+		words = words[:0]
+		nodes := node[p.first : p.first+f.own[p.structure]]
+		d.visited += int64(len(nodes))
+		for len(nodes) > 0 {
+			n := min(len(nodes), 32)
+			w := uint32(0)
+			for i, u := range nodes[:n] {
+				w |= uint32(mask[u]) << i
 			}
-			words = words[:0]
-			nodes := node[first : first+f.own[s]]
-			for len(nodes) > 0 {
-				n := min(len(nodes), 32)
-				w := uint32(0)
-				for i, u := range nodes[:n] {
-					w |= uint32(mask[u]) << i
-				}
-				words = append(words, w)
-				nodes = nodes[n:]
-			}
-			tables[s].intern(words)
-		})
+			words = append(words, w)
+			nodes = nodes[n:]
+		}
+		tables[p.structure].intern(words)
 	}
 	usual := make([]int8, len(f.lib.Figures))
 	for _, s := range f.h.bottom {
@@ -65,29 +62,32 @@ func (d *dealer) usualMasks() []int8 {
 // solveNear solves the broken groups again, nearest to the usual masks among all that is as good.
 func (s *solver) solveNear(ctx context.Context, d *dealer, usual []int8, bias float64, jobs int) error {
 	start := make([]int32, len(s.groups)+1)
-	local := make(map[uint32]int32, s.nodes())
+	local := arena.New[uint32](s.l.nodes) // by node: its number among those of all broken groups, plus 1
+	defer local.Free()
 	for i := range s.groups {
 		b := &s.groups[i]
 		start[i+1] = start[i] + int32(len(b.nodes))
 		for k, u := range b.nodes {
-			local[u] = start[i] + int32(k)
+			local.Data[u] = uint32(start[i]) + uint32(k) + 1
 		}
 	}
 	off := make([][2]int64, start[len(s.groups)])
 	node := s.l.nodeOf.Data
-	d.eachShared(func(ordinal, figure uint32) {
-		n := node[ordinal]
-		if _, ok := s.of(n); !ok {
-			return
-		}
-		switch k := local[n]; usual[figure] {
-		case 1:
-			off[k][1]++
-		case -1:
-			off[k][0]++
+	d.eachShared(func(first uint32, figures []uint32) {
+		for i, n := range node[first : first+uint32(len(figures))] {
+			k := local.Data[n]
+			if k == 0 {
+				continue
+			}
+			switch usual[figures[i]] {
+			case 1:
+				off[k-1][1]++
+			case -1:
+				off[k-1][0]++
+			}
 		}
 	})
-	s.lean(off, local, bias)
+	s.lean(off, bias)
 	for i := range s.groups {
 		s.groups[i].comeHome(off[start[i]:start[i+1]])
 	}
@@ -148,18 +148,25 @@ func (s *solver) nodes() int {
 const leanScale = 64
 
 // lean makes the fuller mask dearer: bias is what the area of an average node on A costs more than on B, in figures away from home.
-func (s *solver) lean(off [][2]int64, local map[uint32]int32, bias float64) {
+func (s *solver) lean(off [][2]int64, bias float64) {
 	sum := 0.0
-	for u := range local {
-		sum += s.l.area[u]
+	for i := range s.groups {
+		for _, u := range s.groups[i].nodes {
+			sum += s.l.area[u]
+		}
 	}
-	for u, k := range local {
-		off[k][0] *= leanScale
-		off[k][1] *= leanScale
-		if lean := int64(math.Round(leanScale * bias * s.l.area[u] * float64(len(local)) / sum)); lean > 0 {
-			off[k][0] += lean
-		} else {
-			off[k][1] -= lean
+	k := 0
+	for i := range s.groups {
+		for _, u := range s.groups[i].nodes {
+			o := &off[k]
+			k++
+			o[0] *= leanScale
+			o[1] *= leanScale
+			if lean := int64(math.Round(leanScale * bias * s.l.area[u] * float64(len(off)) / sum)); lean > 0 {
+				o[0] += lean
+			} else {
+				o[1] -= lean
+			}
 		}
 	}
 }

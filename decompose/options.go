@@ -8,7 +8,10 @@ type Options struct {
 	Memory int64             // bytes that the run may use; 0: no limit of its own
 	Top    string            // take this structure alone; "": all tops
 	held   int64             // bytes that layers done before hold
+	most   int64             // most bytes that a layer was expected to need, what layers before it hold included
 	Stage  func(name string) // told when a stage begins, possibly again; may be nil
+	// Work is told how much of something a stage did, possibly again: counts that add up. It may be nil.
+	Work func(stage, things string, n int64)
 	// Progress is told now and then how much of a stage is done, of how many things; it may be nil, and is called by several workers.
 	Progress func(done, of int64, things string)
 	// Drawings is for how many groups of a layer the result is to hold pictures, besides its maps; 0: no LayerResult.Drawing.

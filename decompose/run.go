@@ -137,7 +137,7 @@ func (r *Run) layer(ctx context.Context, i int, orders Orderer) error {
 	l.classes = r.classes
 	r.layers = append(r.layers, l)
 	v.layout = l
-	r.opt.stage("solve")
+	r.opt.stage(stageSolve)
 	o := &Orders{}
 	if orders != nil {
 		if o, err = orders.Orders(i, v); err != nil {
@@ -154,7 +154,9 @@ func (r *Run) layer(ctx context.Context, i int, orders Orderer) error {
 	if err := s.solve(ctx, r.opt.jobs()); err != nil {
 		return err
 	}
-	r.opt.stage("choose")
+	r.opt.work(stageSolve, "pairs", l.near.pairs)
+	r.opt.work(stageSolve, "table_entries", s.tableEntries())
+	r.opt.stage(stageChoose)
 	if err := l.deal(ctx, a, s, r.opt.jobs()); err != nil {
 		return err
 	}
@@ -162,7 +164,7 @@ func (r *Run) layer(ctx context.Context, i int, orders Orderer) error {
 		return err
 	}
 	r.masks = append(r.masks, a.mask.Data)
-	r.opt.stage("report")
+	r.opt.stage(stageReport)
 	res := r.summarise(l, a, o)
 	if err := s.explain(ctx, r.rules, &res, r.opt.jobs()); err != nil {
 		return err
@@ -240,9 +242,13 @@ func (r *Run) summarise(l *layout, a *assignment, o *Orders) LayerResult {
 
 // Write copies the stream with every figure on its mask.
 func (r *Run) Write(ctx context.Context, dst io.Writer, src io.ReaderAt, progress func(int64)) error {
-	r.opt.stage("variants")
+	r.opt.stage(stageVariants)
 	v := newVariants(r.h, r.layers, r.masks)
 	p := newOutputPlan(r.rules, r.classes, v, r.opt.Top, r.tails())
-	r.opt.stage("write")
+	for s := range v.tables {
+		r.opt.work(stageVariants, "ways", int64(v.tables[s].ways()))
+	}
+	r.opt.work(stageVariants, "placements", v.placements)
+	r.opt.stage(stageWrite)
 	return gds.CopyStream(dst, src, r.lib, r.classes.interest, p.plan(), progress)
 }

@@ -26,6 +26,7 @@ type pairSink struct {
 	hits    []hit // probes that touch a figure
 	touched []hit // pairs of touching figures, where they are wanted
 	limit   *atomic.Int64
+	done    searched
 }
 
 // hit says that a probe touches a flat figure, or a figure another.
@@ -42,7 +43,7 @@ type sweep struct {
 	low, high   int64  // least X1, greatest X2
 	keepTouched bool
 	tags        []uint8           // by ordinal: only figures with equal tags hide each other; nil: all are equal
-	searched    func(items int64) // told of each stretch that is done; nil: nobody is
+	progress    func(items int64) // told of each stretch that is done; nil: nobody is
 }
 
 const (
@@ -89,8 +90,8 @@ func (s *sweep) run(ctx context.Context, sets union, jobs int, limit *atomic.Int
 			w := <-idle
 			defer func() { idle <- w }()
 			err := w.stretch(within, sink, &st)
-			if s.searched != nil {
-				s.searched(int64(st.to - st.from))
+			if s.progress != nil {
+				s.progress(int64(st.to - st.from))
 			}
 			return err
 		})
@@ -200,6 +201,7 @@ func (w *searcher) stretch(ctx context.Context, sink *pairSink, st *stretch) err
 		w.room = arena.New[active](most)
 	}
 	w.active, w.free = w.room.Data[:1], 0
+	sink.done.carried += int64(len(st.active))
 	for _, i := range st.active {
 		w.insert(&s.items[i])
 	}
@@ -283,6 +285,7 @@ func (w *searcher) query(q *item) bool {
 		last := (min(int64(q.X2)+s.spacing, s.high) - s.low) >> shift
 		mask := w.slots - 1
 		if last-first < 6 {
+			w.sink.done.buckets += last - first + 1
 			for b := first; b <= last; b++ {
 				if slot := uint32(b & mask); l.heads[slot] != 0 && w.slot(l, slot, q) {
 					return true
@@ -311,6 +314,7 @@ func (w *searcher) query(q *item) bool {
 
 func (w *searcher) slotRange(l *level, from, to uint32, q *item) bool {
 	for slot, ok := l.taken.next(from); ok && slot <= to; slot, ok = l.taken.next(slot + 1) {
+		w.sink.done.buckets++
 		if w.slot(l, slot, q) {
 			return true
 		}
@@ -346,6 +350,7 @@ func (w *searcher) slot(l *level, slot uint32, q *item) bool {
 func (w *searcher) compare(it, q *item) bool {
 	s := w.s
 	spacing := s.spacing
+	w.sink.done.compared++
 	dx := max(int64(it.X1)-int64(q.X2), int64(q.X1)-int64(it.X2))
 	if dx >= spacing {
 		return false
@@ -361,7 +366,7 @@ func (w *searcher) compare(it, q *item) bool {
 			return false
 		}
 		if it.ID != q.ID {
-			w.sink.sets.join(it.ID, q.ID)
+			w.join(it.ID, q.ID)
 		}
 		return it.X1 <= q.X1 && q.X2 <= it.X2 && q.Y2 <= it.Y2 && (s.tags == nil || s.tags[it.ID] == s.tags[q.ID])
 	}
@@ -372,12 +377,23 @@ func (w *searcher) compare(it, q *item) bool {
 	return false
 }
 
+// join makes one shape of two figures that touch.
+func (w *searcher) join(a, b uint32) {
+	w.sink.done.joined++
+	w.sink.done.links += w.sink.sets.join(a, b)
+}
+
 // near records a near pair of figures; distance is squared, in work units.
 func (w *searcher) near(a, b uint32, distance uint64) {
 	tooNear := uint32(0)
 	if w.s.anyMask > 0 && distance < uint64(w.s.anyMask)*uint64(w.s.anyMask) {
 		tooNear = 1
 	}
+	w.add(a, b, tooNear)
+}
+
+func (w *searcher) add(a, b, tooNear uint32) {
+	w.sink.done.near++
 	w.sink.near.add(a, b, tooNear, w.sink.limit)
 }
 
@@ -429,14 +445,14 @@ func (w *searcher) odd(a, b *item) {
 		if s.keepTouched {
 			w.sink.touched = append(w.sink.touched, hit{idA, idB})
 		} else {
-			w.sink.sets.join(idA, idB)
+			w.join(idA, idB)
 		}
 	case relation == geom.Near && !probeA && !probeB:
 		tooNear := uint32(0)
 		if s.anyMask > 0 && s.relation(a, bandA, b, bandB, s.anyMask) == geom.Near {
 			tooNear = 1
 		}
-		w.sink.near.add(idA, idB, tooNear, w.sink.limit)
+		w.add(idA, idB, tooNear)
 	}
 }
 

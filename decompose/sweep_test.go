@@ -211,3 +211,25 @@ func BenchmarkSort(b *testing.B) {
 		})
 	}
 }
+
+// Upright wires beside each other are all active to the end: each stretch begins with all that lies before it.
+func TestStretchesOfWhatStaysActive(t *testing.T) {
+	const n = 20 * stretchItems
+	items := make([]item, n)
+	for i := range items {
+		items[i] = item{X1: int32(40 * i), Y1: int32(i), X2: int32(40*i + 20), Y2: math.MaxInt32, ID: uint32(i)}
+	}
+	s := &sweep{items: items, spacing: 36, figures: n}
+	next, carried := 0, 0
+	s.plan(func(st stretch) bool {
+		if st.from != next || st.to <= st.from || len(st.active) != st.from {
+			t.Fatalf("a stretch from %d to %d with %d active items follows one that ends at %d", st.from, st.to, len(st.active), next)
+		}
+		next = st.to
+		carried += len(st.active)
+		return true
+	})
+	if next != n || carried > 3*n {
+		t.Errorf("stretches end at %d of %d items and begin with %d active ones in total", next, n, carried)
+	}
+}

@@ -15,11 +15,18 @@ func newUnion(u union) union {
 
 // find gives the root of a set as it is at some moment of the call.
 func (u union) find(a uint32) uint32 {
+	root, _ := u.follow(a)
+	return root
+}
+
+// follow is find; it also says how many links it followed.
+func (u union) follow(a uint32) (root uint32, links int64) {
 	for {
 		p := atomic.LoadUint32(&u[a])
 		if p == a {
-			return a
+			return a, links
 		}
+		links++
 		g := atomic.LoadUint32(&u[p])
 		if g != p {
 			// Losing the race to another worker loses only a short cut.
@@ -29,18 +36,21 @@ func (u union) find(a uint32) uint32 {
 	}
 }
 
-// join makes one set of two.
-func (u union) join(a, b uint32) {
+// join makes one set of two, and says how many links it followed.
+func (u union) join(a, b uint32) (links int64) {
 	for {
-		a, b = u.find(a), u.find(b)
+		var more, still int64
+		a, more = u.follow(a)
+		b, still = u.follow(b)
+		links += more + still
 		if a == b {
-			return
+			return links
 		}
 		if a > b {
 			a, b = b, a
 		}
 		if atomic.CompareAndSwapUint32(&u[b], b, a) {
-			return
+			return links
 		}
 	}
 }

@@ -20,6 +20,8 @@ type variants struct {
 	cursor []uint64       // by layer: next ordinal
 	stack  []uint32
 	active []bool // by structure: has figures of some layer under it
+
+	placements int64 // of active structures that were gone through
 }
 
 // variantTable holds the ways of one structure. A way is a list of words: first the masks of the own figures, layer by layer, 32 to a
@@ -77,6 +79,7 @@ func newVariants(h *hierarchy, layers []*layout, masks [][]uint8) *variants {
 
 // walk gives the way of one placement of a structure; the cursors pass over its figures.
 func (v *variants) walk(s int32) uint32 {
+	v.placements++
 	begin := len(v.stack)
 	var cut []uint32
 	for k, l := range v.layers {

@@ -44,10 +44,20 @@ func (j *jsonWriter) run(r *Run) {
 			j.inline(func() {
 				j.key("name").str(s.Name)
 				j.key("seconds").number(s.Seconds)
+				j.key("peak_bytes").integer(s.Peak)
+				j.key("work").row(func() {
+					for _, w := range s.Work {
+						j.inline(func() {
+							j.key("things").str(w.Things)
+							j.key("count").integer(w.Count)
+						})
+					}
+				})
 			})
 		}
 	})
 	j.key("peak_bytes").integer(r.Peak)
+	j.key("estimated_bytes").integer(r.Estimate)
 }
 
 func (j *jsonWriter) layer(l *decompose.LayerResult) {

@@ -31,12 +31,22 @@ type Run struct {
 	Seconds float64
 	Stages  []Stage // in order
 	Peak    int64   // most memory in use at a time, bytes; 0: not known
+	// Estimate is how much memory the run was expected to use, in bytes, before it flattened anything: what --memory is held against.
+	Estimate int64
 }
 
 // Stage is one step of a run.
 type Stage struct {
 	Name    string
 	Seconds float64
+	Peak    int64  // most memory in use at a time from the start of the run to the end of the stage, bytes; 0: not known
+	Work    []Work // what it did
+}
+
+// Work is how much of something a stage did.
+type Work struct {
+	Things string // "compared"
+	Count  int64
 }
 
 // FrozenFaults counts the places where a frozen mask does not come out as it was made.

@@ -24,7 +24,7 @@ func sample() *Report {
 	}
 	return &Report{
 		Input: Input{Name: "chip.gds", SHA256: "ab12", Bytes: 4096, DBU: 1e-9, Tops: []string{"chip", "na\"me", "caf\xe9"}},
-		Run:   Run{Version: "v1", Jobs: 2, Seconds: 1.5, Stages: []Stage{{"reading", 0.25}}, Peak: 3 << 20},
+		Run:   Run{Version: "v1", Jobs: 2, Seconds: 1.5, Stages: []Stage{{"reading", 0.25, 1 << 20, []Work{{"bytes", 4096}, {"figures", 7}}}}, Peak: 3 << 20, Estimate: 2 << 20},
 		Rules: &decompose.Rules{DBU: 1e-9, Unit: "nm", UnitDBU: 1},
 		Result: &decompose.Result{
 			Tops: []string{"chip"},
