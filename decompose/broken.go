@@ -30,8 +30,10 @@ type brokenGroup struct {
 
 	problem  *exact.Problem // to be solved next
 	weighed  *exact.Problem // with the aims that count
-	rep      []int32        // by atom, where ties merge atoms: node of the problem; else nil
+	rep      []int32        // by atom and by node that no atom has, where ties merge atoms: node of the problem; else nil
 	flip     []uint8        // by atom, with rep: on the other mask than that
+	crowds   []crowd        // of the problem
+	surplus  int64          // what their nodes cost in the problem beyond what the pairs cost
 	units    units
 	same     int            // index of the group whose problem is the same, possibly its own
 	solution exact.Solution // of weighed
@@ -39,7 +41,11 @@ type brokenGroup struct {
 	homing   bool           // solved again, nearest to the usual masks
 	homeUnit int64          // by which the aims that count are weighed then
 	near     exact.Solution
-	least    *[]int // least set of cuts that resolves the group, once it is known
+	least    *[]int // least set of cuts that resolves the group, once it was looked for
+
+	leastKnown bool // it is the least set
+
+	leastStitches int64 // no assignment with as few pairs has fewer stitches
 }
 
 // units are the weights of one group. Each is even, so that halves are whole.
@@ -135,12 +141,13 @@ func (s *solver) solve(ctx context.Context, jobs int) error {
 		return err
 	}
 	s.findSame()
-	err := s.each(ctx, jobs, func(b *brokenGroup) {
-		if &s.groups[b.same] == b {
-			b.solution = exact.Solve(b.problem, exact.DefaultBudget())
-			if b.crowded() && b.solution.LowerBound >= b.units.waived {
-				b.solution = s.solveCrowded(b, wishes)
-			}
+	err := s.solveEach(ctx, jobs)
+	if err != nil {
+		return err
+	}
+	err = s.each(ctx, jobs, func(b *brokenGroup) {
+		if &s.groups[b.same] == b && !b.solution.Proved {
+			s.boundApart(b)
 		}
 	})
 	if err != nil {
@@ -151,13 +158,85 @@ func (s *solver) solve(ctx context.Context, jobs int) error {
 		b.solution = s.groups[b.same].solution
 		b.weighed = b.problem
 		s.take(b, b.solution.Masks)
+		b.leastStitches = s.groups[b.same].leastStitches
+		if b.cutting && b.solution.Proved {
+			b.leastStitches = int64(len(b.pieces.made(b.masks)))
+		}
 		s.a.free[b.group] = b.turnable()
 	}
 	return nil
 }
 
-// crowded tells whether what is solved has crowded pairs.
-func (b *brokenGroup) crowded() bool { return b.cutting && b.pieces.crowded }
+// The counted work of a layer: what may be spent on the groups of one layer at first, what any group may take of it, and what it may
+// take in any case. Neither depends on the time that anything takes.
+const (
+	layerWork = int64(1) << 33
+	mostWork  = int64(1) << 30
+	leastWork = int64(1) << 22
+)
+
+// solveEach solves one group of each kind: first each with an equal share of the work, and then those that are not proved with what is left.
+func (s *solver) solveEach(ctx context.Context, jobs int) error {
+	open := 0
+	for i := range s.groups {
+		open += boolInt(s.groups[i].same == i)
+	}
+	given, left := int64(0), layerWork
+	for open > 0 {
+		share := max(leastWork, min(mostWork, left/int64(open)))
+		if share < 2*given {
+			break // little more than before
+		}
+		given = share
+		err := s.each(ctx, jobs, func(b *brokenGroup) {
+			if &s.groups[b.same] == b && !b.solution.Proved {
+				b.solution = b.solved(exact.Budget{Work: share, Memory: exact.DefaultBudget().Memory})
+			}
+		})
+		if err != nil {
+			return err
+		}
+		open, left = 0, layerWork
+		for i := range s.groups {
+			if b := &s.groups[i]; b.same == i {
+				left -= b.solution.Work
+				open += boolInt(!b.solution.Proved)
+			}
+		}
+	}
+	return nil
+}
+
+// boundApart proves more of a group whose aims are too much to be proved together. What the pairs cost alone is easier: with nothing else
+// to pay for, the group falls into smaller pieces, and the bound may be rounded up to whole pairs. Of the stitches, a bound is proved
+// with pairs that cost little more than stitches, so that the two are of one size: every assignment with no more pairs than there are
+// needs at least what is left of that bound when those pairs are paid.
+func (s *solver) boundApart(b *brokenGroup) {
+	trial := *b
+	trial.units = units{pair: 2}
+	s.pose(&trial, nil)
+	sol := trial.solved(exact.Budget{Work: mostWork, Memory: exact.DefaultBudget().Memory})
+	b.solution.LowerBound = max(b.solution.LowerBound, (sol.LowerBound+1)/2*b.units.pair)
+	b.solution.Proved = b.solution.Cost == b.solution.LowerBound
+	if !b.cutting {
+		return
+	}
+	masks := b.spread(b.solution.Masks)
+	pairs := int64(0)
+	for i := range b.edges {
+		pairs += int64(boolInt(b.violated(i, masks)))
+	}
+	const ratio = 2
+	trial.units = units{stitch: 2, waived: 2 * ratio, pair: 2 * ratio}
+	s.pose(&trial, nil)
+	sol = trial.solved(exact.Budget{Work: mostWork / 4, Memory: exact.DefaultBudget().Memory})
+	b.leastStitches = max(0, (sol.LowerBound+1)/2-ratio*pairs)
+}
+
+// again is the budget for what is solved once more with other weights.
+func (b *brokenGroup) again() exact.Budget {
+	return exact.Budget{Work: max(leastWork, 4*b.solution.Work), Memory: exact.DefaultBudget().Memory}
+}
 
 // take gives the nodes of a group the masks of a solution.
 func (s *solver) take(b *brokenGroup, solved []uint8) {
@@ -194,7 +273,7 @@ func (b *brokenGroup) turnable() bool {
 	for k, m := range b.solution.Masks {
 		turned[k] = m ^ 1
 	}
-	return p.CostOf(turned) == b.solution.Cost
+	return p.CostOf(turned) == p.CostOf(b.solution.Masks)
 }
 
 // atoms is the number of atoms of a group.
@@ -309,10 +388,16 @@ func (s *solver) weigh(b *brokenGroup, wishes map[uint32][2]int64) {
 	b.units.stitch = b.units.moved * (memories + 1)
 	b.units.waived = b.units.stitch * (cuts + 1)
 	b.units.pair = b.units.waived * (accepted + 1)
+	s.pose(b, wishes)
+}
+
+// pose makes the problem of a group with the units that it has.
+func (s *solver) pose(b *brokenGroup, wishes map[uint32][2]int64) {
 	p := &exact.Problem{Nodes: b.atoms()}
 	b.problem = p
+	b.crowds, b.surplus = nil, 0
 	if b.cutting {
-		b.pieces.edges(p, b, b.units)
+		b.pieceEdges(p)
 	} else {
 		p.Edges = slices.Clone(b.edges)
 		for i := range p.Edges {
@@ -321,6 +406,9 @@ func (s *solver) weigh(b *brokenGroup, wishes map[uint32][2]int64) {
 	}
 	if b.fixed != nil {
 		p.Fixed = make([]int8, p.Nodes)
+		for i := b.atoms(); i < p.Nodes; i++ {
+			p.Fixed[i] = -1
+		}
 		for k, m := range b.fixed {
 			for n := range b.atomsOf(k) {
 				p.Fixed[b.atom(k)+n] = m
@@ -361,12 +449,13 @@ func (s *solver) contract(b *brokenGroup) {
 	for k, u := range b.nodes {
 		local[u] = uint32(b.atom(k))
 	}
-	p := newParity(make([]uint32, b.atoms()))
+	old := b.problem
+	p := newParity(make([]uint32, old.Nodes))
 	for _, t := range b.ties {
 		p.relate(local[t.A], local[t.B], uint32(boolInt(t.Opposite))) // contradictions were refused before
 	}
-	b.rep, b.flip = make([]int32, b.atoms()), make([]uint8, b.atoms())
-	number := make([]int32, b.atoms())
+	b.rep, b.flip = make([]int32, old.Nodes), make([]uint8, old.Nodes)
+	number := make([]int32, old.Nodes)
 	reps := int32(0)
 	for k := range b.rep {
 		root, other := p.find(uint32(k))
@@ -376,7 +465,6 @@ func (s *solver) contract(b *brokenGroup) {
 		}
 		b.rep[k], b.flip[k] = number[root], uint8(other)
 	}
-	old := b.problem
 	made := &exact.Problem{Nodes: int(reps), Edges: make([]exact.Edge, len(old.Edges))}
 	for i, e := range old.Edges {
 		e.Same = e.Same == (b.flip[e.U] == b.flip[e.V])
@@ -416,7 +504,7 @@ func (s *solver) findSame() {
 		b.same = i
 		h := hashProblem(seed, b.problem)
 		for _, k := range byHash[h] {
-			if equalProblems(b.problem, s.groups[k].problem) {
+			if b.surplus == s.groups[k].surplus && equalProblems(b.problem, s.groups[k].problem) {
 				b.same = k
 				break
 			}

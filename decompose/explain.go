@@ -192,14 +192,13 @@ func (e *explainer) group(b *brokenGroup, res *LayerResult) {
 	if stuck == 0 {
 		res.JointClashes++
 	}
-	proved := b.solution.Proved
+	res.AimsProved = res.AimsProved && b.solution.Proved
+	res.StitchesBound += b.leastStitches
 	left := int64(0)
 	for i := first; i < len(res.Unresolved); i++ {
 		left += int64(len(res.Unresolved[i].Pairs))
 	}
-	if left != bound {
-		proved = false
-	}
+	proved := left == bound
 	for i := first; i < len(res.Unresolved); i++ {
 		res.Unresolved[i].Proved = proved
 		if len(order) == 1 {
@@ -289,7 +288,10 @@ func (e *explainer) entry(b *brokenGroup, p *componentPart, component uint32) Un
 	var ring []int32
 	if p.odd {
 		u.Cause = OddCycle
-		ring = p.smallestCycle()
+		var sure bool
+		if ring, sure = p.smallestCycle(); !sure {
+			u.NotComputed = append(u.NotComputed, "cycle")
+		}
 	} else {
 		ring = p.clash(b)
 	}
@@ -297,10 +299,11 @@ func (e *explainer) entry(b *brokenGroup, p *componentPart, component uint32) Un
 		n := b.nodes[p.nodes[i]]
 		u.Cycle = append(u.Cycle, CycleShape{l.half(e.boxes[n]), Mask(p.masks[i])})
 	}
-	for _, x := range p.left {
-		u.Pairs = append(u.Pairs, e.pair(b, p, x, u.Top))
+	e.byPlace(b, p)
+	u.Pairs = make([]Pair, len(p.left))
+	for i, x := range p.left {
+		u.Pairs[i] = e.pair(b, p, x, u.Top)
 	}
-	slices.SortFunc(u.Pairs, func(a, b Pair) int { return cmp.Or(compareBoxes(a.A, b.A), compareBoxes(a.B, b.B)) })
 	e.candidates(b, p, ring, &u)
 	fr := b.canon.frame
 	u.Cell = l.flat.h.name(fr.structure)
@@ -330,6 +333,31 @@ func (e *explainer) entry(b *brokenGroup, p *componentPart, component uint32) Un
 	return u
 }
 
+// byPlace sorts the pairs of a component that stay: by their boxes, the lesser of the two first. There may be very many.
+func (e *explainer) byPlace(b *brokenGroup, p *componentPart) {
+	rank := make([]int32, len(p.nodes)) // of a node by its box; equal boxes have equal ranks
+	order := make([]int32, len(p.nodes))
+	for i := range order {
+		order[i] = int32(i)
+	}
+	box := func(i int32) Box { return e.boxes[b.nodes[p.nodes[i]]] }
+	slices.SortFunc(order, func(i, k int32) int { return compareBoxes(box(i), box(k)) })
+	for at, i := range order {
+		rank[i] = int32(at)
+		if at > 0 && box(order[at-1]) == box(i) {
+			rank[i] = rank[order[at-1]]
+		}
+	}
+	key := func(x int) uint64 {
+		u, v := rank[p.edges[x].U], rank[p.edges[x].V]
+		return uint64(min(u, v))<<32 | uint64(max(u, v))
+	}
+	slices.SortFunc(p.left, func(x, y int) int { return cmp.Compare(key(x), key(y)) })
+}
+
+// mostTrials bounds the near pairs and pieces that are looked at to try the cuts of one component one by one.
+const mostTrials = int64(1) << 28
+
 // candidates words where the shapes of a component can be cut, and which cuts help.
 func (e *explainer) candidates(b *brokenGroup, p *componentPart, ring []int32, u *Unresolved) {
 	if b.pieces == nil {
@@ -347,22 +375,33 @@ func (e *explainer) candidates(b *brokenGroup, p *componentPart, ring []int32, u
 	forward := b.canon.back.inverse()
 	scale := e.l.flat.forms.scale
 	place := map[int]int{}
+	work := int64(0) // spent on trying cuts one by one
 	for i := range b.pieces.cuts {
 		c := &b.pieces.cuts[i]
 		if !here[c.node] {
 			continue
 		}
 		place[i] = len(u.Candidates)
+		tried := onRing[c.node] && work < mostTrials
+		if tried {
+			work += int64(len(b.edges) + b.problem.Nodes)
+		}
 		u.Candidates = append(u.Candidates, StitchCandidate{Box: e.l.half(forward.applyBox(Box(c.box))), Overlap: c.length() / scale,
-			Resolves: onRing[c.node] && e.resolves(b, i), Made: b.cutting && b.masks[c.low] != b.masks[c.high]})
+			Resolves: tried && e.resolves(b, i), Made: b.cutting && b.masks[c.low] != b.masks[c.high]})
+	}
+	if work >= mostTrials {
+		u.NotComputed = append(u.NotComputed, "resolves")
 	}
 	if len(u.Candidates) == 0 {
 		u.NoCandidate = b.pieces.forbids(p.nodes, e.rules, e.l.rules)
 		return
 	}
 	if b.least == nil {
-		set := e.leastCuts(b)
-		b.least = &set
+		set, known := e.leastCuts(b)
+		b.least, b.leastKnown = &set, known
+	}
+	if !b.leastKnown {
+		u.NotComputed = append(u.NotComputed, "least_stitches")
 	}
 	for _, i := range *b.least {
 		if k, ok := place[i]; ok {
@@ -386,17 +425,13 @@ func (b *brokenGroup) holds(k int) int8 {
 	return -1
 }
 
-// smallestCycle gives the smallest of the smallest odd cycles through the pairs that stay; where none stays, of all.
-func (p *componentPart) smallestCycle() []int32 {
-	finder := newRingFinder(len(p.nodes), p.edges)
-	var left []exact.Edge
-	for _, x := range append(slices.Clone(p.left), p.accepted...) {
-		left = append(left, p.edges[x])
+// smallestCycle gives the smallest of the smallest odd cycles through the pairs that stay; where none stays, of all. It tells whether it is sure.
+func (p *componentPart) smallestCycle() (cycle []int32, sure bool) {
+	finder := exact.NewCycleFinder(len(p.nodes), p.edges)
+	if cycle, sure = finder.SmallestThrough(slices.Concat(p.left, p.accepted)); cycle != nil {
+		return cycle, sure
 	}
-	if ring := finder.smallest(left); ring != nil {
-		return ring
-	}
-	return finder.smallest(p.edges)
+	return finder.Smallest()
 }
 
 // clash gives the shortest path of near pairs between two anchored nodes whose masks it contradicts: breadth first from all anchored
@@ -412,7 +447,7 @@ func (p *componentPart) clash(b *brokenGroup) []int32 {
 		next[ed.U] = append(next[ed.U], ed.V)
 		next[ed.V] = append(next[ed.V], ed.U)
 	}
-	const source = -1
+	const source, unseen = -1, -2
 	back := make([]int32, 2*n)
 	for i := range back {
 		back[i] = unseen

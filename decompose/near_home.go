@@ -94,7 +94,7 @@ func (s *solver) solveNear(ctx context.Context, d *dealer, usual []int8, bias fl
 	s.findSame()
 	err := s.each(ctx, jobs, func(b *brokenGroup) {
 		if &s.groups[b.same] == b && b.homing {
-			b.near = exact.Solve(b.problem, exact.DefaultBudget())
+			b.near = exact.Solve(b.problem, b.again())
 		}
 	})
 	if err != nil {
@@ -106,8 +106,8 @@ func (s *solver) solveNear(ctx context.Context, d *dealer, usual []int8, bias fl
 			continue
 		}
 		// A solution that is worse in what counts (where the budget ran out) is not taken.
-		if near := s.groups[b.same].near; near.Cost/b.homeUnit <= b.solution.Cost {
-			s.take(b, near.Masks)
+		if near := s.groups[b.same].near.Masks; b.settleCrowds(b.weighed, near) <= b.solution.Cost {
+			s.take(b, near)
 		}
 	}
 	return nil
@@ -184,8 +184,8 @@ func (b *brokenGroup) comeHome(off [][2]int64) {
 	for _, c := range b.weighed.Cost {
 		worst += c[0] + c[1]
 	}
-	// A crowded pair that is broken has no weight that counts it once, so such a group stays as it was solved.
-	b.homing = worst < 1<<61/sum && !(b.crowded() && b.solution.Cost >= b.units.waived)
+	// What is not proved is not solved with more aims either.
+	b.homing = worst < 1<<61/sum && b.solution.Proved
 	if !b.homing {
 		return
 	}

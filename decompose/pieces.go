@@ -25,8 +25,6 @@ type pieces struct {
 	reasons []stitch.Reason // by node
 	held    int             // nodes that are under an order, given stitches, slanted or on half units
 	shapes  *atomShapes     // outlines of atoms; nil: one spacing is all
-	crowded bool            // some near pair has more near atoms than the weights can count once
-	state   []uint8         // by near pair: how a crowded one counts; nil: all are open
 }
 
 // pieceCut is a candidate.
@@ -149,7 +147,6 @@ func (s *solver) cutAll(b *brokenGroup, parts map[uint32]*geom.Parts, keepOut ma
 			continue
 		}
 		p.pairs[i] = s.nearAtoms(b, int(e.U), int(e.V), rects, parts, rules.Spacing)
-		p.crowded = p.crowded || p.isCrowded(i)
 	}
 }
 
@@ -218,17 +215,21 @@ func rectsNear(a, b []geom.Rect, spacing int64) bool {
 	return false
 }
 
-// edges fills a problem with the near atoms and the cuts of a group.
+// pieceEdges fills a problem with the near atoms and the cuts of a group.
 //
 // A near pair costs once, however many of its atoms are on one mask. With two near atoms x, y of one node and v of the other, that is
-// half of [x=v] + [y=v] + [x!=y]; with more (a crowded pair) each has a share, which may be too little: see crowded.go.
-func (p *pieces) edges(problem *exact.Problem, b *brokenGroup, u units) {
+// half of [x=v] + [y=v] + [x!=y]; for more see crowded.go.
+func (b *brokenGroup) pieceEdges(problem *exact.Problem) {
+	p := b.pieces
 	for i, e := range b.edges {
-		weight := b.weight(i, u)
+		weight := b.weight(i, b.units)
 		near := p.pairs[i]
 		switch {
 		case near == nil:
 			problem.Edges = append(problem.Edges, exact.Edge{U: p.first[e.U], V: p.first[e.V], Weight: weight})
+		case len(near) == 0:
+		case len(near) == 1:
+			problem.Edges = append(problem.Edges, exact.Edge{U: near[0][0], V: near[0][1], Weight: weight})
 		case len(near) == 2 && (near[0][0] == near[1][0] || near[0][1] == near[1][1]):
 			x, y := near[0][0], near[1][0]
 			if x == y {
@@ -237,34 +238,17 @@ func (p *pieces) edges(problem *exact.Problem, b *brokenGroup, u units) {
 			problem.Edges = append(problem.Edges, exact.Edge{U: near[0][0], V: near[0][1], Weight: weight / 2},
 				exact.Edge{U: near[1][0], V: near[1][1], Weight: weight / 2}, exact.Edge{U: x, V: y, Weight: weight / 2, Same: true})
 		default:
-			each := weight / int64(len(near))
-			if p.state != nil && p.state[i] == given {
-				continue
-			}
-			if p.state != nil && p.state[i] == kept {
-				each = keptWeight(u)
-			}
-			for _, q := range near {
-				problem.Edges = append(problem.Edges, exact.Edge{U: q[0], V: q[1], Weight: each})
-			}
+			b.crowds = append(b.crowds, newCrowd(i, near, weight))
 		}
 	}
 	for _, c := range p.cuts {
-		problem.Edges = append(problem.Edges, exact.Edge{U: c.low, V: c.high, Weight: u.stitch, Same: true})
+		problem.Edges = append(problem.Edges, exact.Edge{U: c.low, V: c.high, Weight: b.units.stitch, Same: true})
+	}
+	for i := range b.crowds {
+		c := &b.crowds[i]
+		b.surplus += c.edges(problem, p.pairs[c.edge])
 	}
 }
-
-// isCrowded tells whether a near pair has more near atoms than the weights can count once.
-func (p *pieces) isCrowded(edge int) bool {
-	q := p.pairs[edge]
-	return len(q) > 2 || len(q) == 2 && q[0][0] != q[1][0] && q[0][1] != q[1][1]
-}
-
-// keptWeight is what each near atom of a crowded pair costs that must be kept: more than leaving all pairs of a group that is small
-// enough to be searched.
-func keptWeight(u units) int64 { return u.pair * keptPairs }
-
-const keptPairs = 1 << 12
 
 // violated tells whether a near pair is on one mask, by the masks of atoms.
 func (b *brokenGroup) violated(edge int, masks []uint8) bool {
@@ -286,27 +270,26 @@ func (p *pieces) made(masks []uint8) []int {
 	return out
 }
 
-// leastCuts gives the least set of cuts that leaves no pair of the group unresolved, as indices of candidates; nil where none does.
-func (s *solver) leastCuts(b *brokenGroup) []int {
+// leastCuts gives the least set of cuts that leaves no pair of the group unresolved, as indices of candidates; nil where none does. It
+// is not known where that takes too much work.
+func (s *solver) leastCuts(b *brokenGroup) (set []int, known bool) {
 	if b.pieces == nil || len(b.pieces.cuts) == 0 {
-		return nil
+		return nil, true
 	}
 	if !s.consistent(b, func(int) bool { return true }) {
-		return nil // not even all cuts together are enough
+		return nil, true // not even all cuts together are enough
 	}
 	trial := *b
 	if !b.cutting {
 		trial.cutting = true
 		s.weigh(&trial, nil)
-		trial.solution = exact.Solve(trial.problem, exact.DefaultBudget())
+		trial.solution = trial.solved(b.again())
 		trial.masks = trial.spread(trial.solution.Masks)
 	}
-	for i := range trial.edges {
-		if !trial.waived[i] && trial.violated(i, trial.masks) {
-			return nil
-		}
+	if !trial.solution.Proved {
+		return nil, false
 	}
-	return trial.pieces.made(trial.masks)
+	return trial.pieces.made(trial.masks), true
 }
 
 // resolves tells whether a cut alone leaves no pair of the group unresolved that is not waived.

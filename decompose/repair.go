@@ -15,10 +15,10 @@ import (
 // pair weighed by how much it lacks of its spacing: the pairs that are broken then, widened by what they lack, leave a graph that two
 // masks can do, and no other choice lacks less in total. Equal groups share one solution.
 
-// Repairs are worked out for groups of no more than mostRepaired nodes, and for no more than mostKinds kinds of components: nobody
+// Repairs are worked out for groups of no more than mostRepaired near pairs, and for no more than mostKinds kinds of components: nobody
 // reads more.
 const (
-	mostRepaired = 4096
+	mostRepaired = 1 << 14
 	mostKinds    = 1000
 )
 
@@ -29,12 +29,16 @@ func (e *explainer) repairs(ctx context.Context, res *LayerResult, jobs int) err
 	byGroup := map[int32]*Unresolved{}
 	for i := range res.Unresolved {
 		u := &res.Unresolved[i]
-		if seen[u.Group] || len(u.Pairs) == 0 || len(todo) == mostKinds {
+		if seen[u.Group] || len(u.Pairs) == 0 {
 			continue
 		}
 		seen[u.Group] = true
 		k, ok := e.of(u.node)
-		if !ok || len(e.solver.groups[k].nodes) > mostRepaired || byGroup[int32(k)] != nil {
+		if !ok || byGroup[int32(k)] != nil {
+			continue
+		}
+		if b := &e.solver.groups[k]; len(todo) == mostKinds || len(b.edges) > mostRepaired || !b.solution.Proved {
+			u.NotComputed = append(u.NotComputed, "repair")
 			continue
 		}
 		byGroup[int32(k)] = u
@@ -50,12 +54,14 @@ func (e *explainer) repairs(ctx context.Context, res *LayerResult, jobs int) err
 	return e.solver.each(ctx, jobs, func(b *brokenGroup) {
 		k, _ := e.of(b.nodes[0])
 		if u := byGroup[int32(k)]; u != nil {
-			u.Repair = e.repair(b, u.Top)
+			if u.Repair = e.repair(b, u.Top); u.Repair == nil {
+				u.NotComputed = append(u.NotComputed, "repair")
+			}
 		}
 	})
 }
 
-// repair gives the pairs to be widened.
+// repair gives the pairs to be widened; nil where that takes too much work.
 func (e *explainer) repair(b *brokenGroup, top string) []Pair {
 	trial := *b
 	trial.cutting = false
@@ -71,8 +77,12 @@ func (e *explainer) repair(b *brokenGroup, top string) []Pair {
 			p.Edges[i].Weight = (list[i].Widen*int64(len(b.edges)+1) + 1) * int64(len(b.edges)+1)
 		}
 	}
-	masks := trial.spread(exact.Solve(p, exact.DefaultBudget()).Masks)
-	var out []Pair
+	sol := exact.Solve(p, b.again())
+	if !sol.Proved {
+		return nil
+	}
+	masks := trial.spread(sol.Masks)
+	out := []Pair{}
 	for i := range b.edges {
 		if !b.waived[i] && trial.violated(i, masks) {
 			out = append(out, list[i])

@@ -42,9 +42,11 @@ type LayerResult struct {
 	WaivedPairs          int64
 	AnyMaskPairs         int64
 	LowerBound           int64
-	ProvedOptimal        bool
+	ProvedOptimal        bool // UnresolvedPairs == LowerBound
 	AreaA, AreaB         float64
 	Stitches             int64
+	StitchesBound        int64 // no assignment with as few unresolved pairs has fewer stitches
+	AimsProved           bool  // stitches, moved shapes and wishes are proved best as well
 	AnchoredShapes       int64
 	MovedShapes          int64
 	BaselineShapes       int64
@@ -85,8 +87,9 @@ type Unresolved struct {
 	Repair        []Pair       // the gaps that lack least in total: widened by Widen, they leave what two masks can do; one component of a group has it
 	Pairs         []Pair       // near pairs left on one mask
 	Candidates    []StitchCandidate
-	LeastStitches []int  // indices into Candidates; nil where no set resolves
-	NoCandidate   string // which rule forbids a stitch, where there is no candidate
+	LeastStitches []int    // indices into Candidates; nil where no set resolves
+	NotComputed   []string // what would have taken more counted work than there is: "cycle" (there is one, perhaps not the smallest), "repair", "resolves", "least_stitches"
+	NoCandidate   string   // which rule forbids a stitch, where there is no candidate
 	LowerBound    int64
 	Proved        bool
 	Group         int64  // components that are equal up to translation and the eight orientations share a number

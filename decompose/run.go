@@ -196,7 +196,7 @@ func (r *Run) layer(ctx context.Context, i int, orders Orderer) error {
 // summarise counts what a layer came to, but for what is unresolved.
 func (r *Run) summarise(l *layout, a *assignment, o *Orders) LayerResult {
 	res := LayerResult{Name: l.rules.Name, Spacing: l.rules.Spacing, RoundedFigures: l.flat.rounded, Shapes: int64(l.shapes),
-		NearPairs: l.near.pairs, Components: int64(a.components), AnyMaskPairs: l.near.tooNear, ProvedOptimal: true}
+		NearPairs: l.near.pairs, Components: int64(a.components), AnyMaskPairs: l.near.tooNear, ProvedOptimal: true, AimsProved: true}
 	var by [4]int64
 	for _, s := range r.h.bottom {
 		l.flat.ownFigures(s, func(_, figure uint32) {
@@ -236,6 +236,7 @@ func (r *Run) summarise(l *layout, a *assignment, o *Orders) LayerResult {
 	res.Stitches = l.cuts.laps()
 	if l.given != nil {
 		res.Stitches += l.given.laps
+		res.StitchesBound = l.given.laps
 	}
 	return res
 }

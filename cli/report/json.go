@@ -83,6 +83,7 @@ func (j *jsonWriter) layer(l *decompose.LayerResult) {
 		j.key(c.key).integer(c.n)
 	}
 	j.key("proved_optimal").boolean(l.ProvedOptimal)
+	j.key("aims_proved").boolean(l.AimsProved)
 	j.key("mask_area_dbu2").inline(func() {
 		j.key("a").number(l.AreaA)
 		j.key("b").number(l.AreaB)
@@ -92,6 +93,7 @@ func (j *jsonWriter) layer(l *decompose.LayerResult) {
 		n   int64
 	}{
 		{"stitches", l.Stitches},
+		{"stitches_lower_bound", l.StitchesBound},
 		{"anchored_shapes", l.AnchoredShapes},
 		{"moved_shapes", l.MovedShapes},
 		{"baseline_shapes", l.BaselineShapes},
@@ -195,6 +197,11 @@ func (j *jsonWriter) unresolved(u *decompose.Unresolved) {
 		}
 	})
 	j.key("no_candidate").str(u.NoCandidate)
+	j.key("not_computed").row(func() {
+		for _, key := range u.NotComputed {
+			j.str(key)
+		}
+	})
 	j.key("lower_bound").integer(u.LowerBound)
 	j.key("proved_optimal").boolean(u.Proved)
 	j.key("group").integer(u.Group)

@@ -335,6 +335,8 @@ func (m *pageMaker) mends(c *card, u *decompose.Unresolved, rules *decompose.Lay
 		}
 		c.Mends = append([]mend{w}, c.Mends...)
 		c.Short = count(len(u.LeastStitches), "cut")
+	case isUnknown(u, "least_stitches"):
+		c.Mends = append(c.Mends, mend{Head: "Cut", Lines: []string{count(len(u.Candidates), "place") + " for a cut; which set of them is the least is too much to find out."}})
 	case len(u.Candidates) > 0:
 		c.Mends = append(c.Mends, mend{Head: "Cut", Lines: []string{count(len(u.Candidates), "place") + " for a cut, but no set of them is enough."}})
 	case u.NoCandidate != "":

@@ -31,12 +31,12 @@ func sample() *Report {
 			Layers: []decompose.LayerResult{{
 				Name: "metal1", Spacing: 36, Figures: 1234567, AlreadyMaskedFigures: 12, RoundedFigures: 3, Shapes: 1000, NearPairs: 999,
 				Components: 500, UnresolvedComponents: 4, JointClashes: 1, UnresolvedPairs: 5, WaivedPairs: 1, AnyMaskPairs: 2, LowerBound: 4,
-				AreaA: 600, AreaB: 400.5, Stitches: 7, AnchoredShapes: 8, MovedShapes: 9, BaselineShapes: 10, Wishes: 6, WishesKept: 5,
+				AreaA: 600, AreaB: 400.5, Stitches: 7, StitchesBound: 6, AnchoredShapes: 8, MovedShapes: 9, BaselineShapes: 10, Wishes: 6, WishesKept: 5,
 				Unresolved: []decompose.Unresolved{{
 					Top: "chip", Component: 17, Shapes: 5, Cause: decompose.OddCycle,
 					Cycle: []decompose.CycleShape{{Box: box, Mask: decompose.A}, {Box: box, Mask: decompose.B}, {Box: box, Mask: decompose.B}},
 					Pairs: []decompose.Pair{pair}, Candidates: []decompose.StitchCandidate{{Box: box, Overlap: 10, Resolves: true}},
-					LeastStitches: []int{0}, LowerBound: 1, Proved: true, Group: 1, Cell: "knot", CellTransform: "turned by 90 degrees", CellPlace: decompose.Spot{X: 3, Y: -4},
+					LeastStitches: []int{0}, NotComputed: []string{"repair"}, LowerBound: 1, Proved: true, Group: 1, Cell: "knot", CellTransform: "turned by 90 degrees", CellPlace: decompose.Spot{X: 3, Y: -4},
 				}, {
 					Top: "chip", Component: 18, Cause: decompose.OrderClash, NoCandidate: "a shape under an order is never cut", Group: 2,
 					Pairs: []decompose.Pair{pair, pair},
@@ -49,7 +49,7 @@ func sample() *Report {
 				AnyMask: []decompose.Pair{pair},
 				Moved:   []decompose.MovedShape{{Top: "chip", Box: box, Was: decompose.A, Now: decompose.B, Why: "a new neighbour"}},
 			}, {
-				Name: "metal2", Spacing: 40, ProvedOptimal: true,
+				Name: "metal2", Spacing: 40, ProvedOptimal: true, AimsProved: true,
 			}},
 		},
 		Warnings: []string{"a BOX on 19/0"},
@@ -128,7 +128,7 @@ func TestJSONValues(t *testing.T) {
 	for key, want := range map[string]any{
 		"name": "metal1", "same_mask_spacing_dbu": 36.0, "figures": 1234567.0, "already_masked_figures": 12.0, "shapes": 1000.0, "near_pairs": 999.0,
 		"components": 500.0, "unresolved_components": 4.0, "joint_clashes": 1.0, "unresolved_pairs": 5.0, "waived_pairs": 1.0, "any_mask_pairs": 2.0,
-		"lower_bound": 4.0, "proved_optimal": false, "mask_area_dbu2": map[string]any{"a": 600.0, "b": 400.5}, "stitches": 7.0,
+		"lower_bound": 4.0, "proved_optimal": false, "mask_area_dbu2": map[string]any{"a": 600.0, "b": 400.5}, "stitches": 7.0, "stitches_lower_bound": 6.0, "aims_proved": false,
 		"anchored_shapes": 8.0, "moved_shapes": 9.0, "baseline_shapes": 10.0, "wishes": 6.0, "wishes_kept": 5.0, "rounded_figures": 3.0,
 	} {
 		if d := cmp.Diff(want, layer[key]); d != "" {
@@ -142,7 +142,7 @@ func TestJSONValues(t *testing.T) {
 		"top": "chip", "component": 17.0, "shapes": 5.0, "cause": "odd_cycle", "repair": []any{},
 		"cycle": []any{map[string]any{"box": box, "mask": "A"}, map[string]any{"box": box, "mask": "B"}, map[string]any{"box": box, "mask": "B"}},
 		"pairs": []any{pair}, "stitch_candidates": []any{map[string]any{"box": box, "overlap_dbu": 10.0, "resolves": true, "made": false}},
-		"least_stitches": []any{0.0}, "no_candidate": "", "lower_bound": 1.0, "proved_optimal": true, "group": 1.0,
+		"least_stitches": []any{0.0}, "no_candidate": "", "not_computed": []any{"repair"}, "lower_bound": 1.0, "proved_optimal": true, "group": 1.0,
 		"cell": "knot", "cell_transform": "turned by 90 degrees", "cell_place": []any{1.5, -2.0},
 	}
 	if d := cmp.Diff(want, layer["unresolved"].([]any)[0]); d != "" {
@@ -249,6 +249,7 @@ func TestSummaryTable(t *testing.T) {
 		"least possible":           {"not", "proved,", "at", "least", "4", "0"},
 		"waived":                   {"1", "0"},
 		"stitches":                 {"7", "0"},
+		"fewest stitches":          {"not", "proved,", "at", "least", "6", "0"},
 		"moved to the other mask":  {"9", "0"},
 		"wishes kept":              {"5", "of", "6", "0"},
 		"area on A":                {"0.0006", "um2", "0", "um2"}, // 600 nm2

@@ -4,6 +4,7 @@ import (
 	"bufio"
 	"fmt"
 	"io"
+	"slices"
 	"strconv"
 	"strings"
 
@@ -91,6 +92,7 @@ func (s *summary) table() {
 		{"  least possible", false, leastPossible},
 		tally("  waived", false, func(l *decompose.LayerResult) int64 { return l.WaivedPairs }),
 		tally("stitches", false, func(l *decompose.LayerResult) int64 { return l.Stitches }),
+		{"  fewest stitches", false, leastStitches},
 		tally("too near on any masks", false, func(l *decompose.LayerResult) int64 { return l.AnyMaskPairs }),
 		tally("notches and gaps in shapes", false, func(l *decompose.LayerResult) int64 { return int64(len(l.SameShape)) }),
 		{"wishes kept", false, func(l *decompose.LayerResult) string {
@@ -132,6 +134,20 @@ func leastPossible(l *decompose.LayerResult) string {
 	}
 	return "not proved, at least " + Count(l.LowerBound)
 }
+
+// leastStitches words what is proved about the number of stitches.
+func leastStitches(l *decompose.LayerResult) string {
+	switch {
+	case l.Stitches == 0:
+		return "0"
+	case l.Stitches == l.StitchesBound:
+		return "proved"
+	}
+	return "not proved, at least " + Count(l.StitchesBound)
+}
+
+// isUnknown tells whether a key of an entry would have taken too much work.
+func isUnknown(u *decompose.Unresolved, key string) bool { return slices.Contains(u.NotComputed, key) }
 
 // layer shows the groups of unresolved components, those that leave most pairs first.
 func (s *summary) layer(l *decompose.LayerResult) {
@@ -209,6 +225,8 @@ func (s *summary) group(u *decompose.Unresolved, occurs int64) {
 			first = "the first "
 		}
 		s.line("      %s would do, %sover %s", count(len(u.LeastStitches), "stitch"), first, s.box(u.Candidates[u.LeastStitches[0]].Box))
+	case isUnknown(u, "least_stitches"):
+		s.line("      %s for a stitch; which set of them is the least is too much to find out", count(len(u.Candidates), "place"))
 	case len(u.Candidates) > 0:
 		s.line("      %s for a stitch, but no set of them is enough", count(len(u.Candidates), "place"))
 	case u.NoCandidate != "":

@@ -22,12 +22,26 @@ func (s *solver) beyond(x []uint8, work int64) int64 {
 	edge, edges := numberEdges(g)
 	const least = 16 // steps per edge and node that are taken in any case
 	enough := least * int64(edges+g.nodes())
-	p := packCycles(g, edge, edges, max(work/8, enough))
+	begun := s.work
 	unit := commonFactor(g)
-	bound := roundUp(g.floor()+p.sum, 1, unit)
+	bound := roundUp(g.floor(), 1, unit)
+	if degeneracy(g)+2 >= leastClique {
+		p := newPacker(g, edge, edges)
+		p.packCliques(max(work/16, enough))
+		p.packRest(max(work/8, enough))
+		bound = max(bound, roundUp(g.floor()+p.sum, 1, unit))
+		s.work += p.work
+	}
 	for _, y := range [][]uint8{heavyTree(g), broadTree(g)} {
 		im.start(y, im.search.work+max(work/64, enough))
 	}
+	if im.least == bound {
+		s.work += im.search.work
+		return bound
+	}
+	p := packCycles(g, edge, edges, max(work/8, enough))
+	s.work += p.work
+	bound = max(bound, roundUp(g.floor()+p.sum, 1, unit))
 	if im.least > bound && work >= enough {
 		if c := s.makeCover(g, edge, edges, work); c.work <= work/8 {
 			im.use(c)
@@ -36,14 +50,14 @@ func (s *solver) beyond(x []uint8, work int64) int64 {
 			s.work += q.work
 			s.addCycles(c, append(p.cycles, q.cycles...))
 			d := newDual(s, g, c)
-			bound = max(bound, d.run(im.least, unit, work/2))
+			bound = max(bound, d.run(im.least, unit, min(work/2, work-(s.work-begun)-im.search.work)))
 			for _, y := range d.assignments() {
 				im.start(y, im.search.work+work/32)
 			}
 			im.run(bound, im.search.work+work/16)
 		}
 	}
-	s.work += p.work + im.search.work
+	s.work += im.search.work
 	return bound
 }
 
@@ -65,23 +79,27 @@ func commonFactor(g *graph) int64 {
 	return max(1, unit)
 }
 
-// makeCover chooses the widest clusters of which all can be solved often enough within the given work.
+// makeCover chooses the widest clusters of which all can be solved often enough within the given work. It takes no more than a part of that; where even small clusters take more, there are none.
 func (s *solver) makeCover(g *graph, edge []int32, edges int, work int64) *cover {
 	const rounds = 200
 	round := work / rounds
+	steps := work / 8
 	// The widest table of a cluster may take a small part of the memory, and at most 2^20 entries.
 	widest := max(2, min(20, bits.Len64(uint64(max(0, s.budget.Memory)))-8))
 	limit := max(2, min(bits.Len64(uint64(round/int64(2*g.nodes())))-2, widest))
-	c := s.coverWith(g, edge, edges, limit)
+	c := s.coverWith(g, edge, edges, limit, &steps)
+	if c == nil {
+		return newCover(g, edge, edges)
+	}
 	for limit < widest && len(c.clusters) > 0 {
 		// One more neighbour doubles a table, so the step that would use up the round can be guessed.
 		step := max(1, min(widest-limit, bits.Len64(uint64(round/max(1, c.work)))-1))
-		wider := s.coverWith(g, edge, edges, limit+step)
-		for wider.work > round && step > 1 {
+		wider := s.coverWith(g, edge, edges, limit+step, &steps)
+		for wider != nil && wider.work > round && step > 1 {
 			step--
-			wider = s.coverWith(g, edge, edges, limit+step)
+			wider = s.coverWith(g, edge, edges, limit+step, &steps)
 		}
-		if wider.work > round || len(wider.clusters) == 0 {
+		if wider == nil || wider.work > round || len(wider.clusters) == 0 {
 			break
 		}
 		c = wider

@@ -45,7 +45,16 @@ type maker struct {
 	met   []bool
 	score []int32
 	want  int32 // times that an edge is to be held
-	full  bool  // out of room
+	spent int64 // steps taken
+	most  int64 // steps that may be taken
+	full  bool  // out of room, or of steps
+}
+
+// spend counts steps.
+func (m *maker) spend(steps int) {
+	if m.spent += int64(steps); m.spent > m.most {
+		m.full = true
+	}
 }
 
 // numberEdges gives each edge of g a number, in the order of the rows of the lesser ends.
@@ -81,36 +90,54 @@ func numberEdges(g *graph) (edge []int32, count int) {
 	return edge, int(at)
 }
 
-// coverWith covers g with clusters of at most the given width.
-func (s *solver) coverWith(g *graph, edge []int32, edges, limit int) *cover {
-	m := newMaker(s, g, limit)
-	m.c = &cover{g: g, edge: edge, edges: edges, held: make([]int32, edges)}
+// coverWith covers g with clusters of at most the given width. It answers nil where that takes more than the given steps, which it takes from them.
+func (s *solver) coverWith(g *graph, edge []int32, edges, limit int, steps *int64) *cover {
+	m := newMaker(s, g, limit, *steps)
+	m.c = newCover(g, edge, edges)
 	m.windows()
 	m.grow()
 	m.c.spanned = len(m.c.clusters)
+	s.work += m.spent
+	if *steps -= m.spent; *steps < 0 {
+		return nil
+	}
 	return m.c
+}
+
+// newCover is a cover without clusters.
+func newCover(g *graph, edge []int32, edges int) *cover {
+	return &cover{g: g, edge: edge, edges: edges, held: make([]int32, edges)}
 }
 
 // addCycles adds the cycles of a packing that no cluster spans; the cover must have no cycles yet.
 func (s *solver) addCycles(c *cover, cycles []oddCycle) {
-	n := c.g.nodes()
-	m := newMaker(s, c.g, 0)
+	n := int32(c.g.nodes())
+	m := newMaker(s, c.g, 0, unlimited)
 	m.c = c
-	in := make([][]int32, n+1) // per node: clusters that hold it
+	in := make([][]int32, n) // per node: clusters that hold it
 	for k := range c.clusters {
 		for _, v := range c.clusters[k].node {
 			in[v] = append(in[v], int32(k))
 		}
-		in[n] = append(in[n], int32(k))
 	}
-	times := make([]int32, len(c.clusters))
-	for _, cy := range cycles {
-		clear(times)
+	met := make([]meeting, len(c.clusters)) // number of the cycle, and how many of its nodes the cluster holds
+	for i, cy := range cycles {
 		spanned := false
+		size := int32(len(cy.node))
+		if slices.Contains(cy.node, n) {
+			size-- // every cluster holds the node that stands for mask B
+		}
 		for _, v := range cy.node {
+			if v == n {
+				continue
+			}
 			for _, k := range in[v] {
-				times[k]++
-				spanned = spanned || int(times[k]) == len(cy.node)
+				t := &met[k]
+				if t.time != int32(i+1) {
+					*t = meeting{int32(i + 1), 0}
+				}
+				t.half++
+				spanned = spanned || t.half == size
 			}
 		}
 		if !spanned {
@@ -159,9 +186,9 @@ func (m *maker) cycle(cy oddCycle) {
 }
 
 // newMaker begins a cover.
-func newMaker(s *solver, g *graph, limit int) *maker {
+func newMaker(s *solver, g *graph, limit int, steps int64) *maker {
 	n := g.nodes()
-	m := &maker{s: s, limit: limit, room: s.budget.Memory / 2, local: make([]int32, n), level: make([]int32, n), met: make([]bool, n), score: make([]int32, n)}
+	m := &maker{s: s, limit: limit, room: s.budget.Memory / 2, most: steps, local: make([]int32, n), level: make([]int32, n), met: make([]bool, n), score: make([]int32, n)}
 	for i := range m.local {
 		m.local[i] = -1
 	}
@@ -171,6 +198,8 @@ func newMaker(s *solver, g *graph, limit int) *maker {
 // try plans the subgraph that nodes span, and tells whether it is narrow enough.
 func (m *maker) try(nodes []int32) bool {
 	m.load(nodes)
+	const each = 8 // steps of the orders that are tried
+	m.spend(each * (len(nodes) + len(m.half)))
 	return m.s.narrow(&m.sub, nodes, m.limit, unlimited, 2)
 }
 
@@ -182,6 +211,7 @@ func (m *maker) load(nodes []int32) {
 		m.local[v] = int32(i)
 		halves += int(g.start[v+1] - g.start[v])
 	}
+	m.spend(halves)
 	m.sub.reset(len(nodes), halves)
 	m.half = resize(m.half, halves)[:0]
 	for _, v := range nodes {
@@ -216,6 +246,9 @@ func (m *maker) add(nodes []int32) {
 // keep puts a cluster in the cover if there is room.
 func (m *maker) keep(c cluster) {
 	size := c.bytes()
+	for _, v := range c.node {
+		size += 4 * int64(m.c.g.start[v+1]-m.c.g.start[v]) // the search notes which nodes are next to it
+	}
 	if m.c.memory+size > m.room {
 		m.full = true
 		return
@@ -238,7 +271,8 @@ func (c *cluster) work() int64 {
 // bytes is the memory that a cluster takes, with what the lower bound keeps for it.
 func (c *cluster) bytes() int64 {
 	p := &c.plan
-	return int64(len(p.span))*48 + int64(len(p.bag))*4 + int64(len(p.ref))*24
+	const each = 1 << 10
+	return each + int64(len(p.span))*48 + int64(len(p.bag))*4 + int64(len(p.ref))*24
 }
 
 // compact copies what solve and decode need.
@@ -258,7 +292,7 @@ func (m *maker) windows() {
 		m.level[i] = -1
 	}
 	for start := range int32(n) {
-		if m.level[start] >= 0 {
+		if m.level[start] >= 0 || m.full {
 			continue
 		}
 		m.levels(w.far(g, start))
@@ -372,6 +406,7 @@ func (m *maker) around(u, v int32) {
 	take(v)
 	for len(m.nodes) < most {
 		best := -1
+		m.spend(len(border))
 		for i, x := range border {
 			if !m.met[x] && (best < 0 || m.score[x] > m.score[border[best]] || m.score[x] == m.score[border[best]] && x < border[best]) {
 				best = i

@@ -10,6 +10,10 @@ const easy = 1 << 10
 func (s *solver) narrow(g *graph, names []int32, limit int, work int64, sweeps int) bool {
 	o := &s.order
 	n := g.nodes()
+	if limit = min(limit, maxWidth); beyondWidth(g, limit) {
+		o.width = limit + 1
+		return false
+	}
 	found := o.run(g, limit, work)
 	if found && o.work <= easy*int64(n) {
 		return true

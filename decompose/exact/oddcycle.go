@@ -19,6 +19,7 @@ type CycleFinder struct {
 	queue []int32
 	spot  []int32
 	side  []uint8
+	plain bool // no loops and no parallel edges: no cycle is smaller than a triangle
 }
 
 // halfEdge is an edge as seen from one end.
@@ -41,7 +42,8 @@ func ShortestOddCycle(n int, edges []Edge, through int) []int32 {
 // The answer is exact as long as the walks cross at most 2^26 edges, which is always so where nodes times edges are no more than that, and nearly always where the
 // smallest cycle is short; beyond, it is the smallest of those found.
 func SmallestOddCycle(n int, edges []Edge) []int32 {
-	return NewCycleFinder(n, edges).Smallest()
+	c, _ := NewCycleFinder(n, edges).Smallest()
+	return c
 }
 
 // NewCycleFinder prepares the search in a graph, in linear time.
@@ -100,6 +102,13 @@ func NewCycleFinder(n int, edges []Edge) *CycleFinder {
 		}
 	}
 	f.half = rows(ends, order)
+	f.plain = f.loop < 0
+	for v := range int32(n) {
+		row := f.row(v)
+		for k := 1; k < len(row); k++ {
+			f.plain = f.plain && row[k].to != row[k-1].to
+		}
+	}
 	f.from, f.mark, f.depth = make([]int32, 2*n), make([]int32, 2*n), make([]int32, 2*n)
 	f.spot, f.side = make([]int32, n), make([]uint8, n)
 	f.cut()
@@ -184,19 +193,19 @@ func (f *CycleFinder) cut() {
 	}
 }
 
-// Smallest is SmallestOddCycle.
-func (f *CycleFinder) Smallest() []int32 {
+// Smallest is SmallestOddCycle; it also tells whether the answer is exact.
+func (f *CycleFinder) Smallest() (cycle []int32, sure bool) {
 	if f.loop >= 0 {
-		return []int32{f.loop}
+		return []int32{f.loop}, true
 	}
 	const effort = 1 << 26
 	var best []int32
 	spent := 0
 	for _, root := range f.roots {
 		if spent > effort {
-			break
+			return arrange(best), false
 		}
-		most := int32(1) << 30
+		most := anyLength
 		if best != nil {
 			most = int32(len(best)) - 1
 		}
@@ -204,7 +213,7 @@ func (f *CycleFinder) Smallest() []int32 {
 			best = c
 		}
 	}
-	return arrange(best)
+	return arrange(best), true
 }
 
 // near gives the smallest of the contradictory cycles that the edges outside a breadth-first tree close with it, of at most the given length, or nil. The smallest cycle of all is
@@ -277,6 +286,9 @@ func arrange(c []int32) []int32 {
 	return out
 }
 
+// detours is how many steps the search for a simple cycle may take where the smallest walk is none.
+const detours = 1 << 20
+
 // Through is ShortestOddCycle.
 func (f *CycleFinder) Through(edge int) []int32 {
 	e := f.edges[edge]
@@ -293,26 +305,65 @@ func (f *CycleFinder) Through(edge int) []int32 {
 	if !f.odd[f.block[edge]] {
 		return nil
 	}
-	goal := 2 * e.V
-	if e.Same {
-		goal++
-	}
+	goal := f.goal(edge)
 	// Backwards, from the goal, so that depth bounds from below how long the way from any state to the goal is.
-	f.walk(goal, 2*e.U, int32(edge))
+	f.walk(goal, 2*e.U, int32(edge), anyLength)
 	path := f.follow(2*e.U, goal)
 	if f.isSimple(path) {
 		return closing(path)
 	}
 	detour := f.detour(int32(edge), path)
-	f.walk(goal, -1, int32(edge))
-	const effort = 1 << 20
+	f.walk(goal, -1, int32(edge), anyLength)
 	steps := 0
-	for length := f.depth[2*e.U]; int(length) < len(detour)-1 && steps < effort; length++ {
-		if found := f.deepen(2*e.U, goal, length, int32(edge), effort, &steps); found != nil {
+	for length := f.depth[2*e.U]; int(length) < len(detour)-1 && steps < detours; length++ {
+		if found := f.deepen(2*e.U, goal, length, int32(edge), detours, &steps); found != nil {
 			return closing(found)
 		}
 	}
 	return detour
+}
+
+// SmallestThrough gives the smallest of the smallest contradictory cycles through some edges, which are named by their places in the list; nil where none is on one. It is sure as
+// long as the walks look at no more than 2^26 edges; beyond, it is the smallest of those found.
+func (f *CycleFinder) SmallestThrough(edges []int) (cycle []int32, sure bool) {
+	const effort = 1 << 26
+	spent := 0
+	for _, edge := range edges {
+		if len(cycle) == 1 || len(cycle) == 3 && f.plain {
+			break
+		}
+		if spent > effort {
+			return cycle, false
+		}
+		e := f.edges[edge]
+		found := []int32(nil)
+		switch {
+		case e.Weight <= 0 || e.U != e.V && !f.odd[f.block[edge]]:
+			continue
+		case e.U == e.V:
+			found = f.Through(edge)
+		default:
+			most := anyLength
+			if cycle != nil {
+				most = int32(len(cycle)) - 2 // steps beside the edge itself
+			}
+			goal := f.goal(edge)
+			spent += f.walk(goal, 2*e.U, int32(edge), most)
+			if f.mark[2*e.U] != f.time {
+				continue // no shorter than what there is
+			}
+			if path := f.follow(2*e.U, goal); f.isSimple(path) {
+				found = closing(path)
+			} else {
+				spent += len(f.half) + detours
+				found = f.Through(edge)
+			}
+		}
+		if found != nil && (cycle == nil || len(found) < len(cycle)) {
+			cycle = found
+		}
+	}
+	return cycle, true
 }
 
 // closing turns the states of a path from U to V into the cycle U, V, and back along the path.
@@ -325,15 +376,32 @@ func closing(path []int32) []int32 {
 	return out
 }
 
-// walk goes breadth first over the states of the block of an edge, but not over the edge, from one state until another is reached, or over all of them where that is -1. A state is
-// 2*node + parity.
-func (f *CycleFinder) walk(from, until, edge int32) {
+// goal is the state of the second end of an edge that a walk from its first end, at state 2*U, must reach to close a contradictory cycle with the edge.
+func (f *CycleFinder) goal(edge int) int32 {
+	e := f.edges[edge]
+	if e.Same {
+		return 2*e.V + 1
+	}
+	return 2 * e.V
+}
+
+// anyLength is no bound on the length of a walk.
+const anyLength = int32(1) << 30
+
+// walk goes breadth first over the states of the block of an edge, but not over the edge, from one state until another is reached, or over all of them where that is -1; it goes no
+// farther than most steps. A state is 2*node + parity. It returns the edges that it looked at.
+func (f *CycleFinder) walk(from, until, edge, most int32) (looked int) {
 	f.time++
 	f.mark[from], f.depth[from], f.from[from] = f.time, 0, -1
 	f.queue = append(f.queue[:0], from)
 	for at := 0; at < len(f.queue) && f.queue[at] != until; at++ {
 		state := f.queue[at]
-		for _, h := range f.row(state >> 1) {
+		if f.depth[state] == most {
+			break
+		}
+		row := f.row(state >> 1)
+		looked += len(row)
+		for _, h := range row {
 			if h.edge == edge || f.block[h.edge] != f.block[edge] {
 				continue
 			}
@@ -344,6 +412,7 @@ func (f *CycleFinder) walk(from, until, edge int32) {
 			}
 		}
 	}
+	return looked
 }
 
 // follow gives the states from one to the other, the beginning of the last walk.

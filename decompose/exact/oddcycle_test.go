@@ -143,7 +143,7 @@ func TestOddCyclesAgainstAllCycles(t *testing.T) {
 				if edges[k].Same {
 					goal++
 				}
-				f.walk(goal, 2*edges[k].U, int32(k))
+				f.walk(goal, 2*edges[k].U, int32(k), anyLength)
 				if path := f.follow(2*edges[k].U, goal); !f.isSimple(path) {
 					walks++
 					if d := f.detour(int32(k), path); !isOddCycle(edges, d, k) {
@@ -151,6 +151,19 @@ func TestOddCyclesAgainstAllCycles(t *testing.T) {
 					}
 				}
 			}
+		}
+		var some []int
+		least := 0
+		for k, length := range want {
+			if rng.IntN(2) == 0 {
+				some = append(some, k)
+				if length > 0 && (least == 0 || length < least) {
+					least = length
+				}
+			}
+		}
+		if c, sure := NewCycleFinder(n, edges).SmallestThrough(some); len(c) != least || !sure || least > 0 && !isOddCycle(edges, c, -1) {
+			t.Fatalf("through %v of %v: %v, want %d nodes", some, edges, c, least)
 		}
 		c := SmallestOddCycle(n, edges)
 		if len(c) != smallest || smallest > 0 && !isOddCycle(edges, c, -1) {

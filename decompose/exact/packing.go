@@ -44,8 +44,15 @@ func newPacker(g *graph, edge []int32, edges int) *packer {
 
 // packCycles packs cycles until none is left or the work is spent. The energy of every assignment is at least g.floor() plus the sum.
 func packCycles(g *graph, edge []int32, edges int, work int64) *packer {
-	n := g.nodes()
 	p := newPacker(g, edge, edges)
+	p.packRest(work)
+	return p
+}
+
+// packRest packs cycles in what is left until none is left or the work is spent.
+func (p *packer) packRest(work int64) {
+	g, edge := p.g, p.edge
+	n := g.nodes()
 	// First from every edge, then, as walks get longer, from the edges that contradict a spanning forest of what is left: there is one on every contradictory cycle.
 	for _, depth := range []int{2, 3, 4} {
 		for i := range int32(n) {
@@ -70,7 +77,6 @@ func packCycles(g *graph, edge []int32, edges int, work int64) *packer {
 			depth = 2 * n
 		}
 	}
-	return p
 }
 
 // shortCycles gives, for each edge, the shortest contradictory cycle that a walk over it finds, each cycle once, until the work is spent. They do not exclude each other.

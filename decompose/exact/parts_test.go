@@ -364,7 +364,8 @@ func TestPackingIsOne(t *testing.T) {
 // narrowCover covers a graph with clusters that are much narrower than it.
 func narrowCover(s *solver, g *graph, limit int) *cover {
 	edge, edges := numberEdges(g)
-	c := s.coverWith(g, edge, edges, limit)
+	steps := unlimited
+	c := s.coverWith(g, edge, edges, limit, &steps)
 	p := packCycles(g, edge, edges, 1<<20)
 	s.addCycles(c, append(p.cycles, shortCycles(g, edge, edges, 1<<20).cycles...))
 	return c
