@@ -8,8 +8,6 @@ import (
 	"slices"
 	"strings"
 	"testing"
-
-	_ "maskpair/cli" // the program that is run: a result for another one is not remembered
 )
 
 // command is a command of a session with the lines that README prints below it.
