@@ -145,7 +145,7 @@ func demo(ctx context.Context, dir string, force bool, con *console, s steps) er
 	if scene, err = demoPicture(bytes.NewReader(masks)); err != nil {
 		return err
 	}
-	title := "the demo layout on two masks: A hatched, B dotted, gaps that stay unresolved in a ring"
+	title := "the demo layout on two masks: A with slanted lines, B with level ones, gaps that stay unresolved in a ring"
 	err = writeDemo(ctx, force, []demoFile{{f.masksPicture, demoSVG(scene, title)}})
 	if err != nil {
 		return err

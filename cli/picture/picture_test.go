@@ -96,7 +96,7 @@ func TestSVG(t *testing.T) {
 	onlyA := MaskA
 	for _, c := range []struct {
 		only          *Role
-		hatched, mark int
+		slanted, mark int
 	}{{nil, 1, 1}, {&onlyA, 1, 0}} {
 		var b strings.Builder
 		if err := read(t).WriteSVG(&b, SVG{Title: `masks "A" & B`, Unit: 20, Scale: 1, Only: c.only}); err != nil {
@@ -106,11 +106,11 @@ func TestSVG(t *testing.T) {
 		if found["path"] != 7 || found["text"] != 1 || found["ellipse"] != c.mark || found["pattern"] != 2 {
 			t.Errorf("the picture has %v", found)
 		}
-		if n := strings.Count(b.String(), `fill="url(#a)"`); n != c.hatched {
-			t.Errorf("%d groups are hatched", n)
+		if n := strings.Count(b.String(), `fill="url(#a)"`); n != c.slanted {
+			t.Errorf("%d groups are slanted", n)
 		}
 		if n := strings.Count(b.String(), `fill="url(#b)"`); (n == 1) != (c.only == nil) {
-			t.Errorf("%d groups are dotted", n)
+			t.Errorf("%d groups are level", n)
 		}
 	}
 }

@@ -7,8 +7,8 @@ import (
 	"io"
 )
 
-// This file draws SVG. Blue and orange are two of the colours that Okabe and Ito chose (2008) so that every common form of colour
-// vision tells them apart; mask A is hatched, mask B dotted besides.
+// This file draws SVG, in the colours and lines of the report page: mask A amber with slanted lines, mask B blue with level lines, so
+// that every common form of colour vision tells them apart, and so does print in black and white.
 
 // SVG says how a scene is drawn.
 type SVG struct {
@@ -35,16 +35,16 @@ func (s *Scene) WriteSVG(w io.Writer, o SVG) error {
 		left, top, width, height, o.Scale*float64(width), o.Scale*float64(height), html.EscapeString(o.Title))
 	p(`<title>%s</title>`, html.EscapeString(o.Title))
 	p(`<defs>`)
-	p(`<pattern id="a" patternUnits="userSpaceOnUse" width="%g" height="%[1]g" patternTransform="rotate(45)"><rect width="%[1]g" height="%[1]g" fill="#b5d3ea"/><rect width="%[2]g" height="%[1]g" fill="#0072b2"/></pattern>`, 0.6*u, 0.3*u)
-	p(`<pattern id="b" patternUnits="userSpaceOnUse" width="%g" height="%[1]g"><rect width="%[1]g" height="%[1]g" fill="#f9dcb4"/><circle cx="%[2]g" cy="%[2]g" r="%[3]g" fill="#b34700"/></pattern>`, 0.5*u, 0.25*u, 0.15*u)
+	p(`<pattern id="a" patternUnits="userSpaceOnUse" width="%g" height="%[1]g" patternTransform="rotate(-45)"><rect width="%[1]g" height="%[1]g" fill="#f6e2b6"/><rect width="%[1]g" height="%[2]g" fill="#8f5e00"/></pattern>`, 0.5*u, 0.14*u)
+	p(`<pattern id="b" patternUnits="userSpaceOnUse" width="%g" height="%[1]g"><rect width="%[1]g" height="%[1]g" fill="#cfe4ec"/><rect y="%[3]g" width="%[1]g" height="%[2]g" fill="#12556e"/></pattern>`, 0.4*u, 0.11*u, 0.145*u)
 	p(`</defs>`)
 	p(`<rect x="%d" y="%d" width="%d" height="%d" fill="#fcfcfa"/>`, left, top, width, height)
 	line := u / 12
 	styles := [roles]string{
 		Drawn: fmt.Sprintf(`fill="#d4d4d0" stroke="#55554f" stroke-width="%g"`, line),
-		MaskA: fmt.Sprintf(`fill="url(#a)" stroke="#00507d" stroke-width="%g"`, line),
-		MaskB: fmt.Sprintf(`fill="url(#b)" stroke="#8a3700" stroke-width="%g"`, line),
-		Mark:  fmt.Sprintf(`fill="none" stroke="#111" stroke-width="%g"`, u/4),
+		MaskA: fmt.Sprintf(`fill="url(#a)" stroke="#8f5e00" stroke-width="%g"`, line),
+		MaskB: fmt.Sprintf(`fill="url(#b)" stroke="#12556e" stroke-width="%g"`, line),
+		Mark:  fmt.Sprintf(`fill="none" stroke="#9b0f5f" stroke-width="%g"`, u/4),
 	}
 	faint := fmt.Sprintf(`fill="none" stroke="#c4c4be" stroke-width="%g"`, line)
 	for role, figures := range s.Figures {

@@ -35,7 +35,7 @@ func contacts() *scenario.Scenario {
 		Row:   row,
 		Roles: map[gds.LayerType]picture.Role{contactA: picture.MaskA, contactB: picture.MaskB, {Layer: 90, Type: 0}: picture.Mark},
 		Pictures: []scenario.Picture{
-			{Name: "round0.svg", Title: "contacts on two masks: A hatched, B dotted", Round: 0},
+			{Name: "round0.svg", Title: "contacts on two masks: A with slanted lines, B with level ones", Round: 0},
 			{Name: "round1.svg", Title: "the halves alike: gaps that stay on one mask in a ring", Round: 1},
 			{Name: "round2.svg", Title: "the halves alike, with a dummy column between them", Round: 2},
 		},

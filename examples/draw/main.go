@@ -57,7 +57,7 @@ func draw() (map[string][]byte, error) {
 		svg          picture.SVG
 	}{
 		{"layout.svg", "layout.gds", picture.SVG{Title: "the demo layout as drawn"}},
-		{"masks.svg", "masks.gds", picture.SVG{Title: "the demo layout on two masks: A hatched, B dotted, unresolved gaps in a ring"}},
+		{"masks.svg", "masks.gds", picture.SVG{Title: "the demo layout on two masks: A with slanted lines, B with level ones, unresolved gaps in a ring"}},
 		{"mask-a.svg", "masks.gds", picture.SVG{Title: "mask A of the demo layout; what is on B is outlined", Only: &a}},
 		{"mask-b.svg", "masks.gds", picture.SVG{Title: "mask B of the demo layout; what is on A is outlined", Only: &b}},
 		{"mended.svg", "mended.gds", picture.SVG{Title: "the knot with one wire cut in two pieces, which overlap where they meet", Part: &knot}},

@@ -36,7 +36,7 @@ func logicRow() *scenario.Scenario {
 		Row:   row,
 		Roles: map[gds.LayerType]picture.Role{metalA: picture.MaskA, metalB: picture.MaskB, {Layer: 90, Type: 0}: picture.Mark},
 		Pictures: []scenario.Picture{
-			{Name: "round0.svg", Title: "three rows on two masks, A hatched, B dotted; gaps that stay in a ring", Round: 0},
+			{Name: "round0.svg", Title: "three rows on two masks, A with slanted lines, B with level ones; gaps that stay in a ring", Round: 0},
 			{Name: "round2.svg", Title: "with stitches, and ends of wires judged by their own rule; gaps that stay in a ring", Round: 2},
 		},
 	}

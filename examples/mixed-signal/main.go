@@ -36,7 +36,7 @@ func block() *scenario.Scenario {
 		Row:   row,
 		Roles: map[gds.LayerType]picture.Role{wireA: picture.MaskA, wireB: picture.MaskB, {Layer: 90, Type: 3}: picture.Mark},
 		Pictures: []scenario.Picture{
-			{Name: "round0.svg", Title: "the block on two masks: A hatched, B dotted", Round: 0},
+			{Name: "round0.svg", Title: "the block on two masks: A with slanted lines, B with level ones", Round: 0},
 			{Name: "round1.svg", Title: "after the first edit: what moved has a ring", Round: 1},
 			{Name: "round2.svg", Title: "after the second edit: what moved has a ring", Round: 2},
 		},
