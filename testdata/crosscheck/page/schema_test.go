@@ -90,11 +90,12 @@ func TestReportsKeepToTheirSchemas(t *testing.T) {
 	run(compare, "compare", "masks.gds", "masks.gds", "--deck", "deck.toml")
 	run(compare, "compare", "masks.gds", "ruled.gds", "--deck", "deck.toml")
 
-	// Warnings come of what this layout has not. Edges are told by rules of [layer.spacing] alone, and not of pairs that are too near on any
-	// masks.
+	// Left empty by this layout: it gives no cause for warnings and is solved in full, compare counts no work, and edges are told by rules of
+	// [layer.spacing] alone and not of pairs that are too near on any masks.
+	empty := regexp.MustCompile(`\.(warnings|not_computed|stages\[\]\.work|edge_[ab])$`)
 	for schema, found := range filled {
 		for list, some := range found {
-			if !some && list != ".warnings" && !strings.HasSuffix(list, ".edge_a") && !strings.HasSuffix(list, ".edge_b") {
+			if !some && !empty.MatchString(list) {
 				t.Errorf("%s: no report has anything in %s", schema, list)
 			}
 		}
