@@ -19,19 +19,36 @@ import (
 
 // cutting finds out which cuts the shapes of a broken group allow. Coordinates are those of the canonical frame.
 type cutting struct {
-	s       *solver
-	b       *brokenGroup
-	rules   *facing.Rules // nil: one spacing for all
-	spacing int64         // the largest
-	parts   map[uint32]*geom.Parts
-	rects   [][]geom.Rect // by node of the group
-	near    [][]int32     // by node of the group
-	shapes  map[uint32]*facing.Shape
-	maker   facing.Maker
+	s        *solver
+	b        *brokenGroup
+	rules    *facing.Rules // nil: one spacing for all
+	spacing  int64         // the largest
+	stitches stitch.Rules
+	kinds    *stitch.Kinds // with one spacing for all
+	parts    map[uint32]*geom.Parts
+	rects    [][]geom.Rect // by node of the group
+	near     [][]int32     // by node of the group
+	shapes   map[uint32]*facing.Shape
+	maker    facing.Maker
 }
 
-func (s *solver) newCutting(b *brokenGroup, parts map[uint32]*geom.Parts, rects [][]geom.Rect, near [][]int32, spacing int64) *cutting {
-	return &cutting{s: s, b: b, rules: s.l.facingRules(), spacing: spacing, parts: parts, rects: rects, near: near, shapes: map[uint32]*facing.Shape{}}
+func (s *solver) newCutting(b *brokenGroup, parts map[uint32]*geom.Parts, rects [][]geom.Rect, near [][]int32, rules stitch.Rules) *cutting {
+	c := &cutting{s: s, b: b, rules: s.l.facingRules(), stitches: rules, spacing: rules.Spacing, parts: parts, rects: rects, near: near, shapes: map[uint32]*facing.Shape{}}
+	if c.rules == nil {
+		rules.Refuse = c.tooNear
+		c.kinds = stitch.NewKinds(rules)
+	}
+	return c
+}
+
+// find gives the candidates of a node. Where one spacing is all, shapes that recur are looked at once.
+func (c *cutting) find(k int, around, keepOut []geom.Rect) (stitch.Split, stitch.Reason) {
+	if c.kinds != nil {
+		return c.kinds.Find(c.rects[k], around, keepOut)
+	}
+	rules := c.stitches
+	rules.Refuse = c.refuse(k)
+	return stitch.Find(c.rects[k], around, keepOut, rules)
 }
 
 // findApart notes, for the nodes of broken groups, what is within the largest spacing though no rule makes it near, and asks for its
@@ -88,20 +105,22 @@ func (c *cutting) shape(node uint32) *facing.Shape {
 	return s
 }
 
-// refuse names the cuts of node k that are no candidates.
+// tooNear names the cuts that are no candidates with one spacing for all.
+func (c *cutting) tooNear(s *stitch.Split) []geom.Rect {
+	pieces := make([][]geom.Rect, len(s.Cores))
+	for i := range pieces {
+		pieces[i] = s.Piece(i)
+	}
+	return tooNearEachOther(s, func(i, j int) bool { return rectsNear(pieces[i], pieces[j], c.spacing) })
+}
+
+// refuse names the cuts of node k that are no candidates under rules by what faces what.
 func (c *cutting) refuse(k int) func(s *stitch.Split) []geom.Rect {
 	return func(s *stitch.Split) []geom.Rect {
-		pieces := make([][]geom.Rect, len(s.Cores))
-		for i := range pieces {
-			pieces[i] = s.Piece(i)
-		}
-		if c.rules == nil {
-			return tooNearEachOther(s, func(i, j int) bool { return rectsNear(pieces[i], pieces[j], c.spacing) })
-		}
-		atoms := make([]*facing.Shape, len(pieces))
+		atoms := make([]*facing.Shape, len(s.Cores))
 		for i := range atoms {
 			atoms[i] = new(facing.Shape)
-			c.maker.Rects(atoms[i], pieces[i])
+			c.maker.Rects(atoms[i], s.Piece(i))
 		}
 		bad := c.changed(k, s, atoms)
 		for _, b := range tooNearEachOther(s, func(i, j int) bool { return c.rules.Near(atoms[i], atoms[j]) }) {

@@ -20,6 +20,7 @@ import (
 type pieces struct {
 	first   []int32         // first atom of each node; one more at the end
 	cuts    []pieceCut      // candidates, by node and place
+	boxes   []geom.Rect     // by atom: around it
 	rects   [][]geom.Rect   // by atom: what a mask holds of it; nil for an atom that is a whole node
 	pairs   [][][2]int32    // by near pair of the group: near atoms; nil where both nodes are whole
 	reasons []stitch.Reason // by node
@@ -102,7 +103,7 @@ func (s *solver) cutAll(b *brokenGroup, parts map[uint32]*geom.Parts, keepOut ma
 		near[e.V] = append(near[e.V], e.U)
 	}
 	splits := make([]*stitch.Split, n)
-	cutting := s.newCutting(b, parts, rects, near, rules.Spacing)
+	cutting := s.newCutting(b, parts, rects, near, rules)
 	atoms := int32(0)
 	for k, u := range b.nodes {
 		p.first[k] = atoms
@@ -116,8 +117,7 @@ func (s *solver) cutAll(b *brokenGroup, parts map[uint32]*geom.Parts, keepOut ma
 		for _, r := range keepOut[u] {
 			kept = append(kept, geom.Rect(b.canon.back.applyBox(Box(r))))
 		}
-		rules.Refuse = cutting.refuse(k)
-		split, why := stitch.Find(rects[k], around, kept, rules)
+		split, why := cutting.find(k, around, kept)
 		p.reasons[k] = why
 		if len(split.Cuts) == 0 {
 			continue
@@ -132,12 +132,16 @@ func (s *solver) cutAll(b *brokenGroup, parts map[uint32]*geom.Parts, keepOut ma
 	if len(p.cuts) == 0 {
 		return
 	}
-	p.rects = make([][]geom.Rect, atoms)
+	p.rects, p.boxes = make([][]geom.Rect, atoms), make([]geom.Rect, atoms)
 	for k, split := range splits {
-		if split != nil {
-			for i := range split.Cores {
-				p.rects[p.first[k]+int32(i)] = split.Piece(i)
-			}
+		if split == nil {
+			p.boxes[p.first[k]] = geom.Rect(boxAround(rects[k]))
+			continue
+		}
+		for i := range split.Cores {
+			atom := p.first[k] + int32(i)
+			p.rects[atom] = split.Piece(i)
+			p.boxes[atom] = geom.Rect(boxAround(p.rects[atom]))
 		}
 	}
 	p.shapes = cutting.atomShapes(p)
@@ -160,7 +164,7 @@ func (s *solver) nearAtoms(b *brokenGroup, k, m int, rects [][]geom.Rect, parts 
 	var out [][2]int32
 	for i := p.first[k]; i < p.first[k+1]; i++ {
 		for j := p.first[m]; j < p.first[m+1]; j++ {
-			if s.atomsNear(b, k, m, i, j, rects, parts, spacing) {
+			if geom.RectsRelation(p.boxes[i], p.boxes[j], spacing) != geom.Far && s.atomsNear(b, k, m, i, j, rects, parts, spacing) {
 				out = append(out, [2]int32{i, j})
 			}
 		}
