@@ -25,7 +25,10 @@ func TestKindsSayWhatFindSays(t *testing.T) {
 			var near []geom.Rect
 			for range 1 + rng.IntN(4) {
 				x := rng.Int64N(400) - 20
-				near = append(near, r(x, -40, x+10+rng.Int64N(900), -21))
+				near = append(near, r(x, -40, x+10+rng.Int64N(30), -21))
+				if x > 250 {
+					near[len(near)-1].X2 += 900
+				}
 			}
 			want, why := Find(shape, near, nil, rules)
 			cuts += len(want.Cuts)
