@@ -16,6 +16,9 @@ func orderArguments(app *cli.App, args []string) ([]string, error) {
 	if len(args) == 0 {
 		return args, nil
 	}
+	if (args[0] == "help" || args[0] == "h") && len(args) > 1 && !slices.ContainsFunc(app.Commands, func(c *cli.Command) bool { return c.HasName(args[1]) }) {
+		return nil, unknownCommand(app, args[1])
+	}
 	at := slices.IndexFunc(app.Commands, func(c *cli.Command) bool { return c.HasName(args[0]) })
 	if at < 0 {
 		if name := args[0]; strings.HasPrefix(name, "-") && !slices.Contains([]string{"--help", "-h", "--version", "-v"}, name) {

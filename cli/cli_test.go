@@ -282,6 +282,7 @@ func TestUsageErrors(t *testing.T) {
 	}{
 		{nil, "no command given"},
 		{[]string{"decomposed"}, `"decomposed" is no command`},
+		{[]string{"help", "decomposed"}, `"decomposed" is no command`},
 		{[]string{"help", "nothing"}, "nothing"},
 		{[]string{"--quiet", "decompose"}, "--quiet stands before the command"},
 		{[]string{"decompose"}, "no layout given"},
@@ -412,7 +413,7 @@ func TestFailuresLeaveWhatWas(t *testing.T) {
 		{"input", errors.New("in.gds: byte 12: record missing"), 3},
 		{"stream", &gds.SyntaxError{Offset: 12, Err: io.ErrUnexpectedEOF}, 3},
 		{"layout", &decompose.InputError{Structure: "top", Msg: "is placed in a loop"}, 3},
-		{"memory", &decompose.LimitError{Msg: "too large; raise --memory"}, 3},
+		{"memory", &decompose.LimitError{Msg: "too large", Remedy: "raise --memory"}, 3},
 		{"deck", &decompose.DeckError{File: "deck.toml", Line: 7, Key: "x", Msg: "no whole number"}, 2},
 		{"orders", &decompose.OrderError{Msg: "two anchors on one shape"}, 2},
 		{"output", &writeError{"out.gds", errors.New("no space left on device")}, 4},

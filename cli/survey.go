@@ -197,7 +197,12 @@ func lookForGaps(ctx context.Context, o *surveyOptions, found *surveyed, clock *
 	if len(found.layer.Widths) > 0 {
 		width = found.layer.Widths[0].Width
 	}
-	return survey.FindGaps(ctx, lib, *o.layer, free, width, survey.Limits{Jobs: o.Jobs, Memory: o.Memory}, nil)
+	gaps, err := survey.FindGaps(ctx, lib, *o.layer, free, width, survey.Limits{Jobs: o.Jobs, Memory: o.Memory}, nil)
+	var limit *decompose.LimitError
+	if errors.As(err, &limit) {
+		return nil, &decompose.LimitError{Msg: limit.Msg, Remedy: "allow more with --memory, or survey without --layer"}
+	}
+	return gaps, err
 }
 
 // stream is an opened layout, unpacked as it is read.

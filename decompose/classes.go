@@ -71,7 +71,7 @@ func newClasses(rules *Rules) (*classes, error) {
 		}
 	}
 	if len(c.layers) > 255 {
-		return nil, &LimitError{Msg: fmt.Sprintf("the deck names %d layers; at most 254 can be handled in one run: split the deck", len(c.layers)-1)}
+		return nil, &LimitError{Msg: fmt.Sprintf("the deck names %d layers; at most 254 can be handled in one run", len(c.layers)-1), Remedy: "split the deck"}
 	}
 	return c, nil
 }

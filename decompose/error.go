@@ -3,9 +3,15 @@ package decompose
 import "fmt"
 
 // LimitError says that a layout is larger than the program, or --memory, allows.
-type LimitError struct{ Msg string }
+type LimitError struct {
+	Msg    string
+	Remedy string // what to do; a caller whose options are others may word its own
+}
 
-func (e *LimitError) Error() string { return e.Msg }
+func (e *LimitError) Error() string { return e.Msg + "; " + e.Remedy }
+
+// byBlocks is the remedy where a layout is too large as a whole.
+const byBlocks = "decompose the blocks one by one with --top"
 
 // InputError says that the layout cannot be processed as it is: a loop of references, coordinates that leave the plane.
 type InputError struct {

@@ -34,8 +34,8 @@ func (l *layout) checkMemory(opt *Options, before int64) error {
 	need := before + l.estimate()
 	opt.most = max(opt.most, need)
 	if opt.Memory > 0 && need > opt.Memory {
-		return &LimitError{Msg: fmt.Sprintf("layer %s: %d flat figures will need about %s of memory, more than the %s that this run may use; allow more with --memory, or decompose the blocks one by one with --top",
-			l.rules.Name, l.flat.total, sizeText(need), sizeText(opt.Memory))}
+		return &LimitError{Msg: fmt.Sprintf("layer %s: %d flat figures will need about %s of memory, more than the %s that this run may use",
+			l.rules.Name, l.flat.total, sizeText(need), sizeText(opt.Memory)), Remedy: "allow more with --memory, or " + byBlocks}
 	}
 	return nil
 }

@@ -79,8 +79,8 @@ func newFlat(h *hierarchy, sel *selection, g grid) (*flat, error) {
 		f.first[i] = f.total
 		f.total = saturatingAdd(f.total, f.all[t])
 		if f.all[t] > maxFlat || f.total > maxFlat {
-			return nil, &LimitError{Msg: fmt.Sprintf("structure %s places %s figures of one deck layer, more than the %d that can be numbered: decompose its blocks one by one with --top",
-				h.name(t), countText(f.all[t]), int64(maxFlat))}
+			return nil, &LimitError{Msg: fmt.Sprintf("structure %s places %s figures of one deck layer, more than the %d that can be numbered",
+				h.name(t), countText(f.all[t]), int64(maxFlat)), Remedy: byBlocks}
 		}
 		if f.all[t] > 0 {
 			if err := f.inPlane(t); err != nil {

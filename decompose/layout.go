@@ -329,8 +329,8 @@ func (b *builder) search(sets union, win window) error {
 		anyMask: b.l.rules.AnyMask * scale, figures: uint32(b.l.flat.total), tags: b.l.keptTags(), progress: b.opt.counted(int64(len(b.sorted)), "figures")}
 	sinks, err := s.run(b.ctx, sets, b.jobs, &b.limit)
 	if err == errTooManyPairs {
-		return &LimitError{Msg: fmt.Sprintf("layer %s: so many figures are nearer to each other than %d database units that their pairs do not fit the memory that this run may use; check the spacing, or allow more with --memory",
-			b.l.rules.Name, b.l.rules.Reach())}
+		return &LimitError{Msg: fmt.Sprintf("layer %s: so many figures are nearer to each other than %d database units that their pairs do not fit the memory that this run may use",
+			b.l.rules.Name, b.l.rules.Reach()), Remedy: "check the spacing, or allow more with --memory"}
 	}
 	if err != nil {
 		return err

@@ -118,7 +118,7 @@ func newEarlier(b *Baseline, masks [2]*selection, g grid) (*earlier, error) {
 		e.masks[m] = f
 		behind += f.total
 		if behind > maxFlat {
-			return nil, fmt.Errorf("%s: %w", b.name, &LimitError{Msg: fmt.Sprintf("more than %d flat figures on the masks of one deck layer; decompose its blocks one by one with --top", int64(maxFlat))})
+			return nil, fmt.Errorf("%s: %w", b.name, &LimitError{Msg: fmt.Sprintf("more than %d flat figures on the masks of one deck layer", int64(maxFlat)), Remedy: byBlocks})
 		}
 		e.odd[m] = make([]oddFigures, len(b.h.tops))
 		for top := range e.odd[m] {

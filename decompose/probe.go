@@ -131,7 +131,7 @@ func (k *lookout) number(figures uint64) error {
 		total += k.markers.total
 	}
 	if total > maxFlat {
-		return &LimitError{Msg: fmt.Sprintf("a deck layer has %d flat figures, anchors and markers, more than the %d that can be numbered: decompose its blocks one by one with --top", total, int64(maxFlat))}
+		return &LimitError{Msg: fmt.Sprintf("a deck layer has %d flat figures, anchors and markers, more than the %d that can be numbered", total, int64(maxFlat)), Remedy: byBlocks}
 	}
 	return nil
 }

@@ -69,7 +69,7 @@ func (h *hierarchy) countable(count []uint64, what string) error {
 		total = saturatingAdd(total, count[t])
 	}
 	if total > mostPlaced {
-		return &LimitError{Msg: fmt.Sprintf("there are %s %s; at most %d can be looked at: decompose the blocks one by one with --top", countText(total), what, mostPlaced)}
+		return &LimitError{Msg: fmt.Sprintf("there are %s %s; at most %d can be looked at", countText(total), what, mostPlaced), Remedy: byBlocks}
 	}
 	return nil
 }
