@@ -4,26 +4,38 @@ import (
 	"fmt"
 	"unsafe"
 
+	"maskpair/decompose/geom"
 	"maskpair/gds"
 )
 
 // This file says beforehand how much memory a run will use. All that is large is counted before it is built: the index is there, and
 // the flat figures of each layer follow from the hierarchy. What is not known is how many figures are near; a typical number is taken.
 
-// Bytes by flat item and by flat figure at the moment when a layer needs most: while it is swept.
+// Bytes that a layer takes, as measured on generated and open layouts; go run ./testdata/bench prints what came of them.
 const (
-	bytesPerItem   = 2*int64(unsafe.Sizeof(item{})) + 8 // items, as much scratch, and what is found near
-	bytesPerFigure = 4                                  // node of each figure
+	bytesPerItem   = 2 * int64(unsafe.Sizeof(item{})) // the items, and as much again to sort them
+	bytesPerFigure = 4                                // node of each flat figure
 	bytesPerBand   = int64(unsafe.Sizeof(band{}))
-	bytesPerNode   = 45       // area, pairs, components, masks, which follow the sweep
-	bytesAlways    = 12 << 20 // program, buffers and stacks
+	bytesPerProbe  = 24 // what a marker touches
+	// What is found: near pairs, areas, pairs by shape. Where cells are placed often, much of what they share lies on itself and is found
+	// once.
+	foundPerDrawn  = 36 // by flat figure of a structure that is placed once
+	foundPerPlaced = 14 // by flat figure of others
+	keptPerDrawn   = 26 // the same, once the layer is done and others follow
+	keptPerPlaced  = 10
+	bytesPerForm   = int64(unsafe.Sizeof(form{})) + 5 // by outline
+	bytesPerRect   = int64(unsafe.Sizeof(geom.Rect{}))
+	bytesPerCell   = 1200     // by structure: its name, its tables, its ways
+	bytesAlways    = 14 << 20 // program, buffers and stacks
 )
 
 // indexBytes is what the index of a stream takes.
 func indexBytes(lib *gds.Library) int64 {
-	return int64(len(lib.Figures))*int64(unsafe.Sizeof(gds.Figure{})) + int64(len(lib.Outlines))*int64(unsafe.Sizeof(gds.Outline{})) +
+	figures := int64(len(lib.Figures))
+	grown := min(figures, 1<<18) // the first room for figures is given back late
+	return (figures+grown)*int64(unsafe.Sizeof(gds.Figure{})) + int64(len(lib.Outlines))*int64(unsafe.Sizeof(gds.Outline{})) +
 		int64(len(lib.Points))*int64(unsafe.Sizeof(gds.Point{})) + int64(len(lib.Refs))*int64(unsafe.Sizeof(gds.Ref{})) +
-		int64(len(lib.Placements))*int64(unsafe.Sizeof(gds.Placement{})) + int64(len(lib.Structures))*int64(unsafe.Sizeof(gds.Structure{}))
+		int64(len(lib.Placements))*int64(unsafe.Sizeof(gds.Placement{})) + int64(len(lib.Structures))*bytesPerCell
 }
 
 // Estimate is the memory in bytes that the layers done so far were expected to need, process and index included.
@@ -40,19 +52,36 @@ func (l *layout) checkMemory(opt *Options, before int64) error {
 	return nil
 }
 
-// estimate is what a layer will need at most, in bytes.
+// estimate is what a layer will need at most, in bytes, above the index: while its largest top is searched.
 func (l *layout) estimate() int64 {
 	f := l.flat
-	var items, bands, most, mostBands int64
-	for _, t := range f.h.tops {
-		items += int64(min(f.items[t], maxFlat))
-		bands += int64(min(f.bands[t], maxFlat))
-		most, mostBands = max(most, int64(min(f.items[t], maxFlat))), max(mostBands, int64(min(f.bands[t], maxFlat)))
+	var most, mostBands, probes int64
+	for i, t := range f.h.tops {
+		items, bands := int64(min(f.items[t], maxFlat)), int64(min(f.bands[t], maxFlat))
+		more, moreBands := l.look.size(i)
+		probes += int64(more)
+		most, mostBands = max(most, items+int64(more)), max(mostBands, bands+int64(moreBands))
 	}
-	forms := int64(len(f.forms.rects)) * 32
-	sweep := most*bytesPerItem + mostBands*bytesPerBand
-	graph := min(items, int64(f.total)) * bytesPerNode
-	return forms + int64(f.total)*bytesPerFigure + max(sweep, graph)
+	forms := int64(len(f.forms.rects))*bytesPerRect + int64(len(f.forms.of))*bytesPerForm
+	return forms + int64(f.total)*bytesPerFigure + most*bytesPerItem + mostBands*bytesPerBand + probes*bytesPerProbe + l.found(foundPerDrawn, foundPerPlaced)
+}
+
+// kept is what a layer holds once it is done, in bytes.
+func (l *layout) kept() int64 {
+	forms := int64(len(l.flat.forms.rects))*bytesPerRect + int64(len(l.flat.forms.of))*bytesPerForm
+	return forms + int64(l.flat.total)*bytesPerFigure + l.found(keptPerDrawn, keptPerPlaced)
+}
+
+// found weighs the flat figures by whether their structure is placed once or more often.
+func (l *layout) found(perDrawn, perPlaced int64) int64 {
+	f := l.flat
+	drawn := int64(0)
+	for _, s := range f.h.bottom {
+		if f.h.placed[s] == 1 {
+			drawn += int64(f.own[s])
+		}
+	}
+	return drawn*perDrawn + (int64(f.total)-drawn)*perPlaced
 }
 
 // sizeText words a number of bytes.

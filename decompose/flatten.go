@@ -258,19 +258,19 @@ type oddFigure struct {
 // oddFigures are those of one top.
 type oddFigures struct {
 	figures []oddFigure
-	forms   forms
+	forms   *forms // nil: there are no figures
 	rounded int64
 	box     Box
 }
 
 // collectOdd finds the figures of a top that are placed by a magnification or an odd angle and works out their forms.
 func (f *flat) collectOdd(top int, odd *oddFigures) error {
-	odd.forms = forms{grid: f.forms.grid}
 	odd.box = emptyBox
 	t := f.h.tops[top]
 	if !f.h.odd[t] {
 		return nil
 	}
+	odd.forms = &forms{grid: f.forms.grid}
 	return f.collectOddIn(odd, t, gds.Identity(), false, f.first[top])
 }
 

@@ -24,8 +24,9 @@ type layout struct {
 	nodeOf  *arena.Array[uint32] // by ordinal
 	shapes  int
 	nodes   int
-	first   []uint32  // first node of each top, by rank of the top; one more at the end
-	area    []float64 // by node, square work units
+	first   []uint32              // first node of each top, by rank of the top; one more at the end
+	area    []float64             // by node, square work units
+	areas   *arena.Array[float64] // room for it
 	near    *neighbours
 	box     *arena.Array[Box]   // by node, once boxes was called
 	odd     []oddFigures        // by top
@@ -48,9 +49,11 @@ type builder struct {
 	items    *arena.Array[item]
 	scratch  *arena.Array[item]
 	bands    *arena.Array[band]
-	sinks    []pairSink // with near pairs
+	room     pairRoom
+	near     [][]uint64 // near pairs, in blocks
 	done     built
 	areas    geom.AreaScratch
+	merged   merged
 	sorted   []item                 // of the window at hand
 	slanted  map[uint32]*geom.Parts // shapes of the top at hand that have slanted figures
 	joined   bool                   // the shapes of the top at hand are settled: a window is only looked at again
@@ -92,6 +95,8 @@ func newLayout(ctx context.Context, h *hierarchy, sel *selection, rules *LayerRu
 	defer b.free()
 	b.limit.Store(opt.mostPairs())
 	l.nodeOf = arena.New[uint32](int(f.total))
+	l.areas = arena.New[float64](int(f.total))
+	l.area = l.areas.Data[:0]
 	sets := newUnion(l.nodeOf.Data)
 	if err := b.collectOdd(); err != nil {
 		return nil, err
@@ -126,7 +131,8 @@ func newLayout(ctx context.Context, h *hierarchy, sel *selection, rules *LayerRu
 	}
 	b.done.tell(opt)
 	opt.stage(stagePairs)
-	l.near = gather(b.sinks, l.nodeOf.Data, l.nodes, l.given)
+	l.near = gather(b.near, l.nodeOf.Data, l.nodes, l.given)
+	b.room.free()
 	if err := l.judgeFacing(ctx, b.kept, opt.jobs()); err != nil {
 		return nil, err
 	}
@@ -136,10 +142,32 @@ func newLayout(ctx context.Context, h *hierarchy, sel *selection, rules *LayerRu
 	return l, nil
 }
 
+// smallTop is the number of flat items below which a top goes through all stages in one: looking at the clock would cost more than
+// they do.
+const smallTop = 1 << 12
+
+// stage tells that a stage of a top begins.
+func (b *builder) stage(top int, name string) {
+	if f := b.l.flat; f.items[f.h.tops[top]] < smallTop {
+		name = stagePairs
+	}
+	b.opt.stage(name)
+}
+
+// arrays gives the builder's two arrays of items: the one that holds the sorted items of the window at hand, and the other.
+func (b *builder) arrays() (busy, idle []item) {
+	busy, idle = b.items.Data, b.scratch.Data
+	if len(b.sorted) > 0 && len(idle) > 0 && &b.sorted[0] == &idle[0] {
+		return idle, busy
+	}
+	return busy, idle
+}
+
 func (b *builder) free() {
 	b.items.Free()
 	b.scratch.Free()
 	b.bands.Free()
+	b.room.free()
 	for i := range b.kept {
 		b.kept[i].free()
 	}
@@ -148,6 +176,7 @@ func (b *builder) free() {
 // free gives back what a layout holds.
 func (l *layout) free() {
 	l.nodeOf.Free()
+	l.areas.Free()
 	l.tags.Free()
 	l.box.Free()
 	if l.near != nil {
@@ -195,12 +224,12 @@ func (b *builder) top(top int, sets union, shapes uint32) (uint32, error) {
 		if err := b.prepare(top, win); err != nil {
 			return 0, err
 		}
-		b.opt.stage(stagePairs)
+		b.stage(top, stagePairs)
 		if err := b.search(sets, win); err != nil {
 			return 0, err
 		}
 	}
-	b.opt.stage(stageShapes)
+	b.stage(top, stageShapes)
 	from, to := uint32(f.first[top]), uint32(f.first[top]+f.all[f.h.tops[top]])
 	sets.point(from, to)
 	b.joined = true
@@ -218,7 +247,7 @@ func (b *builder) top(top int, sets union, shapes uint32) (uint32, error) {
 		shapes = b.numberShapes(sets, shapes)
 	}
 	sets.settle(from, to)
-	b.l.area = append(b.l.area, make([]float64, shapes-begin)...)
+	b.l.area = b.l.area[:shapes]
 	for _, win := range windows {
 		if len(windows) > 1 {
 			win.box = win.core
@@ -274,7 +303,7 @@ func (b Box) shift(x, y int64) Box { return Box{b.X1 + x, b.Y1 + y, b.X2 + x, b.
 
 // prepare flattens a window of a top and sorts its items.
 func (b *builder) prepare(top int, win window) error {
-	b.opt.stage(stageFlatten)
+	b.stage(top, stageFlatten)
 	f := b.l.flat
 	nItem, nBand, err := f.flatten(b.ctx, top, win, b.items.Data, b.bands.Data, b.jobs)
 	if err != nil {
@@ -284,7 +313,7 @@ func (b *builder) prepare(top int, win window) error {
 	b.polygons = slices.Clip(f.polygons)
 	b.polygons = w.oddFigures(&b.l.odd[top], placement{0, -win.originX, -win.originY}, 0, b.polygons)
 	b.polygons = b.l.look.emit(top, f.box[f.h.tops[top]].join(b.l.odd[top].box), &w, b.polygons)
-	b.opt.stage(stageSort)
+	b.stage(top, stageSort)
 	sets := union(b.l.nodeOf.Data)
 	if b.joined {
 		sets = nil
@@ -326,7 +355,7 @@ next:
 func (b *builder) search(sets union, win window) error {
 	scale := b.l.flat.forms.scale
 	s := &sweep{items: b.sorted, bands: b.bands.Data, polygons: b.polygons, spacing: b.l.rules.Reach() * scale,
-		anyMask: b.l.rules.AnyMask * scale, figures: uint32(b.l.flat.total), tags: b.l.keptTags(), progress: b.opt.counted(int64(len(b.sorted)), "figures")}
+		anyMask: b.l.rules.AnyMask * scale, figures: uint32(b.l.flat.total), tags: b.l.keptTags(), room: &b.room, progress: b.opt.counted(int64(len(b.sorted)), "figures")}
 	sinks, err := s.run(b.ctx, sets, b.jobs, &b.limit)
 	if err == errTooManyPairs {
 		return &LimitError{Msg: fmt.Sprintf("layer %s: so many figures are nearer to each other than %d database units that their pairs do not fit the memory that this run may use",
@@ -338,9 +367,7 @@ func (b *builder) search(sets union, win window) error {
 	for i := range sinks {
 		b.l.hits = append(b.l.hits, sinks[i].hits...)
 		b.done.add(&sinks[i].done)
-		if len(sinks[i].near.blocks) > 0 {
-			b.sinks = append(b.sinks, pairSink{near: sinks[i].near})
-		}
+		b.near = append(b.near, sinks[i].near.blocks...)
 	}
 	return nil
 }
@@ -422,7 +449,8 @@ func (b *builder) measure(begin, end uint32) {
 			n[k] = alone
 		}
 	}
-	group := make([]geom.Rect32, at)
+	_, idle := b.arrays()
+	group := idle[:at]
 	for i := range b.sorted {
 		it := &b.sorted[i]
 		o, ok := b.ordinal(it)
@@ -430,7 +458,7 @@ func (b *builder) measure(begin, end uint32) {
 			continue
 		}
 		if k := node[o] - begin; n[k] != alone {
-			group[n[k]] = geom.Rect32{X1: it.X1, Y1: it.Y1, X2: it.X2, Y2: it.Y2}
+			group[n[k]] = *it
 			n[k]++
 		} else if len(b.slanted) == 0 || b.slanted[node[o]] == nil {
 			b.l.area[node[o]] += float64(int64(it.X2)-int64(it.X1)) * float64(int64(it.Y2)-int64(it.Y1))
@@ -439,7 +467,7 @@ func (b *builder) measure(begin, end uint32) {
 	from := uint32(0)
 	for k := range n {
 		if n[k] != alone {
-			b.l.area[begin+uint32(k)] += float64(b.areas.UnionArea32(group[from:n[k]]))
+			b.l.area[begin+uint32(k)] += float64(b.merged.area(group[from:n[k]]))
 			from = n[k]
 		}
 	}

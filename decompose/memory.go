@@ -264,11 +264,8 @@ func (c *comparison) free() {
 func (c *comparison) room() (items, scratch []item) {
 	onA, _ := c.e.size(int(A), c.top)
 	onB, _ := c.e.size(int(B), c.top)
-	busy, idle := c.b.items.Data, c.b.scratch.Data
+	busy, idle := c.b.arrays()
 	kept := len(c.b.sorted)
-	if kept > 0 && len(idle) > 0 && &c.b.sorted[0] == &idle[0] {
-		busy, idle = idle, busy
-	}
 	if onA+onB <= len(idle) && max(onA, onB) <= len(busy)-kept {
 		return idle[:onA+onB], busy[kept:]
 	}

@@ -28,30 +28,28 @@ func (n *neighbours) free() {
 }
 
 // gather turns near pairs of flat figures into those of nodes: it maps them, sorts them by counting, and drops what is double or
-// within one node, or between two pieces of one stitch that overlap. The blocks of the sinks are overwritten on the way.
-func gather(sinks []pairSink, nodeOf []uint32, nodes int, given *givenStitches) *neighbours {
+// within one node, or between two pieces of one stitch that overlap. The blocks are overwritten on the way.
+func gather(blocks [][]uint64, nodeOf []uint32, nodes int, given *givenStitches) *neighbours {
 	n := &neighbours{start: arena.New[uint32](nodes + 1), end: arena.New[uint32](nodes + 1)}
 	start, end := n.start.Data, n.end.Data
 	total := 0
-	for s := range sinks {
-		for b, block := range sinks[s].near.blocks {
-			kept := block[:0]
-			for _, p := range block {
-				u, v, tooNear := unpackPair(p)
-				u, v = nodeOf[u], nodeOf[v]
-				if u == v || given != nil && given.meet[[2]uint32{min(u, v), max(u, v)}] {
-					continue
-				}
-				q := packPair(u, v, tooNear)
-				if len(kept) > 0 && kept[len(kept)-1] == q {
-					continue
-				}
-				kept = append(kept, q)
-				start[q>>pairShift]++
+	for b, block := range blocks {
+		kept := block[:0]
+		for _, p := range block {
+			u, v, tooNear := unpackPair(p)
+			u, v = nodeOf[u], nodeOf[v]
+			if u == v || given != nil && given.meet[[2]uint32{min(u, v), max(u, v)}] {
+				continue
 			}
-			sinks[s].near.blocks[b] = kept
-			total += len(kept)
+			q := packPair(u, v, tooNear)
+			if len(kept) > 0 && kept[len(kept)-1] == q {
+				continue
+			}
+			kept = append(kept, q)
+			start[q>>pairShift]++
 		}
+		blocks[b] = kept
+		total += len(kept)
 	}
 	next := uint32(0)
 	for i := range start {
@@ -60,16 +58,12 @@ func gather(sinks []pairSink, nodeOf []uint32, nodes int, given *givenStitches) 
 	copy(end, start)
 	n.entries = arena.New[uint32](total)
 	entries := n.entries.Data
-	for s := range sinks {
-		for b, block := range sinks[s].near.blocks {
-			for _, q := range block {
-				u := q >> pairShift
-				entries[end[u]] = uint32(q)
-				end[u]++
-			}
-			sinks[s].near.blocks[b] = nil
+	for _, block := range blocks {
+		for _, q := range block {
+			u := q >> pairShift
+			entries[end[u]] = uint32(q)
+			end[u]++
 		}
-		sinks[s].near.blocks = nil
 	}
 	for i := range nodes {
 		own := entries[start[i]:end[i]]

@@ -43,6 +43,7 @@ type sweep struct {
 	low, high   int64  // least X1, greatest X2
 	keepTouched bool
 	tags        []uint8           // by ordinal: only figures with equal tags hide each other; nil: all are equal
+	room        *pairRoom         // for near pairs; nil: the heap
 	progress    func(items int64) // told of each stretch that is done; nil: nobody is
 }
 
@@ -59,7 +60,7 @@ func (s *sweep) run(ctx context.Context, sets union, jobs int, limit *atomic.Int
 		return nil, nil
 	}
 	if n <= fewItems {
-		sink := pairSink{sets: sets, limit: limit}
+		sink := pairSink{sets: sets, limit: limit, near: pairs{room: s.room}}
 		w := searcher{s: s, sink: &sink}
 		w.few()
 		sink.near.flush(limit)
@@ -84,7 +85,7 @@ func (s *sweep) run(ctx context.Context, sets union, jobs int, limit *atomic.Int
 	g, within := errgroup.WithContext(ctx)
 	g.SetLimit(jobs)
 	s.plan(func(st stretch) bool {
-		sink := &pairSink{sets: sets, limit: limit}
+		sink := &pairSink{sets: sets, limit: limit, near: pairs{room: s.room}}
 		sinks = append(sinks, sink)
 		g.Go(func() error {
 			w := <-idle

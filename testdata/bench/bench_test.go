@@ -25,16 +25,16 @@ func TestExponent(t *testing.T) {
 }
 
 func TestReadHeadStopsEarly(t *testing.T) {
-	head := `{"input": {"figures": 9}, "run": {"jobs": 2, "stages": [{"name": "read", "seconds": 0.5}]},
+	head := `{"input": {"figures": 9}, "run": {"jobs": 2, "stages": [{"name": "read", "seconds": 0.5, "peak_bytes": 4096, "work": []}], "estimated_bytes": 8192},
 		"layers": [{"name": "shapes", "figures": 7, "shapes": 5, "near_pairs": 3, "unresolved": [`
-	stages, c, err := readHead(strings.NewReader(head))
+	a, err := readHead(strings.NewReader(head))
 	if err != nil {
 		t.Fatal(err)
 	}
-	if len(stages) != 1 || stages[0] != (stage{"read", 0.5}) || c != (reportCounts{7, 5, 3}) {
-		t.Errorf("read %v, %+v", stages, c)
+	if len(a.stages) != 1 || a.stages[0] != (stage{"read", 0.5, 4096}) || a.estimate != 8192 || a.counts != (reportCounts{7, 5, 3}) {
+		t.Errorf("read %+v", a)
 	}
-	if _, _, err := readHead(strings.NewReader(`{"run": {}}`)); err == nil {
+	if _, err := readHead(strings.NewReader(`{"run": {}}`)); err == nil {
 		t.Errorf("a report without layers was read")
 	}
 }

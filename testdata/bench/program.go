@@ -44,13 +44,20 @@ type usage struct {
 type run struct {
 	seconds float64
 	usage
-	stages []stage
-	counts reportCounts
+	account
+}
+
+// account is what the head of a report tells.
+type account struct {
+	stages   []stage
+	estimate int64 // bytes that the program expected to need
+	counts   reportCounts
 }
 
 type stage struct {
 	Name    string
 	Seconds float64
+	Peak    int64 `json:"peak_bytes"` // by the end of the stage
 }
 
 // examine measures a subject.
@@ -141,9 +148,9 @@ func (p *program) fastest(runs int, s subject, jobs int, out string, more ...str
 
 // run runs the program once. Its status may be 1: something unresolved.
 func (p *program) run(s subject, jobs int, out string, more ...string) (run, error) {
-	account := filepath.Join(p.dir, "report.json")
-	defer os.Remove(account)
-	args := append([]string{"decompose", s.in, "--deck", s.deck, "--output", out, "--report", account, "--jobs", strconv.Itoa(jobs), "--quiet", "--force"}, more...)
+	report := filepath.Join(p.dir, "report.json")
+	defer os.Remove(report)
+	args := append([]string{"decompose", s.in, "--deck", s.deck, "--output", out, "--report", report, "--jobs", strconv.Itoa(jobs), "--quiet", "--force"}, more...)
 	c := exec.Command(p.path, args...)
 	var said bytes.Buffer
 	c.Stderr = &said
@@ -155,12 +162,12 @@ func (p *program) run(s subject, jobs int, out string, more ...string) (run, err
 		return r, fmt.Errorf("%v: %s", err, strings.TrimSpace(said.String()))
 	}
 	r.usage = usageOf(c.ProcessState)
-	f, err := os.Open(account)
+	f, err := os.Open(report)
 	if err != nil {
 		return r, err
 	}
 	defer f.Close()
-	r.stages, r.counts, err = readHead(f)
+	r.account, err = readHead(f)
 	return r, err
 }
 
@@ -168,9 +175,13 @@ func (p *program) run(s subject, jobs int, out string, more ...string) (run, err
 type reportCounts struct{ figures, shapes, nearPairs int64 }
 
 // readHead reads the stages and the first layer's counts of a report, and no further.
-func readHead(r io.Reader) (stages []stage, c reportCounts, err error) {
+func readHead(r io.Reader) (a account, err error) {
 	d := json.NewDecoder(r)
-	var body struct{ Stages []stage }
+	var body struct {
+		Stages   []stage
+		Estimate int64 `json:"estimated_bytes"`
+	}
+	c := &a.counts
 	var layer bool
 	err = members(d, map[string]func() error{
 		"run": func() error { return d.Decode(&body) },
@@ -192,7 +203,8 @@ func readHead(r io.Reader) (stages []stage, c reportCounts, err error) {
 	if err != nil {
 		err = fmt.Errorf("the report: %w", err)
 	}
-	return body.Stages, c, err
+	a.stages, a.estimate = body.Stages, body.Estimate
+	return a, err
 }
 
 // members goes through the object that is next, calls for each wanted key what reads its value, and stops when all were seen

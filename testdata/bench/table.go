@@ -31,8 +31,8 @@ func printStages(w io.Writer, f *finding, jobs int) {
 	line("the rest", f.one.seconds-sum, f.many.seconds-sumMany)
 	line("process", f.one.seconds, f.many.seconds)
 	print(w, table)
-	fmt.Fprintf(w, "  peak %s (1 worker %s), %.0f B a figure; %s page faults, %s of them from disk\n",
-		size(f.many.peak), size(f.one.peak), float64(f.many.peak)/n, count(f.many.faults), count(f.many.majors))
+	fmt.Fprintf(w, "  peak %s (1 worker %s; expected %s), %.0f B a figure; %s page faults, %s of them from disk\n",
+		size(f.many.peak), size(f.one.peak), size(f.many.estimate), float64(f.many.peak)/n, count(f.many.faults), count(f.many.majors))
 	fmt.Fprintf(w, "  sha256sum %s, cp and sync %s\n", seconds(f.sha256sum), seconds(f.copying))
 	if f.again.seconds > 0 {
 		fmt.Fprintf(w, "  with its output as baseline %s, %s times\n", seconds(f.again.seconds), ratio(f.again.seconds, f.many.seconds))
