@@ -87,6 +87,9 @@ func (c *collector) take() {
 	st := &c.s.layer
 	f := c.s.file()
 	markers := c.markers()
+	if len(st.masks) > 0 { // markers may be as many as figures, and nearly all they touch becomes an anchor
+		c.o.Anchors = slices.Grow(c.o.Anchors, min(c.v.HitCount(), c.v.Nodes()))
+	}
 	c.v.Hits(func(probe, node uint32) {
 		if probe >= markers {
 			st.marked[probe-markers] = true

@@ -364,6 +364,11 @@ func (b *builder) search(sets union, win window) error {
 	if err != nil {
 		return err
 	}
+	more := 0
+	for i := range sinks {
+		more += len(sinks[i].hits)
+	}
+	b.l.hits = slices.Grow(b.l.hits, more)
 	for i := range sinks {
 		b.l.hits = append(b.l.hits, sinks[i].hits...)
 		b.done.add(&sinks[i].done)

@@ -142,6 +142,9 @@ func (v *View) Hits(fn func(probe, node uint32)) {
 	}
 }
 
+// HitCount is how often Hits calls its function.
+func (v *View) HitCount() int { return len(v.layout.hits) }
+
 // MarkerMasks gives the mask of each marker.
 func (v *View) MarkerMasks() []Mask {
 	m := v.layout.look.markers

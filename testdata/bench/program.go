@@ -6,6 +6,7 @@ import (
 	"errors"
 	"fmt"
 	"io"
+	"math"
 	"os"
 	"os/exec"
 	"path/filepath"
@@ -43,6 +44,7 @@ type usage struct {
 // run is one run of the program.
 type run struct {
 	seconds float64
+	cpu     float64 // seconds of all processors, least of the runs: what other work on the machine changes least
 	usage
 	account
 }
@@ -131,18 +133,21 @@ func (f *finding) settle() error {
 	return nil
 }
 
-// fastest gives the fastest of some runs.
+// fastest gives the fastest of some runs, with the least processor time of any.
 func (p *program) fastest(runs int, s subject, jobs int, out string, more ...string) (run, error) {
 	var fastest run
+	least := math.Inf(1)
 	for range runs {
 		r, err := p.run(s, jobs, out, more...)
 		if err != nil {
 			return r, err
 		}
+		least = min(least, r.cpu)
 		if fastest.seconds == 0 || r.seconds < fastest.seconds {
 			fastest = r
 		}
 	}
+	fastest.cpu = least
 	return fastest, nil
 }
 
@@ -162,6 +167,7 @@ func (p *program) run(s subject, jobs int, out string, more ...string) (run, err
 		return r, fmt.Errorf("%v: %s", err, strings.TrimSpace(said.String()))
 	}
 	r.usage = usageOf(c.ProcessState)
+	r.cpu = (c.ProcessState.UserTime() + c.ProcessState.SystemTime()).Seconds()
 	f, err := os.Open(report)
 	if err != nil {
 		return r, err

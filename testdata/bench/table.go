@@ -44,22 +44,22 @@ func printStages(w io.Writer, f *finding, jobs int) {
 
 // printOverview prints a line for each subject.
 func printOverview(w io.Writer, all []finding, jobs int) {
-	plain := map[int64]float64{} // cost of a figure of the flat layout, by the size that was asked for
+	plain := map[int64]float64{} // processor time of a figure of the flat layout, by the size that was asked for
 	for i := range all {
 		if f := &all[i]; f.name == "flat" {
-			plain[magnitude(f.counts.Figures)] = f.many.seconds / float64(f.counts.Figures)
+			plain[magnitude(f.counts.Figures)] = f.many.cpu / float64(f.counts.Figures)
 		}
 	}
-	table := [][]string{{"layout", "figures", "in", "1 worker", fmt.Sprintf("%d workers", jobs), "speed-up", "ns/figure", "of flat", "peak", "B/figure", "of sha256sum", "of cp, sync"}}
+	table := [][]string{{"layout", "figures", "in", "1 worker", fmt.Sprintf("%d workers", jobs), "speed-up", "CPU ns/figure", "of flat", "peak", "B/figure", "of sha256sum", "of cp, sync"}}
 	for i := range all {
 		f := &all[i]
 		n := float64(f.counts.Figures)
 		of := "-"
 		if p := plain[magnitude(f.counts.Figures)]; p > 0 {
-			of = ratio(f.many.seconds/n, p)
+			of = ratio(f.many.cpu/n, p)
 		}
 		table = append(table, []string{f.name, count(f.counts.Figures), size(f.counts.Bytes), seconds(f.one.seconds), seconds(f.many.seconds),
-			ratio(f.one.seconds, f.many.seconds), fmt.Sprintf("%.0f", f.many.seconds/n*1e9), of, size(f.many.peak),
+			ratio(f.one.seconds, f.many.seconds), fmt.Sprintf("%.0f", f.many.cpu/n*1e9), of, size(f.many.peak),
 			fmt.Sprintf("%.0f", float64(f.many.peak)/n), ratio(f.many.seconds, f.sha256sum), ratio(f.many.seconds, f.copying)})
 	}
 	fmt.Fprintln(w)
@@ -77,7 +77,7 @@ func magnitude(n int64) int64 {
 
 // printGrowth prints how cost grows with the figures, for layouts that were measured in several sizes.
 func printGrowth(w io.Writer, all []finding) {
-	table := [][]string{{"growth as figures to the power of", "time", "peak", "page faults"}}
+	table := [][]string{{"growth as figures to the power of", "CPU time", "peak", "page faults"}}
 	for from := 0; from < len(all); {
 		to := from + 1
 		for to < len(all) && all[to].name == all[from].name {
@@ -88,7 +88,7 @@ func printGrowth(w io.Writer, all []finding) {
 			for i := range all[from:to] {
 				f := &all[from+i]
 				n = append(n, float64(f.counts.Figures))
-				time = append(time, f.many.seconds)
+				time = append(time, f.many.cpu)
 				peak = append(peak, float64(f.many.peak))
 				faults = append(faults, float64(f.many.faults))
 			}
