@@ -3,6 +3,7 @@ package decompose
 import (
 	"context"
 	"encoding/binary"
+	"fmt"
 	"hash/maphash"
 	"slices"
 
@@ -91,6 +92,25 @@ func newSolver(l *layout, a *assignment, o *Orders) *solver {
 	return s
 }
 
+// bytesPerOddPair is what a near pair of a broken group takes while the group is solved and explained, as measured where all is near to
+// all: with its edges in the problem and its copies, and with half of such pairs in the report.
+const bytesPerOddPair = 500
+
+// checkMemory refuses broken groups that will not fit into the memory that the run may use.
+func (s *solver) checkMemory() error {
+	pairs := int64(0)
+	for i := range s.groups {
+		for _, u := range s.groups[i].nodes {
+			pairs += int64(len(s.l.near.of(u)))
+		}
+	}
+	if need := bytesAlways + s.opt.held + pairs*bytesPerOddPair; s.opt.Memory > 0 && need > s.opt.Memory {
+		return &LimitError{Msg: fmt.Sprintf("layer %s: %d near pairs in odd components will need about %s of memory, more than the %s that this run may use",
+			s.l.rules.Name, pairs, sizeText(need), sizeText(s.opt.Memory)), Remedy: "check the spacing, or allow more with --memory"}
+	}
+	return nil
+}
+
 // of gives the index of the broken group of a node; false where its group is not broken.
 func (s *solver) of(node uint32) (int, bool) {
 	g := s.a.group.Data[node]
@@ -125,6 +145,9 @@ func (s *solver) each(ctx context.Context, jobs int, work func(b *brokenGroup)) 
 func (s *solver) solve(ctx context.Context, jobs int) error {
 	if len(s.groups) == 0 {
 		return nil
+	}
+	if err := s.checkMemory(); err != nil {
+		return err
 	}
 	fixed, wishes := s.byNode()
 	waived := map[[2]uint32]bool{}
