@@ -143,7 +143,14 @@ func (c *cuts) figure(l *layout, s *cutShape, rects []geom.Rect, at placement, m
 	back := at.inverse()
 	form := cutForm{}
 	layers := [2]gds.LayerType{l.rules.MaskA, l.rules.MaskB}
-	for m := range on {
+	// Where one mask has the whole figure and the other a part, an overlap at its end, the part comes first: the whole alone in the place of
+	// the figure would read as a figure that is not cut, and the part as one too many.
+	order := [2]int{0, 1}
+	var areas geom.AreaScratch
+	if areas.UnionArea(on[0]) == areas.UnionArea(rects) {
+		order = [2]int{1, 0}
+	}
+	for _, m := range order {
 		local := make([]geom.Rect, len(on[m]))
 		for i, r := range on[m] {
 			b := back.applyBox(Box(r))
