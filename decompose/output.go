@@ -206,19 +206,19 @@ func (p *outputPlan) pieces(s, way int32, actions []uint8) map[uint32][]gds.Piec
 		return nil
 	}
 	out := map[uint32][]gds.Piece{}
+	own := make([][]uint32, len(p.v.layers)) // figures of the structure in the order in which they are numbered, by deck layer
 	for ; len(cut) > 0; cut = cut[3:] {
 		l := p.v.layers[cut[0]]
-		l.flat.ownFigures(s, func(i, figure uint32) {
-			if i != cut[1] {
-				return
-			}
-			k := figure - p.v.h.lib.Structures[s].FirstFigure
-			out[k] = l.cuts.forms[cut[2]].pieces
-			actions[k] = actionReplace
-			if l.rules.KeepDrawn && l.flat.sel.tag[p.v.h.lib.Figures[figure].Class] == drawn {
-				actions[k] = actionKeepAndReplace
-			}
-		})
+		if own[cut[0]] == nil {
+			l.flat.ownFigures(s, func(_, figure uint32) { own[cut[0]] = append(own[cut[0]], figure) })
+		}
+		figure := own[cut[0]][cut[1]]
+		k := figure - p.v.h.lib.Structures[s].FirstFigure
+		out[k] = l.cuts.forms[cut[2]].pieces
+		actions[k] = actionReplace
+		if l.rules.KeepDrawn && l.flat.sel.tag[p.v.h.lib.Figures[figure].Class] == drawn {
+			actions[k] = actionKeepAndReplace
+		}
 	}
 	return out
 }
