@@ -141,26 +141,15 @@ func (c *cuts) figure(l *layout, s *cutShape, rects []geom.Rect, at placement, m
 		}
 	}
 	back := at.inverse()
-	form := cutForm{}
-	layers := [2]gds.LayerType{l.rules.MaskA, l.rules.MaskB}
-	// Where one mask has the whole figure and the other a part, an overlap at its end, the part comes first: the whole alone in the place of
-	// the figure would read as a figure that is not cut, and the part as one too many.
-	order := [2]int{0, 1}
-	var areas geom.AreaScratch
-	if areas.UnionArea(on[0]) == areas.UnionArea(rects) {
-		order = [2]int{1, 0}
-	}
-	for _, m := range order {
-		local := make([]geom.Rect, len(on[m]))
-		for i, r := range on[m] {
+	var local [2][]geom.Rect
+	for m := range on {
+		for _, r := range on[m] {
 			b := back.applyBox(Box(r))
 			k := l.flat.forms.scale
-			local[i] = geom.Rect{X1: b.X1 / k, Y1: b.Y1 / k, X2: b.X2 / k, Y2: b.Y2 / k}
-		}
-		for _, points := range outlinesOf(cutter.Disjoint(nil, local)) {
-			form.pieces = append(form.pieces, gds.Piece{Layer: layers[m], Points: points})
+			local[m] = append(local[m], geom.Rect{X1: b.X1 / k, Y1: b.Y1 / k, X2: b.X2 / k, Y2: b.Y2 / k})
 		}
 	}
+	form := cutForm{pieces: readable(local, [2]gds.LayerType{l.rules.MaskA, l.rules.MaskB})}
 	key := fmt.Sprint(form.pieces)
 	if i, ok := c.byKey[key]; ok {
 		return i
