@@ -1,7 +1,6 @@
 package cli
 
 import (
-	"fmt"
 	"io"
 	"slices"
 	"sync"
@@ -10,33 +9,20 @@ import (
 	"maskpair/cli/report"
 )
 
-// This file times the stages of a run and, on a terminal, says which one is going on, how far it is, and how long it will take.
+// This file times the stages of a run, and passes on how far they are.
 
 // Clock notes the stages of a run. Its methods may be called from several goroutines; Stage begins a stage and ends the one
 // before.
 type Clock struct {
 	mu     sync.Mutex
-	screen io.Writer // nil: nothing is shown
+	gauge  *gauge // nil: nothing is shown
 	now    func() time.Time
 	begun  time.Time // the run
 	stage  time.Time // the stage
 	name   string
 	stages []report.Stage
 	memory func() int64 // most memory that the process had in use so far; nil: not known
-	shown  time.Time    // last time that the line was written
-	line   bool         // there is a line to clear
-	head   string       // a line that stands above it; written once
 }
-
-const (
-	quietTime  = 400 * time.Millisecond // a run that is shorter shows nothing
-	redrawTime = 100 * time.Millisecond
-	// Before so much of a stage is done, or so much time has gone, nobody can say how long it will take.
-	leastShare = 0.02
-	leastTime  = 800 * time.Millisecond
-	// lineWidth is how long the line may be, so that it does not wrap on any usual terminal.
-	lineWidth = 79
-)
 
 // newClock starts the clock of a run. It shows the stages on w if that is a terminal.
 func newClock(w io.Writer, quiet bool) *Clock {
@@ -44,7 +30,7 @@ func newClock(w io.Writer, quiet bool) *Clock {
 	c.begun = c.now()
 	c.stage = c.begun
 	if !quiet && isTerminal(w) {
-		c.screen = w
+		c.gauge = &gauge{w: w, from: c.begun.Add(quietTime), pause: redrawTime}
 	}
 	return c
 }
@@ -53,7 +39,9 @@ func newClock(w io.Writer, quiet bool) *Clock {
 func (c *Clock) Head(line string) {
 	c.mu.Lock()
 	defer c.mu.Unlock()
-	c.head = program + ": " + line + "\n"
+	if c.gauge != nil {
+		c.gauge.head = program + ": " + line + "\n"
+	}
 }
 
 // Stage begins a stage; name says what is done: "read".
@@ -65,48 +53,27 @@ func (c *Clock) Stage(name string) {
 	}
 	c.end()
 	c.name, c.stage = name, c.now()
-	c.draw("")
+	if c.gauge != nil {
+		c.gauge.stage(name)
+	}
 }
 
 // Progress tells how many bytes of the stage are done; of is the whole, 0 or less where that is not known.
 func (c *Clock) Progress(done, of int64) {
-	c.tell(done, of, report.Bytes)
+	c.tell(done, of, "")
 }
 
 // Count tells how many things of the stage are done; of is the whole, 0 or less where that is not known.
 func (c *Clock) Count(done, of int64, things string) {
-	c.tell(done, of, func(n int64) string { return report.Count(n) + " " + things })
+	c.tell(done, of, things)
 }
 
-func (c *Clock) tell(done, of int64, word func(int64) string) {
+func (c *Clock) tell(done, of int64, things string) {
 	c.mu.Lock()
 	defer c.mu.Unlock()
-	if c.screen == nil {
-		return
+	if c.gauge != nil {
+		c.gauge.show(done, of, things)
 	}
-	if of <= 0 {
-		c.draw(" " + word(done))
-		return
-	}
-	share := min(1, float64(done)/float64(of))
-	c.draw(fmt.Sprintf(" %.0f %% of %s%s", 100*share, word(of), left(c.now().Sub(c.stage), share)))
-}
-
-// left words how long a stage will go on, if it goes on as it did.
-func left(gone time.Duration, share float64) string {
-	if share < leastShare || share >= 1 || gone < leastTime {
-		return ""
-	}
-	rest := time.Duration(float64(gone) * (1 - share) / share)
-	switch {
-	case rest < time.Second:
-		return ", a moment left"
-	case rest < 100*time.Second:
-		return fmt.Sprintf(", %d s left", (rest+time.Second-1)/time.Second)
-	case rest < 100*time.Minute:
-		return fmt.Sprintf(", %d min left", (rest+time.Minute-1)/time.Minute)
-	}
-	return fmt.Sprintf(", %d h left", (rest+time.Hour-1)/time.Hour)
 }
 
 // end notes the time of the stage that is going on; a stage may come again.
@@ -145,30 +112,14 @@ func (c *Clock) Work(stage, things string, n int64) {
 	s.Work[k].Count += n
 }
 
-// draw writes the line again, not too often.
-func (c *Clock) draw(rest string) {
-	if c.screen == nil {
-		return
-	}
-	now := c.now()
-	if now.Sub(c.begun) < quietTime || now.Sub(c.shown) < redrawTime {
-		return
-	}
-	c.shown, c.line = now, true
-	text := program + ": " + c.name + rest
-	fmt.Fprintf(c.screen, "\r\x1b[K%s%s", c.head, text[:min(len(text), lineWidth)])
-	c.head = ""
-}
-
 // stop ends the last stage and clears the line. It gives the stages and the seconds of the whole run.
 func (c *Clock) stop() ([]report.Stage, float64) {
 	c.mu.Lock()
 	defer c.mu.Unlock()
 	c.end()
-	if c.line {
-		fmt.Fprint(c.screen, "\r\x1b[K")
-		c.line = false
+	if c.gauge != nil {
+		c.gauge.clear()
+		c.gauge = nil
 	}
-	c.screen = nil
 	return c.stages, c.now().Sub(c.begun).Seconds()
 }

@@ -6,6 +6,7 @@ import (
 	"strings"
 	"testing"
 	"time"
+	"unicode/utf8"
 
 	"github.com/google/go-cmp/cmp"
 
@@ -13,54 +14,26 @@ import (
 	"maskpair/decompose"
 )
 
-// handClock is a clock that goes when told, and writes into a buffer.
-func handClock() (c *Clock, screen *bytes.Buffer, wait func(time.Duration)) {
+// handClock is a clock that goes when told.
+func handClock() (c *Clock, wait func(time.Duration)) {
 	at := time.Date(2020, 1, 1, 0, 0, 0, 0, time.UTC)
-	screen = &bytes.Buffer{}
-	c = &Clock{screen: screen, now: func() time.Time { return at }, begun: at, stage: at}
-	return c, screen, func(d time.Duration) { at = at.Add(d) }
+	c = &Clock{now: func() time.Time { return at }, begun: at, stage: at}
+	return c, func(d time.Duration) { at = at.Add(d) }
 }
 
-// last gives what the screen shows: what follows the last return to its left edge.
-func last(screen *bytes.Buffer) string {
-	text := screen.String()
-	return strings.TrimPrefix(text[strings.LastIndexByte(text, '\r')+1:], "\x1b[K")
+// wordsOf gives what a screen was told to show, without the codes that move and clear.
+func wordsOf(screen *bytes.Buffer) string {
+	return strings.NewReplacer("\r", "\n", "\x1b[2K", "", "\x1b[K", "", "\x1b[0K", "").Replace(screen.String())
 }
 
-func TestClockShowsWhereItIs(t *testing.T) {
-	c, screen, wait := handClock()
+func TestClockNotesStages(t *testing.T) {
+	c, wait := handClock()
 	c.Stage("read")
-	wait(200 * time.Millisecond)
-	c.Progress(1<<20, 4<<20)
-	if screen.Len() > 0 {
-		t.Errorf("after 0.2 s the screen has %q", screen)
-	}
-	wait(800 * time.Millisecond)
-	c.Progress(1<<20, 4<<20)
-	if got, want := last(screen), "maskpair: read 25 % of 4 MiB, 3 s left"; got != want {
-		t.Errorf("%q, want %q", got, want)
-	}
-	before := screen.Len()
-	wait(50 * time.Millisecond)
-	c.Progress(2<<20, 4<<20)
-	if screen.Len() != before {
-		t.Error("the line is written again after 0.05 s")
-	}
-	wait(time.Second)
+	wait(2 * time.Second)
 	c.Stage("pairs")
-	wait(time.Second)
-	c.Count(1000, 1000000, "figures") // a thousandth: too early to say
-	if got, want := last(screen), "maskpair: pairs 0 % of 1,000,000 figures"; got != want {
-		t.Errorf("%q, want %q", got, want)
-	}
-	wait(time.Second)
-	c.Count(1234, 0, "figures")
-	if got, want := last(screen), "maskpair: pairs 1,234 figures"; got != want {
-		t.Errorf("%q, want %q", got, want)
-	}
-	wait(time.Second)
+	wait(3 * time.Second)
 	c.Stage("read")
-	wait(time.Second)
+	wait(1500 * time.Millisecond)
 	peak := int64(5 << 20)
 	c.memory = func() int64 { return peak }
 	c.Work("pairs", "compared", 3)
@@ -68,60 +41,94 @@ func TestClockShowsWhereItIs(t *testing.T) {
 	c.Work("pairs", "near", 1)
 	c.Work("pairs", "compared", 4)
 	stages, seconds := c.stop()
-	if last(screen) != "" {
-		t.Errorf("at the end the screen shows %q", last(screen))
-	}
-	want := []report.Stage{{Name: "read", Seconds: 3.05, Peak: peak, Work: []report.Work{{Things: "bytes", Count: 10}}},
+	want := []report.Stage{{Name: "read", Seconds: 3.5, Peak: peak, Work: []report.Work{{Things: "bytes", Count: 10}}},
 		{Name: "pairs", Seconds: 3, Work: []report.Work{{Things: "compared", Count: 7}, {Things: "near", Count: 1}}}}
-	if diff := cmp.Diff(want, stages); diff != "" || seconds != 6.05 {
+	if diff := cmp.Diff(want, stages); diff != "" || seconds != 6.5 {
 		t.Errorf("%g s: %s", seconds, diff)
 	}
-	c.Progress(1, 2) // behind the end nothing is written
-	if last(screen) != "" {
-		t.Errorf("behind the end the screen shows %q", last(screen))
+}
+
+func TestClockShowsWhereItIs(t *testing.T) {
+	screen := &bytes.Buffer{}
+	c, _ := handClock()
+	c.gauge = &gauge{w: screen}
+	shows := func(want ...string) {
+		t.Helper()
+		got := wordsOf(screen)
+		for _, w := range want {
+			if !strings.Contains(got, w) {
+				t.Errorf("the screen shows %q, want %q in it", got, w)
+			}
+		}
+		screen.Reset()
+	}
+	c.Stage("read")
+	shows("maskpair: read")
+	c.Progress(1<<20, 4<<20)
+	shows("maskpair: read", "25%", "1.0/4.0 MiB")
+	c.Progress(3<<20, 4<<20)
+	shows("75%")
+	c.Stage("pairs")
+	c.Count(500, 1000, "figures")
+	shows("maskpair: pairs, figures", "50%", "500/1000")
+	c.Count(1000, 1000, "figures")
+	c.Count(200, 1000, "figures") // the next layer
+	shows("20%")
+	c.Count(1234, 0, "figures")
+	shows("maskpair: pairs, figures", "1234")
+	c.stop()
+	if !strings.HasSuffix(screen.String(), "\x1b[2K\r") {
+		t.Errorf("at the end the line is not cleared: %q", screen)
+	}
+	screen.Reset()
+	c.Progress(1, 2)
+	if screen.Len() > 0 {
+		t.Errorf("behind the end the screen shows %q", screen)
+	}
+}
+
+// A run that has just begun shows nothing.
+func TestClockIsQuietAtFirst(t *testing.T) {
+	screen := &bytes.Buffer{}
+	c, _ := handClock()
+	c.gauge = &gauge{w: screen, from: time.Now().Add(time.Hour), head: "head\n"}
+	c.Stage("read")
+	c.Progress(1, 2)
+	c.stop()
+	if screen.Len() > 0 {
+		t.Errorf("the screen shows %q", screen)
 	}
 }
 
 // What is decomposed stands once above the stages, and stays when the line below it is cleared.
 func TestClockHead(t *testing.T) {
-	c, screen, wait := handClock()
+	screen := &bytes.Buffer{}
+	c, _ := handClock()
+	c.gauge = &gauge{w: screen}
 	d, err := decompose.ParseDeck("deck.toml", []byte(testDeck))
 	if err != nil {
 		t.Fatal(err)
 	}
 	c.Head("chip.gds: " + layersOf(d))
-	c.Stage("read")
-	for range 3 {
-		wait(time.Second)
+	for _, stage := range []string{"read", "pairs", "solve"} {
+		c.Stage(stage)
 		c.Progress(0, 0)
 	}
 	c.stop()
-	text := strings.NewReplacer("\r", "", "\x1b[K", "").Replace(screen.String())
-	if want := "maskpair: chip.gds: metal1 (19/0)\nmaskpair: read"; !strings.HasPrefix(text, want) || strings.Count(text, "\n") != 1 {
+	if text, want := screen.String(), "maskpair: chip.gds: metal1 (19/0)\n"; !strings.HasPrefix(text, want) || strings.Count(text, "\n") != 1 {
 		t.Errorf("the screen shows %q, want %q first", text, want)
 	}
 }
 
 func TestClockLineDoesNotWrap(t *testing.T) {
-	c, screen, wait := handClock()
-	wait(time.Second)
+	screen := &bytes.Buffer{}
+	c, _ := handClock()
+	c.gauge = &gauge{w: screen}
 	c.Stage(strings.Repeat("long ", 40))
-	if n := len(last(screen)); n > 79 {
-		t.Errorf("%d characters", n)
-	}
-}
-
-func TestLeft(t *testing.T) {
-	for _, c := range []struct {
-		gone  time.Duration
-		share float64
-		want  string
-	}{
-		{time.Second, 0.01, ""}, {time.Second, 1, ""}, {100 * time.Millisecond, 0.5, ""}, {time.Second, 0.9, ", a moment left"},
-		{10 * time.Second, 0.5, ", 10 s left"}, {time.Minute, 0.1, ", 9 min left"}, {time.Hour, 0.1, ", 9 h left"}, {10 * time.Second, 0.3, ", 24 s left"},
-	} {
-		if got := left(c.gone, c.share); got != c.want {
-			t.Errorf("%v, %g: %q, want %q", c.gone, c.share, got, c.want)
+	c.Progress(900<<20, 1000<<20)
+	for line := range strings.Lines(wordsOf(screen)) {
+		if n := utf8.RuneCountInString(strings.TrimSpace(line)); n > 79 {
+			t.Errorf("%d characters: %q", n, line)
 		}
 	}
 }
@@ -134,7 +141,7 @@ func TestClockIsSilentElsewhere(t *testing.T) {
 	}
 	defer f.Close()
 	for _, c := range []*Clock{newClock(f, false), newClock(&bytes.Buffer{}, false)} {
-		if c.screen != nil {
+		if c.gauge != nil {
 			t.Error("a file or buffer is taken for a terminal")
 		}
 	}
