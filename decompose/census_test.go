@@ -1,15 +1,12 @@
 package decompose
 
 import (
-	"bytes"
 	"context"
 	"os"
 	"path/filepath"
 	"strconv"
 	"strings"
 	"testing"
-
-	"maskpair/gds"
 )
 
 // The counts are those of the independent checkers that cases.tsv names.
@@ -33,27 +30,7 @@ func TestCensusOfOpenLayouts(t *testing.T) {
 			t.Fatal(err)
 		}
 		cases++
-		stream := openLayout(t, f[0])
-		d, err := ParseDeck("deck.toml", []byte(oneLayer(layer, spacing)))
-		if err != nil {
-			t.Fatal(err)
-		}
-		want, err := d.Interest()
-		if err != nil {
-			t.Fatal(err)
-		}
-		lib, err := gds.Index(bytes.NewReader(stream), int64(len(stream)), want, nil)
-		if err != nil {
-			t.Fatal(err)
-		}
-		rules, err := d.Resolve(lib.DBU)
-		if err != nil {
-			t.Fatal(err)
-		}
-		run, err := New(lib, rules, Options{Jobs: 2})
-		if err != nil {
-			t.Fatal(err)
-		}
+		run := runOf(t, openLayout(t, f[0]), oneLayer(layer, spacing), Options{Jobs: 2})
 		for range 2 { // a run may count more than once
 			c, err := run.Census(context.Background(), 0)
 			if err != nil {
@@ -68,7 +45,6 @@ func TestCensusOfOpenLayouts(t *testing.T) {
 				t.Errorf("%s: largest component %d", strings.TrimSpace(line), c.Largest)
 			}
 		}
-		run.Close()
 	}
 	if cases < 10 {
 		t.Errorf("%d cases were read", cases)

@@ -51,28 +51,8 @@ func whole(x1, y1, x2, y2 int32) gds.Rect { return gds.Rect{X1: x1, Y1: y1, X2: 
 // layoutOf builds the layout of a deck's first layer.
 func layoutOf(tb testing.TB, stream []byte, deck string, opt Options) *layout {
 	tb.Helper()
-	d, err := ParseDeck("deck.toml", []byte(deck))
-	if err != nil {
-		tb.Fatal(err)
-	}
-	want, err := d.Interest()
-	if err != nil {
-		tb.Fatal(err)
-	}
-	lib, err := gds.Index(bytes.NewReader(stream), int64(len(stream)), want, nil)
-	if err != nil {
-		tb.Fatal(err)
-	}
-	rules, err := d.Resolve(lib.DBU)
-	if err != nil {
-		tb.Fatal(err)
-	}
-	run, err := New(lib, rules, opt)
-	if err != nil {
-		tb.Fatal(err)
-	}
-	tb.Cleanup(run.Close)
-	l, err := newLayout(context.Background(), run.h, run.classes.selectLayer(0), &rules.Layers[0], 0, nil, &run.opt)
+	run := runOf(tb, stream, deck, opt)
+	l, err := newLayout(context.Background(), run.h, run.classes.selectLayer(0), &run.rules.Layers[0], 0, nil, &run.opt)
 	if err != nil {
 		tb.Fatal(err)
 	}

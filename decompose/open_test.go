@@ -38,8 +38,8 @@ func oneLayer(layer int, spacing float64) string {
 		layer, layer, layer, spacing)
 }
 
-// decomposed runs the way once and gives the result and the output.
-func decomposed(tb testing.TB, stream []byte, deck string, opt Options) (*Result, []byte) {
+// runOf begins a run, which ends with the test.
+func runOf(tb testing.TB, stream []byte, deck string, opt Options) *Run {
 	tb.Helper()
 	d, err := ParseDeck("deck.toml", []byte(deck))
 	if err != nil {
@@ -61,7 +61,14 @@ func decomposed(tb testing.TB, stream []byte, deck string, opt Options) (*Result
 	if err != nil {
 		tb.Fatal(err)
 	}
-	defer run.Close()
+	tb.Cleanup(run.Close)
+	return run
+}
+
+// decomposed runs the way once and gives the result and the output.
+func decomposed(tb testing.TB, stream []byte, deck string, opt Options) (*Result, []byte) {
+	tb.Helper()
+	run := runOf(tb, stream, deck, opt)
 	result, err := run.Decompose(context.Background(), nil)
 	if err != nil {
 		tb.Fatal(err)
