@@ -2,7 +2,10 @@ package decompose
 
 import (
 	"cmp"
+	"context"
 	"slices"
+
+	"maskpair/gds/arena"
 )
 
 // This file orders the nodes of broken groups so that equal groups come out alike: by their boxes in the frame of the lowest cell that
@@ -15,7 +18,7 @@ type canon struct {
 }
 
 // arrange orders the nodes of all broken groups.
-func (s *solver) arrange() {
+func (s *solver) arrange(ctx context.Context, jobs int) error {
 	l := s.l
 	for i := range s.groups {
 		s.groups[i].first = ^uint32(0)
@@ -29,50 +32,100 @@ func (s *solver) arrange() {
 	boxes := l.boxes()
 	fr := newFrames(l.flat)
 	for i := range s.groups {
-		s.groups[i].arrange(l, fr, boxes)
+		b := &s.groups[i]
+		top := l.topOf(b.nodes[0])
+		if l.topOf(b.nodes[len(b.nodes)-1]) == top {
+			b.canon.frame = fr.of(top, b.first, b.last)
+		}
 	}
+	s.number = arena.Cut[uint32](&l.room, l.nodes)
+	return s.each(ctx, jobs, func(b *brokenGroup) {
+		s.within(func(room *arena.Slab) { b.arrange(room, boxes, l.flat.forms.scale) })
+		for k, u := range b.nodes {
+			s.number[u] = b.begin + uint32(k)
+		}
+	})
 }
 
 // manyNodes is the size from which a group is taken as it lies in its cell: large groups hardly recur in another orientation.
 const manyNodes = 4096
 
-func (b *brokenGroup) arrange(l *layout, fr *frames, boxes []Box) {
-	top := l.topOf(b.nodes[0])
-	if l.topOf(b.nodes[len(b.nodes)-1]) == top {
-		b.canon.frame = fr.of(top, b.first, b.last)
-	}
+// arrange orders the nodes of a group.
+func (b *brokenGroup) arrange(room *arena.Slab, boxes []Box, scale int64) {
 	home := b.canon.frame.at.inverse()
-	type entry struct {
-		box  Box
-		node uint32
-	}
-	var best []entry
-	list := make([]entry, len(b.nodes))
 	turns := uint8(8)
 	if len(b.nodes) > manyNodes {
 		turns = 1
 	}
+	// The least box of a list comes first in it: only the orientations in which that is least of all can win.
+	var able []arrangement
 	for turn := range turns {
-		p := placement{turn: orientation(turn)}.compose(home)
-		low := emptyBox
-		for k, u := range b.nodes {
-			list[k] = entry{p.applyBox(boxes[u]), u}
-			low = low.join(list[k].box)
+		a := arranged(b.nodes, boxes, placement{turn: orientation(turn)}.compose(home), scale)
+		if len(able) > 0 {
+			c := compareBoxes(a.least, able[0].least)
+			if c > 0 {
+				continue
+			}
+			if c < 0 {
+				able = able[:0]
+			}
 		}
-		// Whole database units stay whole.
-		low.X1 -= low.X1 & (l.flat.forms.scale - 1)
-		low.Y1 -= low.Y1 & (l.flat.forms.scale - 1)
-		p.x, p.y = p.x-low.X1, p.y-low.Y1
-		for k := range list {
-			list[k].box = list[k].box.shift(-low.X1, -low.Y1)
-		}
-		slices.SortFunc(list, func(a, c entry) int { return cmp.Or(compareBoxes(a.box, c.box), cmp.Compare(a.node, c.node)) })
-		if best == nil || slices.CompareFunc(list, best, func(a, c entry) int { return compareBoxes(a.box, c.box) }) < 0 {
-			best = slices.Clone(list)
-			b.canon.back = p
+		able = append(able, a)
+	}
+	best := able[0]
+	best.sort(room, b.nodes, boxes)
+	for _, a := range able[1:] {
+		a.sort(room, b.nodes, boxes)
+		if slices.CompareFunc(a.list, best.list, func(p, q placedNode) int { return compareBoxes(p.box, q.box) }) < 0 {
+			best = a
 		}
 	}
-	for k := range best {
-		b.nodes[k] = best[k].node
+	for k := range best.list {
+		b.nodes[k] = best.list[k].node
 	}
+	b.canon.back = best.back
+}
+
+// arrangement is the list of the nodes of a group in one orientation.
+type arrangement struct {
+	back  placement // from the top; the least corner comes to the origin
+	least Box
+	list  []placedNode
+}
+
+// placedNode is a node with its box as placed.
+type placedNode struct {
+	box  Box
+	node uint32
+}
+
+// arranged finds where an arrangement lies, before it is sorted.
+func arranged(nodes []uint32, boxes []Box, p placement, scale int64) arrangement {
+	low, least := emptyBox, emptyBox
+	for i, u := range nodes {
+		box := p.applyBox(boxes[u])
+		low = low.join(box)
+		if i == 0 || compareBoxes(box, least) < 0 {
+			least = box
+		}
+	}
+	// Whole database units stay whole.
+	low.X1 -= low.X1 & (scale - 1)
+	low.Y1 -= low.Y1 & (scale - 1)
+	p.x, p.y = p.x-low.X1, p.y-low.Y1
+	return arrangement{back: p, least: least.shift(-low.X1, -low.Y1)}
+}
+
+// sort lists the nodes by their boxes.
+func (a *arrangement) sort(room *arena.Slab, nodes []uint32, boxes []Box) {
+	a.list = arena.CutDirty[placedNode](room, len(nodes))
+	for k, u := range nodes {
+		a.list[k] = placedNode{a.back.applyBox(boxes[u]), u}
+	}
+	slices.SortFunc(a.list, func(p, q placedNode) int {
+		if c := compareBoxes(p.box, q.box); c != 0 {
+			return c
+		}
+		return cmp.Compare(p.node, q.node)
+	})
 }

@@ -6,10 +6,12 @@ import (
 	"fmt"
 	"hash/maphash"
 	"slices"
+	"sync"
 
 	"golang.org/x/sync/errgroup"
 
 	"maskpair/decompose/exact"
+	"maskpair/gds/arena"
 )
 
 // This file hands the groups that parity does not settle to package exact, and takes back masks and bounds. What gets a mask there is
@@ -20,6 +22,7 @@ import (
 type brokenGroup struct {
 	group       int32
 	nodes       []uint32 // canonical order
+	begin       uint32   // number of the first of them
 	ties        []Tie    // between them
 	first, last uint32   // least and greatest ordinal
 	canon       canon
@@ -40,6 +43,7 @@ type brokenGroup struct {
 	solution exact.Solution // of weighed
 	masks    []uint8        // by atom, as solved last; the group may have been turned over since
 	homing   bool           // solved again, nearest to the usual masks
+	home     *exact.Problem // of that
 	homeUnit int64          // by which the aims that count are weighed then
 	near     exact.Solution
 	least    *[]int // least set of cuts that resolves the group, once it was looked for
@@ -61,22 +65,36 @@ type solver struct {
 	a      *assignment
 	o      *Orders
 	groups []brokenGroup
-	index  map[int32]int // group number to index in groups
-	broken []uint64      // bit by group number
+	broken *bitset  // group numbers; their ranks are their places in groups
+	nodes  int      // of all groups
+	number []uint32 // by node: its number among those of all groups, from 1; 0: its group is not broken
+	mu     sync.Mutex
+	idle   []*arena.Slab // memory for the work on one group, not in use now
 	opt    *Options
 	apart  map[uint32][]uint32 // by node of a broken group: what is within the largest spacing and yet not near
 }
 
 // newSolver gathers the nodes of the broken groups.
-func newSolver(l *layout, a *assignment, o *Orders) *solver {
-	s := &solver{l: l, a: a, o: o, index: map[int32]int{}, broken: make([]uint64, (a.groups+63)/64)}
-	for i, g := range a.broken {
-		s.groups = append(s.groups, brokenGroup{group: g})
-		s.index[g] = i
-		s.broken[g>>6] |= 1 << (g & 63)
-	}
+func newSolver(l *layout, a *assignment, o *Orders, opt *Options) *solver {
+	s := &solver{l: l, a: a, o: o, opt: opt, groups: make([]brokenGroup, len(a.broken))}
 	if len(s.groups) == 0 {
 		return s
+	}
+	s.broken = newBitset(a.groups)
+	for i, g := range a.broken {
+		s.groups[i].group = g
+		s.broken.add(uint32(g))
+	}
+	s.broken.makeRanks()
+	size := make([]int, len(s.groups))
+	for u := range uint32(l.nodes) {
+		if i, ok := s.of(u); ok {
+			size[i]++
+		}
+	}
+	for i, n := range size {
+		s.groups[i].nodes, s.groups[i].begin = arena.CutDirty[uint32](&l.room, n)[:0], uint32(s.nodes)+1
+		s.nodes += n
 	}
 	for u := range uint32(l.nodes) {
 		if i, ok := s.of(u); ok {
@@ -88,8 +106,44 @@ func newSolver(l *layout, a *assignment, o *Orders) *solver {
 			s.groups[i].ties = append(s.groups[i].ties, t)
 		}
 	}
-	s.arrange()
 	return s
+}
+
+// place gives the place of a node in the nodes of its group.
+func (s *solver) place(b *brokenGroup, node uint32) uint32 { return s.number[node] - b.begin }
+
+// indexOf gives the index of a group.
+func (s *solver) indexOf(b *brokenGroup) int {
+	i, _ := s.of(b.nodes[0])
+	return i
+}
+
+// within calls fn with memory that is given up when fn returns.
+func (s *solver) within(fn func(room *arena.Slab)) {
+	room := s.takeRoom()
+	fn(room)
+	room.Reset()
+	s.mu.Lock()
+	s.idle = append(s.idle, room)
+	s.mu.Unlock()
+}
+
+func (s *solver) takeRoom() *arena.Slab {
+	s.mu.Lock()
+	defer s.mu.Unlock()
+	n := len(s.idle)
+	if n == 0 {
+		return s.l.room.Within()
+	}
+	room := s.idle[n-1]
+	s.idle = s.idle[:n-1]
+	return room
+}
+
+// exactly solves a problem.
+func (s *solver) exactly(p *exact.Problem, budget exact.Budget) (sol exact.Solution) {
+	s.within(func(room *arena.Slab) { sol = exact.Workspace{Room: room}.Solve(p, budget) })
+	return sol
 }
 
 // bytesPerOddPair is what a near pair of a broken group takes while the group is solved and explained, as measured where all is near to
@@ -113,11 +167,10 @@ func (s *solver) checkMemory() error {
 
 // of gives the index of the broken group of a node; false where its group is not broken.
 func (s *solver) of(node uint32) (int, bool) {
-	g := s.a.group.Data[node]
-	if s.broken[g>>6]>>(g&63)&1 == 0 {
+	if s.broken == nil {
 		return 0, false
 	}
-	return s.index[int32(g)], true
+	return s.broken.rank(s.a.group.Data[node])
 }
 
 // each calls work for every broken group, some at a time.
@@ -147,6 +200,9 @@ func (s *solver) solve(ctx context.Context, jobs int) error {
 		return nil
 	}
 	if err := s.checkMemory(); err != nil {
+		return err
+	}
+	if err := s.arrange(ctx, jobs); err != nil {
 		return err
 	}
 	fixed, wishes := s.byNode()
@@ -213,7 +269,7 @@ func (s *solver) solveEach(ctx context.Context, jobs int) error {
 		given = share
 		err := s.each(ctx, jobs, func(b *brokenGroup) {
 			if &s.groups[b.same] == b && !b.solution.Proved {
-				b.solution = b.solved(exact.Budget{Work: share, Memory: exact.DefaultBudget().Memory})
+				b.solution = s.solved(b, exact.Budget{Work: share, Memory: exact.DefaultBudget().Memory})
 			}
 		})
 		if err != nil {
@@ -238,7 +294,7 @@ func (s *solver) boundApart(b *brokenGroup) {
 	trial := *b
 	trial.units = units{pair: 2}
 	s.pose(&trial, nil)
-	sol := trial.solved(exact.Budget{Work: mostWork, Memory: exact.DefaultBudget().Memory})
+	sol := s.solved(&trial, exact.Budget{Work: mostWork, Memory: exact.DefaultBudget().Memory})
 	b.solution.LowerBound = max(b.solution.LowerBound, (sol.LowerBound+1)/2*b.units.pair)
 	b.solution.Proved = b.solution.Cost == b.solution.LowerBound
 	if !b.cutting {
@@ -252,7 +308,7 @@ func (s *solver) boundApart(b *brokenGroup) {
 	const ratio = 2
 	trial.units = units{stitch: 2, waived: 2 * ratio, pair: 2 * ratio}
 	s.pose(&trial, nil)
-	sol = trial.solved(exact.Budget{Work: mostWork / 4, Memory: exact.DefaultBudget().Memory})
+	sol = s.solved(&trial, exact.Budget{Work: mostWork / 4, Memory: exact.DefaultBudget().Memory})
 	b.leastStitches = max(0, (sol.LowerBound+1)/2-ratio*pairs)
 }
 
@@ -343,30 +399,37 @@ func (s *solver) byNode() (fixed map[uint32]Mask, wishes map[uint32][2]int64) {
 
 // gather finds the near pairs and anchors of a group.
 func (s *solver) gather(b *brokenGroup, fixed map[uint32]Mask, waived map[[2]uint32]bool) {
-	local := make(map[uint32]int32, len(b.nodes))
+	end := arena.Cut[int32](&s.l.room, len(b.nodes)+1) // of the edges under each node
+	total := int32(0)
 	for k, u := range b.nodes {
-		local[u] = int32(k)
-	}
-	type edge struct {
-		exact.Edge
-		waived bool
-	}
-	var edges []edge
-	for _, u := range b.nodes {
 		for _, e := range s.l.near.of(u) {
-			v := e >> 1
-			edges = append(edges, edge{exact.Edge{U: min(local[u], local[v]), V: max(local[u], local[v])}, len(waived) > 0 && waived[[2]uint32{u, v}]})
+			end[min(uint32(k), s.place(b, e>>1))]++
+			total++
 		}
 	}
-	slices.SortFunc(edges, func(p, q edge) int {
-		if p.U != q.U {
-			return int(p.U) - int(q.U)
+	at := int32(0)
+	for k, n := range end {
+		end[k], at = at, at+n
+	}
+	b.edges, b.waived = arena.CutDirty[exact.Edge](&s.l.room, int(total)), arena.Cut[bool](&s.l.room, int(total))
+	for k, u := range b.nodes {
+		for _, e := range s.l.near.of(u) {
+			other := s.place(b, e>>1)
+			under := min(uint32(k), other)
+			b.edges[end[under]] = exact.Edge{U: int32(under), V: int32(max(uint32(k), other))}
+			end[under]++
 		}
-		return int(p.V) - int(q.V)
-	})
-	b.edges, b.waived = make([]exact.Edge, len(edges)), make([]bool, len(edges))
-	for i, e := range edges {
-		b.edges[i], b.waived[i] = e.Edge, e.waived
+	}
+	from := int32(0)
+	for _, to := range end[:len(b.nodes)] {
+		slices.SortFunc(b.edges[from:to], func(p, q exact.Edge) int { return int(p.V) - int(q.V) })
+		from = to
+	}
+	if len(waived) > 0 {
+		for i, e := range b.edges {
+			u, v := b.nodes[e.U], b.nodes[e.V]
+			b.waived[i] = waived[[2]uint32{min(u, v), max(u, v)}]
+		}
 	}
 	for k, u := range b.nodes {
 		if m, ok := fixed[u]; ok {
@@ -422,9 +485,10 @@ func (s *solver) pose(b *brokenGroup, wishes map[uint32][2]int64) {
 	if b.cutting {
 		b.pieceEdges(p)
 	} else {
-		p.Edges = slices.Clone(b.edges)
-		for i := range p.Edges {
-			p.Edges[i].Weight = b.weight(i, b.units)
+		p.Edges = arena.CutDirty[exact.Edge](&s.l.room, len(b.edges))
+		for i, e := range b.edges {
+			e.Weight = b.weight(i, b.units)
+			p.Edges[i] = e
 		}
 	}
 	if b.fixed != nil {
@@ -521,10 +585,19 @@ func (s *solver) contract(b *brokenGroup) {
 // findSame finds groups with equal problems, so that each is solved once.
 func (s *solver) findSame() {
 	seed := maphash.MakeSeed()
+	type size struct{ nodes, edges int }
+	sizes := map[size]int{}
+	sizeOf := func(b *brokenGroup) size { return size{b.problem.Nodes, len(b.problem.Edges)} }
+	for i := range s.groups {
+		sizes[sizeOf(&s.groups[i])]++
+	}
 	byHash := map[uint64][]int{}
 	for i := range s.groups {
 		b := &s.groups[i]
 		b.same = i
+		if sizes[sizeOf(b)] == 1 {
+			continue
+		}
 		h := hashProblem(seed, b.problem)
 		for _, k := range byHash[h] {
 			if b.surplus == s.groups[k].surplus && equalProblems(b.problem, s.groups[k].problem) {

@@ -4,6 +4,8 @@ import (
 	"cmp"
 	"math"
 	"slices"
+
+	"maskpair/gds/arena"
 )
 
 // This file turns classes of groups so that few variants are needed. Homes (see home.go) give a good start, but they look at one
@@ -59,7 +61,7 @@ const (
 
 // descend turns classes over; turn holds by group what was decided before and is changed.
 func (d *dealer) descend(turn []bool) {
-	c := &contexts{d: d, bit: make([]uint8, len(turn)), tables: make([]variantTable, len(d.l.flat.lib.Structures)),
+	c := &contexts{d: d, bit: arena.Cut[uint8](d.room, len(turn)), tables: make([]variantTable, len(d.l.flat.lib.Structures)),
 		counts: map[uint64]int32{}, turned: make([]bool, len(d.classes)), delta: map[int32]uint64{}}
 	for g, t := range turn {
 		c.bit[g] = uint8(boolInt(t))

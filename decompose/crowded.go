@@ -145,8 +145,8 @@ func (b *brokenGroup) settleCrowds(p *exact.Problem, solved []uint8) int64 {
 }
 
 // solved gives the solution of the problem of a group by its true cost.
-func (b *brokenGroup) solved(budget exact.Budget) exact.Solution {
-	sol := exact.Solve(b.problem, budget)
+func (s *solver) solved(b *brokenGroup, budget exact.Budget) exact.Solution {
+	sol := s.exactly(b.problem, budget)
 	sol.Cost = b.settleCrowds(b.problem, sol.Masks)
 	sol.LowerBound = max(0, sol.LowerBound-b.surplus)
 	sol.Proved = sol.Cost == sol.LowerBound

@@ -3,12 +3,14 @@ package decompose
 import (
 	"cmp"
 	"context"
+	"maps"
 	"math"
 	"slices"
 
 	"maskpair/decompose/exact"
 	"maskpair/decompose/geom"
 	"maskpair/gds"
+	"maskpair/gds/arena"
 )
 
 // This file explains failure: for each component that two masks cannot do, the smallest odd cycle or the shortest path between
@@ -23,11 +25,15 @@ func (s *solver) explain(ctx context.Context, rules *Rules, res *LayerResult, jo
 		facing: newFacingNames(s.l)}
 	e.gather()
 	e.sign()
-	for i := range s.groups {
-		if err := ctx.Err(); err != nil {
-			return err
-		}
-		e.group(&s.groups[i], res)
+	found := make([]LayerResult, len(s.groups))
+	err := s.each(ctx, jobs, func(b *brokenGroup) {
+		s.within(func(room *arena.Slab) { e.group(room, b, &found[s.indexOf(b)]) })
+	})
+	if err != nil {
+		return err
+	}
+	for i := range found {
+		res.add(&found[i])
 	}
 	slices.SortStableFunc(res.Unresolved, func(a, b Unresolved) int { return cmp.Compare(a.Component, b.Component) })
 	for i := range res.Unresolved {
@@ -41,8 +47,8 @@ type explainer struct {
 	*solver
 	boxes  []Box
 	parts  map[uint32]*geom.Parts // of the nodes of pairs that stay
-	shape  []uint64               // by local index of node: what the node is, in the canonical frame of its group
-	local  map[uint32]uint32      // node to index in shape
+	shape  []uint64               // what a node is, in the canonical frame of its group: of the nodes of one group after another
+	local  []uint32               // by group: where its nodes are in shape, plus 1; 0: no other group can be equal
 	groups map[uint64]int64       // signature to number
 	rules  *Rules
 	more   map[uint32]*geom.Parts // those of parts that repairs need besides
@@ -70,53 +76,68 @@ func (e *explainer) gather() {
 
 // sign hashes what each node of the broken groups is made of: its figures, each once, in the canonical frame of its group.
 func (e *explainer) sign() {
-	e.local = map[uint32]uint32{}
-	owner := []int32{}
+	l := e.l
 	sizes := map[[2]int]int{} // groups of one size: only these can be equal
 	size := func(b *brokenGroup) [2]int { return [2]int{len(b.nodes), len(b.edges)} }
 	for i := range e.solver.groups {
 		sizes[size(&e.solver.groups[i])]++
 	}
+	signed := newBitset(l.nodes)
+	nodes := uint32(0)
+	e.local = make([]uint32, len(e.solver.groups))
 	for i := range e.solver.groups {
 		b := &e.solver.groups[i]
 		if sizes[size(b)] == 1 && !e.a.tied {
 			continue
 		}
+		e.local[i] = nodes + 1
 		for _, u := range b.nodes {
-			e.local[u] = uint32(len(owner))
-			owner = append(owner, int32(i))
+			signed.add(u)
 		}
+		nodes += uint32(len(b.nodes))
+	}
+	if nodes == 0 {
+		return
 	}
 	type figure struct {
 		node uint32
 		hash uint64
 	}
 	var list []figure
-	l := e.l
-	node := l.nodeOf.Data
+	end := make([]uint32, nodes+1) // of the figures of each node
 	for top := range l.flat.h.tops {
-		l.eachFigure(top, func(o uint32) bool {
-			if _, ok := e.of(node[o]); !ok {
-				return false
+		l.eachFigureOf(top, signed, func(o, fig uint32, at placement, odd *oddFigure) {
+			n := l.nodeOf.Data[o]
+			i, _ := e.of(n)
+			b := &e.solver.groups[i]
+			made := figure{node: e.local[i] - 1 + e.place(b, n)}
+			if odd != nil {
+				made.hash = hashBox(b.canon.back.applyBox(odd.form.box))
+			} else {
+				made.hash = hashPlaced(l.flat, fig, b.canon.back.compose(at))
 			}
-			_, ok := e.local[node[o]]
-			return ok
-		},
-			func(o, fig uint32, at placement, odd *oddFigure) {
-				k := e.local[node[o]]
-				back := e.solver.groups[owner[k]].canon.back
-				if odd != nil {
-					list = append(list, figure{k, hashBox(back.applyBox(odd.form.box))})
-					return
-				}
-				list = append(list, figure{k, hashPlaced(l.flat, fig, back.compose(at))})
-			})
+			list = append(list, made)
+			end[made.node]++
+		})
 	}
-	slices.SortFunc(list, func(a, b figure) int { return cmp.Or(cmp.Compare(a.node, b.node), cmp.Compare(a.hash, b.hash)) })
-	list = slices.Compact(list)
-	e.shape = make([]uint64, len(owner))
+	at := uint32(0)
+	for n, count := range end {
+		end[n], at = at, at+count
+	}
+	hashes := make([]uint64, len(list))
 	for _, f := range list {
-		e.shape[f.node] += mix(f.hash, 5)
+		hashes[end[f.node]] = f.hash
+		end[f.node]++
+	}
+	e.shape = make([]uint64, nodes)
+	from := uint32(0)
+	for n := range e.shape {
+		own := hashes[from:end[n]]
+		from = end[n]
+		slices.Sort(own)
+		for _, h := range slices.Compact(own) {
+			e.shape[n] += mix(h, 5)
+		}
 	}
 }
 
@@ -149,36 +170,26 @@ func (e *explainer) number(signature uint64) int64 {
 	return n
 }
 
-// group explains one broken group, component by component.
-func (e *explainer) group(b *brokenGroup, res *LayerResult) {
+// group explains one broken group, component by component; res takes what the layer has from it alone. What
+// it needs on the way lies in room.
+func (e *explainer) group(room *arena.Slab, b *brokenGroup, res *LayerResult) {
 	a := e.a
-	masks := make([]uint8, len(b.nodes))
+	masks := arena.CutDirty[uint8](room, len(b.nodes))
 	for k, u := range b.nodes {
 		masks[k] = a.mask.Data[u]
 	}
 	bound := b.units.pairsOf(b.solution.LowerBound)
-	res.LowerBound += bound
-	// Parts of the group: its components, in order.
-	byComponent := map[uint32][]int32{}
-	var order []uint32
-	for k, u := range b.nodes {
-		c := a.component.Data[u]
-		if byComponent[c] == nil {
-			order = append(order, c)
-		}
-		byComponent[c] = append(byComponent[c], int32(k))
-	}
-	slices.Sort(order)
+	res.LowerBound = bound
 	stuck := 0
-	first := len(res.Unresolved)
-	for _, c := range order {
-		part := e.part(b, byComponent[c], masks)
+	parts := b.components(room, a)
+	for _, nodes := range parts {
+		part := e.part(room, b, nodes, masks)
 		if part.stuck {
 			stuck++
 			res.UnresolvedComponents++
 		}
 		if part.stuck || len(part.left)+len(part.accepted) > 0 {
-			u := e.entry(b, part, c)
+			u := e.entry(room, b, part, a.component.Data[b.nodes[nodes[0]]])
 			for _, x := range part.accepted {
 				res.Waived = append(res.Waived, e.waived(b, part, x, u.Top))
 			}
@@ -190,24 +201,56 @@ func (e *explainer) group(b *brokenGroup, res *LayerResult) {
 		}
 	}
 	if stuck == 0 {
-		res.JointClashes++
+		res.JointClashes = 1
 	}
-	res.AimsProved = res.AimsProved && b.solution.Proved
-	res.StitchesBound += b.leastStitches
+	res.AimsProved = b.solution.Proved
+	res.StitchesBound = b.leastStitches
 	left := int64(0)
-	for i := first; i < len(res.Unresolved); i++ {
+	for i := range res.Unresolved {
 		left += int64(len(res.Unresolved[i].Pairs))
 	}
-	proved := left == bound
-	for i := first; i < len(res.Unresolved); i++ {
-		res.Unresolved[i].Proved = proved
-		if len(order) == 1 {
+	res.ProvedOptimal = left == bound
+	for i := range res.Unresolved {
+		res.Unresolved[i].Proved = res.ProvedOptimal
+		if len(parts) == 1 {
 			res.Unresolved[i].LowerBound = bound
 		}
 	}
-	if !proved {
-		res.ProvedOptimal = false
+}
+
+// add takes in what explaining found of one group.
+func (l *LayerResult) add(of *LayerResult) {
+	l.LowerBound += of.LowerBound
+	l.StitchesBound += of.StitchesBound
+	l.UnresolvedComponents += of.UnresolvedComponents
+	l.UnresolvedPairs += of.UnresolvedPairs
+	l.WaivedPairs += of.WaivedPairs
+	l.JointClashes += of.JointClashes
+	l.Waived = append(l.Waived, of.Waived...)
+	l.Unresolved = append(l.Unresolved, of.Unresolved...)
+	l.ProvedOptimal = l.ProvedOptimal && of.ProvedOptimal
+	l.AimsProved = l.AimsProved && of.AimsProved
+}
+
+// components gives the nodes of each component of a group, by place in the group, components in ascending order.
+func (b *brokenGroup) components(room *arena.Slab, a *assignment) [][]int32 {
+	if !a.tied {
+		all := arena.CutDirty[int32](room, len(b.nodes))
+		for k := range all {
+			all[k] = int32(k)
+		}
+		return [][]int32{all}
 	}
+	by := map[uint32][]int32{}
+	for k, u := range b.nodes {
+		c := a.component.Data[u]
+		by[c] = append(by[c], int32(k))
+	}
+	out := make([][]int32, 0, len(by))
+	for _, c := range slices.Sorted(maps.Keys(by)) {
+		out = append(out, by[c])
+	}
+	return out
 }
 
 // componentPart is one component of a broken group, with numbers of its own.
@@ -223,19 +266,21 @@ type componentPart struct {
 }
 
 // part cuts a component out of a group.
-func (e *explainer) part(b *brokenGroup, nodes []int32, masks []uint8) *componentPart {
-	p := &componentPart{nodes: nodes}
-	at := make(map[int32]int32, len(nodes))
+func (e *explainer) part(room *arena.Slab, b *brokenGroup, nodes []int32, masks []uint8) *componentPart {
+	p := &componentPart{nodes: nodes, masks: arena.CutDirty[uint8](room, len(nodes))}
+	at := newPlaces(nodes, len(b.nodes))
 	for i, k := range nodes {
-		at[k] = int32(i)
-		p.masks = append(p.masks, masks[k])
+		p.masks[i] = masks[k]
 	}
-	near := newParity(make([]uint32, len(nodes)))
+	if at == nil {
+		p.edges, p.source = arena.CutDirty[exact.Edge](room, len(b.edges))[:0], arena.CutDirty[int](room, len(b.edges))[:0]
+	}
+	near := newParity(arena.CutDirty[uint32](room, len(nodes)))
 	reps := len(nodes)
 	if b.rep != nil {
 		reps = b.weighed.Nodes
 	}
-	orders := newParity(make([]uint32, reps+1)) // the last is mask A
+	orders := newParity(arena.CutDirty[uint32](room, reps+1)) // the last is mask A
 	held := func(i int) (uint32, uint32) {
 		if b.rep != nil {
 			k := b.atom(int(nodes[i]))
@@ -250,11 +295,11 @@ func (e *explainer) part(b *brokenGroup, nodes []int32, masks []uint8) *componen
 		}
 	}
 	for x, ed := range b.edges {
-		i, ok := at[ed.U]
+		i, ok := at.of(ed.U)
 		if !ok {
 			continue
 		}
-		k := at[ed.V]
+		k, _ := at.of(ed.V)
 		n := len(p.edges)
 		p.edges = append(p.edges, exact.Edge{U: i, V: k, Weight: 1})
 		p.source = append(p.source, x)
@@ -277,8 +322,30 @@ func (e *explainer) part(b *brokenGroup, nodes []int32, masks []uint8) *componen
 	return p
 }
 
+// places tells where in some nodes of a group a node is; nil: they are all nodes of the group.
+type places map[int32]int32
+
+func newPlaces(nodes []int32, all int) places {
+	if len(nodes) == all {
+		return nil
+	}
+	at := make(places, len(nodes))
+	for i, k := range nodes {
+		at[k] = int32(i)
+	}
+	return at
+}
+
+func (p places) of(k int32) (int32, bool) {
+	if p == nil {
+		return k, true
+	}
+	i, ok := p[k]
+	return i, ok
+}
+
 // entry words a component for the result.
-func (e *explainer) entry(b *brokenGroup, p *componentPart, component uint32) Unresolved {
+func (e *explainer) entry(room *arena.Slab, b *brokenGroup, p *componentPart, component uint32) Unresolved {
 	l := e.l
 	u := Unresolved{Component: int64(component), Shapes: int64(len(p.nodes)), Cause: OrderClash}
 	firstNode := b.nodes[p.nodes[0]]
@@ -289,7 +356,7 @@ func (e *explainer) entry(b *brokenGroup, p *componentPart, component uint32) Un
 	if p.odd {
 		u.Cause = OddCycle
 		var sure bool
-		if ring, sure = p.smallestCycle(); !sure {
+		if ring, sure = p.smallestCycle(room); !sure {
 			u.NotComputed = append(u.NotComputed, "cycle")
 		}
 	} else {
@@ -299,7 +366,7 @@ func (e *explainer) entry(b *brokenGroup, p *componentPart, component uint32) Un
 		n := b.nodes[p.nodes[i]]
 		u.Cycle = append(u.Cycle, CycleShape{l.half(e.boxes[n]), Mask(p.masks[i])})
 	}
-	e.byPlace(b, p)
+	e.byPlace(room, b, p)
 	u.Pairs = make([]Pair, len(p.left))
 	for i, x := range p.left {
 		u.Pairs[i] = e.pair(b, p, x, u.Top)
@@ -308,24 +375,10 @@ func (e *explainer) entry(b *brokenGroup, p *componentPart, component uint32) Un
 	fr := b.canon.frame
 	u.Cell = l.flat.h.name(fr.structure)
 	box := emptyBox
-	sign := uint64(17)
 	for _, k := range p.nodes {
-		n := b.nodes[k]
-		box = box.join(e.boxes[n])
+		box = box.join(e.boxes[b.nodes[k]])
 	}
-	// Components of one group that ties join have canonical places of their own.
-	low := b.canon.back.applyBox(box)
-	for _, k := range p.nodes {
-		n := b.nodes[k]
-		if k, ok := e.local[n]; ok {
-			sign = mix(sign, e.shape[k])
-		}
-		sign = mix(sign, hashBox(b.canon.back.applyBox(e.boxes[n]).shift(-low.X1, -low.Y1)))
-	}
-	for _, ed := range p.edges {
-		sign = mix(sign, uint64(ed.U)<<32|uint64(uint32(ed.V)))
-	}
-	u.Group = int64(sign)
+	u.Group = int64(e.signature(b, p, box))
 	place := fr.at.inverse().applyBox(box)
 	k := 2 / l.flat.forms.scale
 	u.CellPlace = Spot{place.X1 * k, place.Y1 * k}
@@ -333,19 +386,38 @@ func (e *explainer) entry(b *brokenGroup, p *componentPart, component uint32) Un
 	return u
 }
 
-// byPlace sorts the pairs of a component that stay: by their boxes, the lesser of the two first. There may be very many.
-func (e *explainer) byPlace(b *brokenGroup, p *componentPart) {
-	rank := make([]int32, len(p.nodes)) // of a node by its box; equal boxes have equal ranks
-	order := make([]int32, len(p.nodes))
-	for i := range order {
-		order[i] = int32(i)
+// signature is the same for equal components; box is that of the component.
+func (e *explainer) signature(b *brokenGroup, p *componentPart, box Box) uint64 {
+	sign := mix(mix(17, uint64(len(p.nodes))), uint64(len(p.edges)))
+	first := e.local[e.indexOf(b)]
+	if first == 0 {
+		return sign // no other component is of this size
 	}
+	// Components of one group that ties join have canonical places of their own.
+	low := b.canon.back.applyBox(box)
+	for _, k := range p.nodes {
+		sign = mix(sign, e.shape[first-1+uint32(k)])
+		sign = mix(sign, hashBox(b.canon.back.applyBox(e.boxes[b.nodes[k]]).shift(-low.X1, -low.Y1)))
+	}
+	for _, ed := range p.edges {
+		sign = mix(sign, uint64(ed.U)<<32|uint64(uint32(ed.V)))
+	}
+	return sign
+}
+
+// byPlace sorts the pairs of a component that stay: by their boxes, the lesser of the two first. There may be very many.
+func (e *explainer) byPlace(room *arena.Slab, b *brokenGroup, p *componentPart) {
 	box := func(i int32) Box { return e.boxes[b.nodes[p.nodes[i]]] }
-	slices.SortFunc(order, func(i, k int32) int { return compareBoxes(box(i), box(k)) })
-	for at, i := range order {
+	ends := arena.CutDirty[int32](room, 2*len(p.left))[:0]
+	for _, x := range p.left {
+		ends = append(ends, p.edges[x].U, p.edges[x].V)
+	}
+	slices.SortFunc(ends, func(i, k int32) int { return compareBoxes(box(i), box(k)) })
+	rank := arena.Cut[int32](room, len(p.nodes)) // of an end by its box; equal boxes have equal ranks
+	for at, i := range ends {
 		rank[i] = int32(at)
-		if at > 0 && box(order[at-1]) == box(i) {
-			rank[i] = rank[order[at-1]]
+		if at > 0 && box(ends[at-1]) == box(i) {
+			rank[i] = rank[ends[at-1]]
 		}
 	}
 	key := func(x int) uint64 {
@@ -426,8 +498,8 @@ func (b *brokenGroup) holds(k int) int8 {
 }
 
 // smallestCycle gives the smallest of the smallest odd cycles through the pairs that stay; where none stays, of all. It tells whether it is sure.
-func (p *componentPart) smallestCycle() (cycle []int32, sure bool) {
-	finder := exact.NewCycleFinder(len(p.nodes), p.edges)
+func (p *componentPart) smallestCycle(room *arena.Slab) (cycle []int32, sure bool) {
+	finder := exact.NewCycleFinder(room, len(p.nodes), p.edges)
 	if cycle, sure = finder.SmallestThrough(slices.Concat(p.left, p.accepted)); cycle != nil {
 		return cycle, sure
 	}

@@ -142,7 +142,7 @@ type cachedOutline struct {
 func (c *outlineCache) judge(begin, end uint32) []farPair {
 	j := c.j
 	var far []farPair
-	start, ends, entries := j.l.near.start.Data, j.l.near.end.Data, j.l.near.entries.Data
+	start, ends, entries := j.l.near.start, j.l.near.end, j.l.near.entries
 	var t *topRects
 	for u := begin; u < end; u++ {
 		if start[u] == ends[u] {

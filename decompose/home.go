@@ -25,20 +25,19 @@ func (l *layout) deal(ctx context.Context, a *assignment, s *solver, jobs int) e
 	shared := d.hashFigures()
 	if shared {
 		d.findPlaces()
-		defer d.places.Free()
 	}
 	defer func() { s.opt.work(stageChoose, "figures", d.visited) }()
-	d.turn(shared)
+	s.within(func(room *arena.Slab) { d.turn(room, shared) })
 	if !shared || len(s.groups) == 0 {
 		return nil
 	}
 	best, bestCost := s.keep(), d.cost()
-	bias := 0.0
+	homing, bias := newHoming(s, d), 0.0
 	for range solveRounds {
-		if err := s.solveNear(ctx, d, d.usualMasks(), bias, jobs); err != nil {
+		if err := homing.solve(ctx, d.usualMasks(), bias, jobs); err != nil {
 			return err
 		}
-		d.turn(shared)
+		s.within(func(room *arena.Slab) { d.turn(room, shared) })
 		cost := d.cost()
 		gained := cost < worthwhile*bestCost
 		if cost < bestCost {
@@ -89,13 +88,14 @@ func (d *dealer) imbalance() float64 {
 	return difference / max(total, 1)
 }
 
-// turn turns the free groups as they are assigned now.
-func (d *dealer) turn(shared bool) {
+// turn turns the free groups as they are assigned now. What it works out of groups lies in room.
+func (d *dealer) turn(room *arena.Slab, shared bool) {
 	a := d.a
-	d.delta = d.l.deltas(a)
+	d.room = room
+	d.findDeltas()
 	d.classes = nil
-	turn := make([]bool, a.groups)
-	settled := make([]bool, a.groups)
+	turn := arena.Cut[bool](room, a.groups)
+	settled := arena.Cut[bool](room, a.groups)
 	for g, free := range a.free {
 		settled[g] = !free
 	}
@@ -111,30 +111,30 @@ func (d *dealer) turn(shared bool) {
 	a.turnOver(func(g uint32) bool { return turn[g] })
 }
 
-// deltas gives for each group the area on A less that on B.
-func (l *layout) deltas(a *assignment) []float64 {
-	delta := make([]float64, a.groups)
-	for u := range l.area {
-		onA, onB := l.areaOn(uint32(u), a.mask.Data[u])
-		delta[a.group.Data[u]] += onA - onB
+// findDeltas adds up for each group the area on A less that on B.
+func (d *dealer) findDeltas() {
+	d.delta = arena.Cut[float64](d.room, d.a.groups)
+	for u := range d.l.area {
+		onA, onB := d.l.areaOn(uint32(u), d.a.mask.Data[u])
+		d.delta[d.a.group.Data[u]] += onA - onB
 	}
-	return delta
 }
 
 // dealer holds what dealing needs.
 type dealer struct {
 	l     *layout
 	a     *assignment
-	delta []float64 // by group, as the masks are now
+	room  *arena.Slab // of the turn at hand
+	delta []float64   // by group, as the masks are now
 
-	shared  []bool              // by structure: placed more than once and with figures of its own
-	hash    []uint64            // by figure of the library: what it is; only of shared structures
-	signs   [][2]uint64         // by figure of the library: the same on A, and on B
-	places  *arena.Array[place] // placements of shared structures, in the order of their ordinals
-	visited int64               // flat figures, each as often as it was gone through
-	h0, h1  []uint64            // by group: its shared figures with their masks as they are now, and turned over
-	size    []uint32            // by group: shared flat figures
-	classOf []int32             // by group; -1: no shared figures
+	shared  []bool      // by structure: placed more than once and with figures of its own
+	hash    []uint64    // by figure of the library: what it is; only of shared structures
+	signs   [][2]uint64 // by figure of the library: the same on A, and on B
+	places  []place     // placements of shared structures, in the order of their ordinals
+	visited int64       // flat figures, each as often as it was gone through
+	hashes  [][2]uint64 // by group: its shared figures with their masks as they are now, and turned over
+	size    []uint32    // by group: shared flat figures
+	classOf []int32     // by group; -1: no shared figures
 	classes []class
 	homes   []int8    // by figure: +1 A, -1 B
 	now     []float64 // by class: area on A less that on B, before the descent
@@ -232,12 +232,11 @@ func (d *dealer) findPlaces() {
 			n += f.h.placed[s]
 		}
 	}
-	d.places = arena.New[place](int(n))
-	list := d.places.Data[:0]
+	d.places = arena.CutDirty[place](&d.l.room, int(n))[:0]
 	for top := range f.h.tops {
 		f.visit(top, func(s int32, _ placement, _ bool, first uint32) {
 			if d.shared[s] {
-				list = append(list, place{first, s})
+				d.places = append(d.places, place{first, s})
 			}
 		})
 	}
@@ -246,7 +245,7 @@ func (d *dealer) findPlaces() {
 // eachShared calls fn for every placement of a shared structure, with its own figures, whose ordinals begin at first.
 func (d *dealer) eachShared(fn func(first uint32, figures []uint32)) {
 	list := d.l.flat.list
-	for _, p := range d.places.Data {
+	for _, p := range d.places {
 		own := list[p.structure]
 		d.visited += int64(len(own))
 		fn(p.first, own)
@@ -255,15 +254,15 @@ func (d *dealer) eachShared(fn func(first uint32, figures []uint32)) {
 
 // hashGroups adds up, group by group, what is in it; sums do not depend on the order.
 func (d *dealer) hashGroups() {
-	d.h0, d.h1, d.size = make([]uint64, d.a.groups), make([]uint64, d.a.groups), make([]uint32, d.a.groups)
+	d.hashes, d.size = arena.Cut[[2]uint64](d.room, d.a.groups), arena.Cut[uint32](d.room, d.a.groups)
 	node, group, mask := d.l.nodeOf.Data, d.a.group.Data, d.a.mask.Data
 	d.eachShared(func(first uint32, figures []uint32) {
 		for k, n := range node[first : first+uint32(len(figures))] {
 			g, m := group[n], mask[n]&1
 			sign := &d.signs[figures[k]]
 			d.size[g]++
-			d.h0[g] += sign[m]
-			d.h1[g] += sign[m^1]
+			d.hashes[g][0] += sign[m]
+			d.hashes[g][1] += sign[m^1]
 		}
 	})
 }
@@ -275,15 +274,16 @@ func (d *dealer) makeClasses() {
 		fixed     bool
 	}
 	byKey := map[key]int32{}
-	d.classOf = make([]int32, d.a.groups)
+	d.classOf = arena.CutDirty[int32](d.room, d.a.groups)
 	for g := range d.classOf {
 		d.classOf[g] = -1
-		if d.h0[g] == 0 && d.h1[g] == 0 {
+		now, over := d.hashes[g][0], d.hashes[g][1]
+		if now == 0 && over == 0 {
 			continue
 		}
-		k := key{min(d.h0[g], d.h1[g]), max(d.h0[g], d.h1[g]), false}
+		k := key{min(now, over), max(now, over), false}
 		if !d.a.free[g] {
-			k = key{d.h0[g], d.h1[g], true}
+			k = key{now, over, true}
 		}
 		c, ok := byKey[k]
 		if !ok {
@@ -299,7 +299,7 @@ func (d *dealer) makeClasses() {
 
 // canonical is -1 where a group is turned over relative to its class.
 func (d *dealer) canonical(g int) float64 {
-	if c := &d.classes[d.classOf[g]]; !c.fixed && d.h0[g] != c.low {
+	if c := &d.classes[d.classOf[g]]; !c.fixed && d.hashes[g][0] != c.low {
 		return -1
 	}
 	return 1
@@ -307,44 +307,54 @@ func (d *dealer) canonical(g int) float64 {
 
 // fillClasses finds the drawn figures in one group of each class.
 func (d *dealer) fillClasses() {
+	// First each flat figure of an example: its drawn figure, and in the low bit its mask in the canonical way.
+	begin := make([]uint32, len(d.classes)+1)
 	for i := range d.classes {
-		d.classes[i].members = make([]member, 0, d.size[d.classes[i].example])
+		begin[i+1] = begin[i] + d.size[d.classes[i].example]
 	}
-	example := make([]uint64, (d.l.nodes+63)/64) // bit by node: in the group of a class
+	found := arena.CutDirty[uint64](d.room, int(begin[len(d.classes)]))
+	end := slices.Clone(begin)
+	example := newBitset(d.l.nodes) // nodes in the examples of classes
 	group, mask := d.a.group.Data, d.a.mask.Data
 	for n, g := range group {
 		if c := d.classOf[g]; c >= 0 && d.classes[c].example == int32(g) {
-			example[n>>6] |= 1 << (n & 63)
+			example.add(uint32(n))
 		}
 	}
 	node := d.l.nodeOf.Data
 	d.eachShared(func(first uint32, figures []uint32) {
 		for k, n := range node[first : first+uint32(len(figures))] {
-			if example[n>>6]>>(n&63)&1 == 0 {
+			if !example.has(n) {
 				continue
 			}
 			g := group[n]
-			c := &d.classes[d.classOf[g]]
-			m := mask[n]
+			c, m := d.classOf[g], uint64(mask[n])
 			if d.canonical(int(g)) < 0 {
 				m ^= 1
 			}
-			c.members = append(c.members, member{figures[k], int32(1 - m), int32(m)})
+			found[end[c]] = uint64(figures[k])<<1 | m
+			end[c]++
 		}
 	})
+	// Then each drawn figure once, with how often it is on which mask.
+	times := make([][2]int32, len(d.hash))
+	var drawn []uint32
 	for i := range d.classes {
-		c := &d.classes[i]
-		slices.SortFunc(c.members, func(a, b member) int { return cmp.Compare(a.figure, b.figure) })
-		kept := c.members[:0]
-		for _, m := range c.members {
-			if n := len(kept); n > 0 && kept[n-1].figure == m.figure {
-				kept[n-1].onA += m.onA
-				kept[n-1].onB += m.onB
-			} else {
-				kept = append(kept, m)
+		drawn = drawn[:0]
+		for _, f := range found[begin[i]:end[i]] {
+			t := &times[f>>1]
+			if *t == ([2]int32{}) {
+				drawn = append(drawn, uint32(f>>1))
 			}
+			t[f&1]++
 		}
-		c.members = kept
+		slices.Sort(drawn)
+		members := make([]member, len(drawn))
+		for k, f := range drawn {
+			members[k] = member{f, times[f][0], times[f][1]}
+			times[f] = [2]int32{}
+		}
+		d.classes[i].members = members
 	}
 }
 
@@ -537,7 +547,15 @@ func (d *dealer) turnEven(even, turn []bool) {
 }
 
 func compareBoxes(a, b Box) int {
-	return cmp.Or(cmp.Compare(a.X1, b.X1), cmp.Compare(a.Y1, b.Y1), cmp.Compare(a.X2, b.X2), cmp.Compare(a.Y2, b.Y2))
+	switch {
+	case a.X1 != b.X1:
+		return cmp.Compare(a.X1, b.X1)
+	case a.Y1 != b.Y1:
+		return cmp.Compare(a.Y1, b.Y1)
+	case a.X2 != b.X2:
+		return cmp.Compare(a.X2, b.X2)
+	}
+	return cmp.Compare(a.Y2, b.Y2)
 }
 
 // balance turns what is still free so that the areas of the masks come near to each other: largest first, by powers of two, and by

@@ -28,7 +28,8 @@ type layout struct {
 	area    []float64             // by node, square work units
 	areas   *arena.Array[float64] // room for it
 	near    *neighbours
-	box     *arena.Array[Box]   // by node, once boxes was called
+	box     []Box               // by node, once boxes was called
+	room    arena.Slab          // memory that is given back when the layer has its result
 	odd     []oddFigures        // by top
 	tags    *arena.Array[uint8] // by ordinal: what arrived on a mask; nil where nothing did
 	given   *givenStitches      // nil: none
@@ -123,16 +124,16 @@ func newLayout(ctx context.Context, h *hierarchy, sel *selection, rules *LayerRu
 	}
 	l.first[len(h.tops)] = shapes
 	l.shapes, l.nodes = int(shapes), int(shapes)
-	b.items.Free()
-	b.scratch.Free()
+	arena.Hand(&l.room, b.items)
+	arena.Hand(&l.room, b.scratch)
 	b.bands.Free()
 	if l.given != nil {
 		l.given.apply(l)
 	}
 	b.done.tell(opt)
 	opt.stage(stagePairs)
-	l.near = gather(b.near, l.nodeOf.Data, l.nodes, l.given)
-	b.room.free()
+	l.near = gather(&l.room, b.near, l.nodeOf.Data, l.nodes, l.given)
+	b.room.hand(&l.room)
 	if err := l.judgeFacing(ctx, b.kept, opt.jobs()); err != nil {
 		return nil, err
 	}
@@ -178,10 +179,13 @@ func (l *layout) free() {
 	l.nodeOf.Free()
 	l.areas.Free()
 	l.tags.Free()
-	l.box.Free()
-	if l.near != nil {
-		l.near.free()
-	}
+	l.leave()
+}
+
+// leave gives back what is needed only until the layer has its result: near pairs, boxes, and what was cut from the layout's room.
+func (l *layout) leave() {
+	l.near, l.box = nil, nil
+	l.room.Free()
 }
 
 // collectOdd works out what is placed by a magnification or an odd angle, top by top.

@@ -20,7 +20,7 @@ func (d *dealer) usualMasks() []int8 {
 	tables := make([]variantTable, len(f.lib.Structures))
 	node, mask := l.nodeOf.Data, d.a.mask.Data
 	var words []uint32
-	for _, p := range d.places.Data {
+	for _, p := range d.places {
 		words = words[:0]
 		nodes := node[p.first : p.first+f.own[p.structure]]
 		d.visited += int64(len(nodes))
@@ -59,42 +59,55 @@ func (d *dealer) usualMasks() []int8 {
 	return usual
 }
 
-// solveNear solves the broken groups again, nearest to the usual masks among all that is as good.
-func (s *solver) solveNear(ctx context.Context, d *dealer, usual []int8, bias float64, jobs int) error {
-	start := make([]int32, len(s.groups)+1)
-	local := arena.New[uint32](s.l.nodes) // by node: its number among those of all broken groups, plus 1
-	defer local.Free()
+// homing solves broken groups again, round by round.
+type homing struct {
+	s    *solver
+	d    *dealer
+	off  [][2]int64 // by number of node: what it costs on A, on B, for figures that are then not on their usual masks
+	area float64    // of all nodes
+}
+
+func newHoming(s *solver, d *dealer) *homing {
+	h := &homing{s: s, d: d, off: arena.CutDirty[[2]int64](&s.l.room, s.nodes)}
 	for i := range s.groups {
-		b := &s.groups[i]
-		start[i+1] = start[i] + int32(len(b.nodes))
-		for k, u := range b.nodes {
-			local.Data[u] = uint32(start[i]) + uint32(k) + 1
+		for _, u := range s.groups[i].nodes {
+			h.area += s.l.area[u]
 		}
 	}
-	off := make([][2]int64, start[len(s.groups)])
-	node := s.l.nodeOf.Data
-	d.eachShared(func(first uint32, figures []uint32) {
+	return h
+}
+
+// solve solves the broken groups again, nearest to the usual masks among all that is as good.
+func (h *homing) solve(ctx context.Context, usual []int8, bias float64, jobs int) error {
+	s := h.s
+	clear(h.off)
+	node, number := s.l.nodeOf.Data, s.number
+	h.d.eachShared(func(first uint32, figures []uint32) {
 		for i, n := range node[first : first+uint32(len(figures))] {
-			k := local.Data[n]
+			k := number[n]
 			if k == 0 {
 				continue
 			}
 			switch usual[figures[i]] {
 			case 1:
-				off[k-1][1]++
+				h.off[k-1][1]++
 			case -1:
-				off[k-1][0]++
+				h.off[k-1][0]++
 			}
 		}
 	})
-	s.lean(off, bias)
-	for i := range s.groups {
-		s.groups[i].comeHome(off[start[i]:start[i+1]])
+	err := s.each(ctx, jobs, func(b *brokenGroup) {
+		off := h.off[b.begin-1:][:len(b.nodes)]
+		h.lean(b, off, bias)
+		b.comeHome(&s.l.room, off)
+	})
+	if err != nil {
+		return err
 	}
 	s.findSame()
-	err := s.each(ctx, jobs, func(b *brokenGroup) {
+	err = s.each(ctx, jobs, func(b *brokenGroup) {
 		if &s.groups[b.same] == b && b.homing {
-			b.near = exact.Solve(b.problem, b.again())
+			b.near = s.exactly(b.problem, b.again())
 		}
 	})
 	if err != nil {
@@ -135,44 +148,26 @@ func (s *solver) restore(c choice) {
 	}
 }
 
-// nodes is the number of nodes of all broken groups.
-func (s *solver) nodes() int {
-	n := 0
-	for i := range s.groups {
-		n += len(s.groups[i].nodes)
-	}
-	return n
-}
-
 // leanScale is what a figure away from home costs, so that the area of a node can count as a fraction of it.
 const leanScale = 64
 
 // lean makes the fuller mask dearer: bias is what the area of an average node on A costs more than on B, in figures away from home.
-func (s *solver) lean(off [][2]int64, bias float64) {
-	sum := 0.0
-	for i := range s.groups {
-		for _, u := range s.groups[i].nodes {
-			sum += s.l.area[u]
-		}
-	}
-	k := 0
-	for i := range s.groups {
-		for _, u := range s.groups[i].nodes {
-			o := &off[k]
-			k++
-			o[0] *= leanScale
-			o[1] *= leanScale
-			if lean := int64(math.Round(leanScale * bias * s.l.area[u] * float64(len(off)) / sum)); lean > 0 {
-				o[0] += lean
-			} else {
-				o[1] -= lean
-			}
+func (h *homing) lean(b *brokenGroup, off [][2]int64, bias float64) {
+	for k, u := range b.nodes {
+		o := &off[k]
+		o[0] *= leanScale
+		o[1] *= leanScale
+		if lean := int64(math.Round(leanScale * bias * h.s.l.area[u] * float64(len(h.off)) / h.area)); lean > 0 {
+			o[0] += lean
+		} else {
+			o[1] -= lean
 		}
 	}
 }
 
 // comeHome adds the cheapest aim to the problem of a group; off tells what each mask costs each node.
-func (b *brokenGroup) comeHome(off [][2]int64) {
+// The problem lies in room.
+func (b *brokenGroup) comeHome(room *arena.Slab, off [][2]int64) {
 	sum := int64(1)
 	for _, o := range off {
 		sum += o[0] + o[1]
@@ -190,11 +185,17 @@ func (b *brokenGroup) comeHome(off [][2]int64) {
 		return
 	}
 	b.homeUnit = sum
-	p := &exact.Problem{Nodes: b.weighed.Nodes, Edges: make([]exact.Edge, len(b.weighed.Edges)), Fixed: b.weighed.Fixed, Cost: make([][2]int64, b.weighed.Nodes)}
+	p := b.home
+	if p == nil {
+		p = &exact.Problem{Nodes: b.weighed.Nodes, Edges: arena.CutDirty[exact.Edge](room, len(b.weighed.Edges)),
+			Fixed: b.weighed.Fixed, Cost: arena.CutDirty[[2]int64](room, b.weighed.Nodes)}
+		b.home = p
+	}
 	for i, e := range b.weighed.Edges {
 		e.Weight *= sum
 		p.Edges[i] = e
 	}
+	clear(p.Cost)
 	for k, c := range b.weighed.Cost {
 		p.Cost[k] = [2]int64{c[0] * sum, c[1] * sum}
 	}

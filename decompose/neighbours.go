@@ -9,29 +9,23 @@ import (
 // neighbours are the near pairs of nodes, each once, under its lower node, in ascending order. The low bit of an entry says that the
 // pair is nearer than any_mask_spacing.
 type neighbours struct {
-	start   *arena.Array[uint32] // entries of node i: start[i] to end[i]
-	end     *arena.Array[uint32]
-	entries *arena.Array[uint32]
+	start   []uint32 // entries of node i: start[i] to end[i]
+	end     []uint32
+	entries []uint32
 	pairs   int64
 	tooNear int64 // pairs nearer than any_mask_spacing
 }
 
 // of gives the entries of a node: higher nodes near to it, shifted by one bit.
 func (n *neighbours) of(i uint32) []uint32 {
-	return n.entries.Data[n.start.Data[i]:n.end.Data[i]]
-}
-
-func (n *neighbours) free() {
-	n.start.Free()
-	n.end.Free()
-	n.entries.Free()
+	return n.entries[n.start[i]:n.end[i]]
 }
 
 // gather turns near pairs of flat figures into those of nodes: it maps them, sorts them by counting, and drops what is double or
 // within one node, or between two pieces of one stitch that overlap. The blocks are overwritten on the way.
-func gather(blocks [][]uint64, nodeOf []uint32, nodes int, given *givenStitches) *neighbours {
-	n := &neighbours{start: arena.New[uint32](nodes + 1), end: arena.New[uint32](nodes + 1)}
-	start, end := n.start.Data, n.end.Data
+func gather(room *arena.Slab, blocks [][]uint64, nodeOf []uint32, nodes int, given *givenStitches) *neighbours {
+	n := &neighbours{start: arena.Cut[uint32](room, nodes+1), end: arena.CutDirty[uint32](room, nodes+1)}
+	start, end := n.start, n.end
 	total := 0
 	for b, block := range blocks {
 		kept := block[:0]
@@ -56,8 +50,8 @@ func gather(blocks [][]uint64, nodeOf []uint32, nodes int, given *givenStitches)
 		start[i], next = next, next+start[i]
 	}
 	copy(end, start)
-	n.entries = arena.New[uint32](total)
-	entries := n.entries.Data
+	n.entries = arena.CutDirty[uint32](room, total)
+	entries := n.entries
 	for _, block := range blocks {
 		for _, q := range block {
 			u := q >> pairShift

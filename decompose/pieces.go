@@ -50,7 +50,7 @@ func (s *solver) findPieces(ctx context.Context, jobs int) error {
 	if rules == nil || len(s.groups) == 0 {
 		return nil
 	}
-	parts := make(map[uint32]*geom.Parts, s.nodes())
+	parts := make(map[uint32]*geom.Parts, s.nodes)
 	for i := range s.groups {
 		for _, u := range s.groups[i].nodes {
 			parts[u] = &geom.Parts{}
@@ -287,7 +287,7 @@ func (s *solver) leastCuts(b *brokenGroup) (set []int, known bool) {
 	if !b.cutting {
 		trial.cutting = true
 		s.weigh(&trial, nil)
-		trial.solution = trial.solved(b.again())
+		trial.solution = s.solved(&trial, b.again())
 		trial.masks = trial.spread(trial.solution.Masks)
 	}
 	if !trial.solution.Proved {

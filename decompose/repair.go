@@ -6,7 +6,6 @@ import (
 	"math"
 	"slices"
 
-	"maskpair/decompose/exact"
 	"maskpair/decompose/geom"
 )
 
@@ -52,8 +51,7 @@ func (e *explainer) repairs(ctx context.Context, res *LayerResult, jobs int) err
 	}
 	e.l.geometryOf(e.more)
 	return e.solver.each(ctx, jobs, func(b *brokenGroup) {
-		k, _ := e.of(b.nodes[0])
-		if u := byGroup[int32(k)]; u != nil {
+		if u := byGroup[int32(e.indexOf(b))]; u != nil {
 			if u.Repair = e.repair(b, u.Top); u.Repair == nil {
 				u.NotComputed = append(u.NotComputed, "repair")
 			}
@@ -77,7 +75,7 @@ func (e *explainer) repair(b *brokenGroup, top string) []Pair {
 			p.Edges[i].Weight = (list[i].Widen*int64(len(b.edges)+1) + 1) * int64(len(b.edges)+1)
 		}
 	}
-	sol := exact.Solve(p, b.again())
+	sol := e.exactly(p, b.again())
 	if !sol.Proved {
 		return nil
 	}

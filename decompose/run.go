@@ -134,6 +134,7 @@ func (r *Run) layer(ctx context.Context, i int, orders Orderer) error {
 	if err != nil {
 		return err
 	}
+	defer l.leave()
 	l.classes = r.classes
 	r.layers = append(r.layers, l)
 	v.layout = l
@@ -149,8 +150,7 @@ func (r *Run) layer(ctx context.Context, i int, orders Orderer) error {
 	}
 	a := l.assign(o)
 	r.assigned = append(r.assigned, a)
-	s := newSolver(l, a, o)
-	s.opt = &r.opt
+	s := newSolver(l, a, o, &r.opt)
 	if err := s.solve(ctx, r.opt.jobs()); err != nil {
 		return err
 	}

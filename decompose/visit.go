@@ -109,43 +109,65 @@ func (f *flat) figureBox(figure uint32, at placement) Box {
 	return at.applyBox(f.forms.of[fig.Outline-1].box)
 }
 
+// eachFigureOf calls fn for every flat figure of a top that belongs to some nodes, as eachFigure does.
+func (l *layout) eachFigureOf(top int, nodes *bitset, fn func(ordinal, figure uint32, at placement, odd *oddFigure)) {
+	f, node := l.flat, l.nodeOf.Data
+	f.visit(top, func(s int32, at placement, placed bool, first uint32) {
+		own := f.list[s]
+		if own == nil || !placed {
+			l.eachOwn(top, s, at, placed, first, func(o uint32) bool { return nodes.has(node[o]) }, fn)
+			return
+		}
+		for k, n := range node[first:][:len(own)] {
+			if nodes.has(n) {
+				fn(first+uint32(k), own[k], at, nil)
+			}
+		}
+	})
+}
+
 // eachFigure calls fn for every flat figure of a top: its ordinal, its drawn figure, and its box in work units of the top.
 func (l *layout) eachFigure(top int, wanted func(ordinal uint32) bool, fn func(ordinal, figure uint32, at placement, odd *oddFigure)) {
-	f := l.flat
-	f.visit(top, func(s int32, at placement, placed bool, first uint32) {
-		f.ownFigures(s, func(k, figure uint32) {
-			if !wanted(first + k) {
-				return
-			}
-			if placed {
-				fn(first+k, figure, at, nil)
-				return
-			}
-			if odd := l.odd[top].find(first + k); odd != nil {
-				fn(first+k, figure, at, odd)
-			}
-		})
+	l.flat.visit(top, func(s int32, at placement, placed bool, first uint32) {
+		l.eachOwn(top, s, at, placed, first, wanted, fn)
+	})
+}
+
+// eachOwn is eachFigure for the own figures of one placement.
+func (l *layout) eachOwn(top int, s int32, at placement, placed bool, first uint32, wanted func(ordinal uint32) bool,
+	fn func(ordinal, figure uint32, at placement, odd *oddFigure)) {
+	l.flat.ownFigures(s, func(k, figure uint32) {
+		if !wanted(first + k) {
+			return
+		}
+		if placed {
+			fn(first+k, figure, at, nil)
+			return
+		}
+		if odd := l.odd[top].find(first + k); odd != nil {
+			fn(first+k, figure, at, odd)
+		}
 	})
 }
 
 // boxes gives the box of every node, in work units of its top. It is worked out at the first call.
 func (l *layout) boxes() []Box {
 	if l.box != nil {
-		return l.box.Data
+		return l.box
 	}
-	l.box = arena.New[Box](l.nodes)
-	box := l.box.Data
+	l.box = arena.CutDirty[Box](&l.room, l.nodes)
+	box := l.box
 	for i := range box {
 		box[i] = emptyBox
 	}
 	node := l.nodeOf.Data
 	for top := range l.flat.h.tops {
-		l.eachFigure(top, func(uint32) bool { return true }, func(ordinal, figure uint32, at placement, odd *oddFigure) {
-			n := node[ordinal]
+		l.eachFigureOf(top, nil, func(ordinal, figure uint32, at placement, odd *oddFigure) {
+			b := &box[node[ordinal]]
 			if odd != nil {
-				box[n] = box[n].join(odd.form.box)
+				*b = b.join(odd.form.box)
 			} else {
-				box[n] = box[n].join(l.flat.figureBox(figure, at))
+				*b = b.join(l.flat.figureBox(figure, at))
 			}
 		})
 	}
@@ -165,19 +187,55 @@ func (l *layout) geometryOf(wanted map[uint32]*geom.Parts) {
 // geometryIn gathers the geometry of wanted nodes from one top.
 func (l *layout) geometryIn(top int, wanted map[uint32]*geom.Parts) {
 	node := l.nodeOf.Data
-	want := make([]uint64, (l.nodes+len(l.area)+63)/64)
+	nodes := newBitset(l.nodes + len(l.area))
 	for n := range wanted {
-		want[n>>6] |= 1 << (n & 63)
+		nodes.add(n)
 	}
-	l.eachFigure(top, func(o uint32) bool { return want[node[o]>>6]>>(node[o]&63)&1 != 0 },
-		func(ordinal, figure uint32, at placement, odd *oddFigure) {
-			parts := wanted[node[ordinal]]
-			if odd != nil {
-				l.odd[top].forms.place(&odd.form, placement{}, parts)
-			} else {
-				l.flat.parts(figure, at, parts)
-			}
-		})
+	// By rank: the geometry, and how many rectangles it will have.
+	parts, count := make([]*geom.Parts, nodes.makeRanks()), make([]int32, len(wanted))
+	total := 0
+	rankOf := func(ordinal uint32) int {
+		k, _ := nodes.rank(node[ordinal])
+		return k
+	}
+	l.eachFigureOf(top, nodes, func(ordinal, figure uint32, at placement, odd *oddFigure) {
+		n := l.flat.rectangles(figure, odd)
+		count[rankOf(ordinal)] += int32(n)
+		total += n
+	})
+	room := arena.CutDirty[geom.Rect](&l.room, total)
+	for n, p := range wanted {
+		k, _ := nodes.rank(n)
+		parts[k] = p
+		if p.Rects == nil && count[k] > 0 {
+			p.Rects, room = room[:0:count[k]], room[count[k]:]
+		}
+	}
+	l.eachFigureOf(top, nodes, func(ordinal, figure uint32, at placement, odd *oddFigure) {
+		p := parts[rankOf(ordinal)]
+		if odd != nil {
+			l.odd[top].forms.place(&odd.form, placement{}, p)
+		} else {
+			l.flat.parts(figure, at, p)
+		}
+	})
+}
+
+// rectangles is the number of rectangles that a figure is made of; none where it is a polygon.
+func (f *flat) rectangles(figure uint32, odd *oddFigure) int {
+	fm := (*form)(nil)
+	switch o := f.lib.Figures[figure].Outline; {
+	case odd != nil:
+		fm = &odd.form
+	case o == 0:
+		return 1
+	default:
+		fm = &f.forms.of[o-1]
+	}
+	if fm.polygon != nil {
+		return 0
+	}
+	return int(fm.count)
 }
 
 // frame is the lowest cell that holds some figures, as placed.

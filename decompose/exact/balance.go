@@ -1,5 +1,7 @@
 package exact
 
+import "maskpair/gds/arena"
+
 // This file settles, in linear time, the components whose wishes do not contradict each other round any cycle (Harary's balanced signed graphs; König 1936 where all
 // edges are of the opposite kind). Such a component has two assignments without a broken edge, one the flip of the other.
 
@@ -10,11 +12,17 @@ type parity struct {
 }
 
 func newParity(n int) *parity {
-	p := &parity{link: make([]int32, n), flip: make([]uint8, n)}
+	p := new(parity)
+	p.reset(nil, n)
+	return p
+}
+
+// reset makes every one of n nodes its own representative.
+func (p *parity) reset(room *arena.Slab, n int) {
+	p.link, p.flip = fit(room, p.link, n), fitZeroed(room, p.flip, n)
 	for i := range p.link {
 		p.link[i] = -1
 	}
-	return p
 }
 
 // find gives the representative of i and the parity of i against it, and shortens the way (path halving).
@@ -59,19 +67,36 @@ func addLimited(a, b int64) int64 {
 	return a + b
 }
 
+// settler settles what is balanced.
+type settler struct {
+	room  *arena.Slab // nil: the heap
+	uf    parity
+	odd   []bool     // by representative: not settled
+	first []uint8    // by representative: 0 not met, else 2 plus the parity, later the mask, of the least node
+	side  [][2]int64 // by representative: cost with it on A, on B
+	least []int64    // by representative: sum of the lesser costs
+	edge  []int64    // by representative: the least edge
+	bound []bool     // by representative: a node is held or prefers a mask
+	rest  []int32
+}
+
 // settle finds the components in which the better of the two assignments without a broken edge is an optimum, and writes them into masks. It returns the remaining
-// nodes in ascending order, the union-find over all nodes, and the sum of the costs of what it settled. Of two sides that cost the same, the one with the least node of the component on mask A is
+// nodes in ascending order, which hold until the next call, and the sum of the costs of what it settled. Of two sides that cost the same, the one with the least node of the component on mask A is
 // taken.
 //
 // Beyond the components without costs that is certain where the better side costs no more than all nodes at their least plus the least edge: any other
 // assignment breaks an edge.
-func settle(p *Problem, masks []uint8) (uf *parity, rest []int32, cost int64) {
+func (t *settler) settle(p *Problem, masks []uint8) (rest []int32, cost int64) {
 	n := p.Nodes
-	uf = newParity(n)
-	odd := make([]bool, n) // by representative, after the pass
+	uf := &t.uf
+	uf.reset(t.room, n)
+	odd := fitZeroed(t.room, t.odd, n)
+	first := fitZeroed(t.room, t.first, n)
+	t.odd, t.first = odd, first
 	var loops int64
 	var clashes []int32
-	for _, e := range p.Edges {
+	for i := range p.Edges {
+		e := &p.Edges[i]
 		if e.Weight <= 0 {
 			continue
 		}
@@ -94,20 +119,20 @@ func settle(p *Problem, masks []uint8) (uf *parity, rest []int32, cost int64) {
 		odd[r] = true
 	}
 	plain := p.Fixed == nil && p.Cost == nil
-	first := make([]uint8, n) // by representative: 0 not met, else 2 plus the parity of the least node
-	var side [][2]int64       // by representative: cost with it on A, on B
-	var least []int64         // by representative: sum of the lesser costs; then the least edge
 	if !plain {
-		side, least = make([][2]int64, n), make([]int64, n)
+		t.side, t.least = fitZeroed(t.room, t.side, n), fitZeroed(t.room, t.least, n)
 	}
+	side, least := t.side, t.least
+	balanced := false // some node is in a component that may be settled
 	for i := range n {
 		r, f := uf.find(int32(i))
 		if first[r] == 0 {
 			first[r] = 2 | f
 		}
-		if plain {
+		if plain || odd[r] {
 			continue
 		}
+		balanced = true
 		c := [2]int64{}
 		if p.Cost != nil {
 			c = p.Cost[i]
@@ -121,10 +146,11 @@ func settle(p *Problem, masks []uint8) (uf *parity, rest []int32, cost int64) {
 		side[r][0] = addLimited(side[r][0], c[f])
 		side[r][1] = addLimited(side[r][1], c[1^f])
 	}
-	if !plain {
-		edge := make([]int64, n)
-		for _, e := range p.Edges {
-			if e.Weight > 0 && e.U != e.V {
+	if balanced {
+		edge := fitZeroed(t.room, t.edge, n)
+		t.edge = edge
+		for i := range p.Edges {
+			if e := &p.Edges[i]; e.Weight > 0 && e.U != e.V {
 				r, _ := uf.find(e.U)
 				if edge[r] == 0 || e.Weight < edge[r] {
 					edge[r] = e.Weight
@@ -141,6 +167,7 @@ func settle(p *Problem, masks []uint8) (uf *parity, rest []int32, cost int64) {
 			}
 		}
 	}
+	rest = fit(t.room, t.rest, n)[:0]
 	for i := range n {
 		r, f := uf.find(int32(i))
 		if odd[r] {
@@ -158,31 +185,29 @@ func settle(p *Problem, masks []uint8) (uf *parity, rest []int32, cost int64) {
 		}
 		masks[i] = s ^ f
 	}
-	return uf, rest, cost + loops
+	t.rest = rest
+	return rest, cost + loops
 }
 
 // orient turns each component among the nodes of rest (ascending) whose flip costs the same, as no node of it is held or prefers a mask, so that its least node is on
-// mask A.
-func orient(p *Problem, uf *parity, rest []int32, masks []uint8) {
-	if p.Fixed != nil || p.Cost != nil {
-		bound := make([]bool, p.Nodes) // by representative
+// mask A. It follows settle.
+func (t *settler) orient(p *Problem, rest []int32, masks []uint8) {
+	plain := p.Fixed == nil && p.Cost == nil
+	t.bound = fitZeroed(t.room, t.bound, p.Nodes)
+	if !plain {
 		for _, i := range rest {
 			if p.fixed(i) >= 0 || p.Cost != nil && p.Cost[i][0] != p.Cost[i][1] {
-				r, _ := uf.find(i)
-				bound[r] = true
+				r, _ := t.uf.find(i)
+				t.bound[r] = true
 			}
 		}
-		free := make([]int32, 0, len(rest))
-		for _, i := range rest {
-			if r, _ := uf.find(i); !bound[r] {
-				free = append(free, i)
-			}
-		}
-		rest = free
 	}
-	met := make([]uint8, p.Nodes) // by representative: 2 plus the mask of the least node
+	met := fitZeroed(t.room, t.first, p.Nodes)
 	for _, i := range rest {
-		r, _ := uf.find(i)
+		r, _ := t.uf.find(i)
+		if t.bound[r] {
+			continue
+		}
 		if met[r] == 0 {
 			met[r] = 2 | masks[i]
 		}

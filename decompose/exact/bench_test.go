@@ -52,7 +52,7 @@ func BenchmarkOddCycle(b *testing.B) {
 			SmallestOddCycle(p.Nodes, p.Edges)
 		}
 	})
-	f := NewCycleFinder(p.Nodes, p.Edges)
+	f := NewCycleFinder(nil, p.Nodes, p.Edges)
 	b.Run("through", func(b *testing.B) {
 		k := 0
 		for b.Loop() {

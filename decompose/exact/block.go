@@ -1,17 +1,19 @@
 package exact
 
+import "maskpair/gds/arena"
+
 // This file cuts a graph into biconnected blocks (Hopcroft and Tarjan 1973). Unary terms do not count as edges.
 
 // blocks calls visit for each block of g, each block after all blocks that hang below it: top is the node that the block shares with what is above it, or the root of its
 // component, and below are its other nodes in the order of discovery, which keeps neighbours near each other, valid during the call. A node without edges is a block with nothing below. Every node but the roots is
 // below in exactly one block; roots are the least nodes of their components, and done is called for each after the blocks of its component.
-func blocks(g *graph, visit func(top int32, below []int32), done func(root int32)) {
+func blocks(room *arena.Slab, g *graph, visit func(top int32, below []int32), done func(root int32)) {
 	n := g.nodes()
-	rank := make([]int32, n) // order of discovery, from 1
-	low := make([]int32, n)
-	next := make([]int32, n) // next entry of the row to look at
-	up := make([]int32, n)
-	path, open, below := make([]int32, 0, n), make([]int32, 0, n), make([]int32, 0, n)
+	rank := fitZeroed[int32](room, nil, n) // order of discovery, from 1
+	low := fit[int32](room, nil, n)
+	next := fit[int32](room, nil, n) // next entry of the row to look at
+	up := fit[int32](room, nil, n)
+	path, open, below := fit[int32](room, nil, n)[:0], fit[int32](room, nil, n)[:0], fit[int32](room, nil, n)[:0]
 	count := int32(0)
 	discover := func(v, from int32) {
 		count++

@@ -38,10 +38,10 @@ func (s *solver) turns(g *graph, x, y []uint8, work int64) []uint8 {
 	}
 	// With t the turn of a region, an edge between regions is s*[t==t'] where x has its ends alike, and s*[t!=t'] = s - s*[t==t'] where not.
 	p := regions(g, x, region, count)
-	r := newReducer(p, everyNode(int(count)))
+	var r reducer
+	r.load(p, everyNode(int(count)))
 	r.run()
 	k, nodes := r.kernel()
-	r.release()
 	sub := solver{budget: Budget{Work: work, Memory: s.budget.Memory / 8}, quick: true}
 	best, _ := sub.kernel(k)
 	s.work += sub.work + int64(len(p.Edges))*each

@@ -1,5 +1,7 @@
 package exact
 
+import "maskpair/gds/arena"
+
 // This file holds the form in which everything after the first pass sees a problem: a signed graph with unary terms.
 //
 // With x[i] in {0, 1} the mask of node i, and [..] 1 where it holds and 0 elsewhere, the energy is
@@ -94,6 +96,24 @@ func resize[T any](s []T, n int) []T {
 		return make([]T, n, n+n/4)
 	}
 	return s[:n]
+}
+
+// fit is resize with memory from a slab; nil: the heap. T must hold no pointers.
+func fit[T any](room *arena.Slab, s []T, n int) []T {
+	switch {
+	case cap(s) >= n:
+		return s[:n]
+	case room == nil:
+		return make([]T, n)
+	}
+	return arena.CutDirty[T](room, n)
+}
+
+// fitZeroed is fit with every element zero.
+func fitZeroed[T any](room *arena.Slab, s []T, n int) []T {
+	s = fit(room, s, n)
+	clear(s)
+	return s
 }
 
 // zeroed is resize with every element zero.

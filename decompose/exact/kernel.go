@@ -4,6 +4,8 @@ import (
 	"cmp"
 	"math/bits"
 	"slices"
+
+	"maskpair/gds/arena"
 )
 
 // This file solves the kernel block by block, from the leaves of the block tree to its roots.
@@ -16,6 +18,7 @@ import (
 
 // solver is the workspace and the account of one call of Solve.
 type solver struct {
+	room   *arena.Slab // nil: the heap
 	budget Budget
 	work   int64 // spent
 	width  int
@@ -62,12 +65,12 @@ type forest struct {
 // kernel solves g, whose unary terms it uses up, and returns an assignment and a lower bound on the energy.
 func (s *solver) kernel(g *graph) (x []uint8, bound int64) {
 	n := g.nodes()
-	f := &forest{top: make([]int32, n), given: make([][2]uint8, n), order: make([]int32, 0, n), wait: map[int32][]int32{}}
-	s.local = make([]int32, n)
+	f := &forest{top: fit[int32](s.room, nil, n), given: fitZeroed[[2]uint8](s.room, nil, n), order: fit[int32](s.room, nil, n)[:0], wait: map[int32][]int32{}}
+	s.local = fit[int32](s.room, nil, n)
 	for i := range s.local {
 		s.local[i] = -1
 	}
-	blocks(g,
+	blocks(s.room, g,
 		func(top int32, below []int32) { bound += s.block(g, f, top, below) },
 		func(root int32) {
 			f.order = append(f.order, root)
@@ -83,7 +86,7 @@ func (s *solver) kernel(g *graph) (x []uint8, bound int64) {
 			}
 		})
 	bound += s.late(g, f)
-	x = make([]uint8, n)
+	x = fit[uint8](s.room, nil, n)
 	for i := len(f.order) - 1; i >= 0; i-- {
 		v := f.order[i]
 		side := uint8(0)

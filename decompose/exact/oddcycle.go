@@ -1,5 +1,11 @@
 package exact
 
+import (
+	"slices"
+
+	"maskpair/gds/arena"
+)
+
 // This file explains why a graph cannot be satisfied: it finds contradictory cycles, those that go through an odd number of edges of the opposite kind (König 1936; Harary 1953 for
 // edges of both kinds). Every search goes breadth first over neighbours in ascending order, so that one graph always gets the same cycle.
 
@@ -34,7 +40,7 @@ type halfEdge struct {
 // The cycle is simple. The smallest closed walk is searched for in the doubled graph, one node for each node and parity. Where that walk meets a node twice, a simple cycle is
 // searched for exhaustively, up to a fixed number of steps; beyond, the cycle returned is simple and contradictory, but there may be a smaller one.
 func ShortestOddCycle(n int, edges []Edge, through int) []int32 {
-	return NewCycleFinder(n, edges).Through(through)
+	return NewCycleFinder(nil, n, edges).Through(through)
 }
 
 // SmallestOddCycle gives the nodes of the smallest contradictory cycle of a graph, in order, beginning with the least node and going on to the lesser of its two neighbours; nil where there is none.
@@ -42,16 +48,16 @@ func ShortestOddCycle(n int, edges []Edge, through int) []int32 {
 // The answer is exact as long as the walks cross at most 2^26 edges, which is always so where nodes times edges are no more than that, and nearly always where the
 // smallest cycle is short; beyond, it is the smallest of those found.
 func SmallestOddCycle(n int, edges []Edge) []int32 {
-	c, _ := NewCycleFinder(n, edges).Smallest()
+	c, _ := NewCycleFinder(nil, n, edges).Smallest()
 	return c
 }
 
-// NewCycleFinder prepares the search in a graph, in linear time.
-func NewCycleFinder(n int, edges []Edge) *CycleFinder {
-	f := &CycleFinder{edges: edges, start: make([]int32, n+1), loop: -1}
-	counts := func(e Edge) bool { return e.Weight > 0 && e.U != e.V }
-	for _, e := range edges {
-		if counts(e) {
+// NewCycleFinder prepares the search in a graph, in linear time, in memory of the room; nil: the heap.
+func NewCycleFinder(room *arena.Slab, n int, edges []Edge) *CycleFinder {
+	f := &CycleFinder{edges: edges, start: fitZeroed[int32](room, nil, n+1), loop: -1, plain: inOrder(edges)}
+	counts := func(e *Edge) bool { return e.Weight > 0 && e.U != e.V }
+	for i := range edges {
+		if e := &edges[i]; counts(e) {
 			f.start[e.U+1]++
 			f.start[e.V+1]++
 		} else if e.Weight > 0 && !e.Same && (f.loop < 0 || e.U < f.loop) {
@@ -61,74 +67,70 @@ func NewCycleFinder(n int, edges []Edge) *CycleFinder {
 	for i := range n {
 		f.start[i+1] += f.start[i]
 	}
-	// First in the order of edges, then by the other end, which leaves every row in ascending order.
-	rows := func(at func(e int32) (int32, int32, bool), order []int32) []halfEdge {
-		next := append([]int32(nil), f.start[:n]...)
-		out := make([]halfEdge, f.start[n])
-		for _, k := range order {
-			from, to, ok := at(k)
-			if !ok {
-				continue
+	// From edges in order, every row gets first the lesser nodes and then the greater, all in ascending order.
+	next := fit[int32](room, nil, n)
+	copy(next, f.start)
+	f.half = fit[halfEdge](room, nil, int(f.start[n]))
+	for i := range edges {
+		e := &edges[i]
+		if !counts(e) {
+			continue
+		}
+		ask := uint8(1)
+		if e.Same {
+			ask = 0
+		}
+		f.half[next[e.U]] = halfEdge{to: e.V, edge: int32(i), ask: ask}
+		f.half[next[e.V]] = halfEdge{to: e.U, edge: int32(i), ask: ask}
+		next[e.U]++
+		next[e.V]++
+	}
+	if !f.plain {
+		f.plain = f.loop < 0
+		for v := range int32(n) {
+			row := f.row(v)
+			slices.SortStableFunc(row, func(a, b halfEdge) int { return int(a.to) - int(b.to) })
+			for k := 1; k < len(row); k++ {
+				f.plain = f.plain && row[k].to != row[k-1].to
 			}
-			h := halfEdge{to: to, edge: k >> 1}
-			if !edges[k>>1].Same {
-				h.ask = 1
-			}
-			out[next[from]] = h
-			next[from]++
-		}
-		return out
-	}
-	all := make([]int32, 2*len(edges))
-	for k := range all {
-		all[k] = int32(k)
-	}
-	ends := func(k int32) (int32, int32, bool) {
-		e := edges[k>>1]
-		if k&1 != 0 {
-			return e.V, e.U, counts(e)
-		}
-		return e.U, e.V, counts(e)
-	}
-	byFrom := rows(ends, all)
-	order := all[:0]
-	for v := range n {
-		for _, h := range byFrom[f.start[v]:f.start[v+1]] {
-			k := 2 * h.edge
-			if edges[h.edge].U == int32(v) {
-				k++ // the half-edge at the other end, which leads to v
-			}
-			order = append(order, k)
 		}
 	}
-	f.half = rows(ends, order)
-	f.plain = f.loop < 0
-	for v := range int32(n) {
-		row := f.row(v)
-		for k := 1; k < len(row); k++ {
-			f.plain = f.plain && row[k].to != row[k-1].to
-		}
-	}
-	f.from, f.mark, f.depth = make([]int32, 2*n), make([]int32, 2*n), make([]int32, 2*n)
-	f.spot, f.side = make([]int32, n), make([]uint8, n)
-	f.cut()
+	f.from, f.mark, f.depth = fit[int32](room, nil, 2*n), fitZeroed[int32](room, nil, 2*n), fit[int32](room, nil, 2*n)
+	f.spot, f.side = fitZeroed[int32](room, nil, n), fitZeroed[uint8](room, nil, n)
+	f.cut(room)
 	return f
+}
+
+// inOrder tells whether edges are in strict order by U and V, and U below V: there are no loops and no parallel edges then.
+func inOrder(edges []Edge) bool {
+	for i := range edges {
+		e := &edges[i]
+		if e.U >= e.V {
+			return false
+		}
+		if i > 0 {
+			if b := &edges[i-1]; b.U > e.U || b.U == e.U && b.V >= e.V {
+				return false
+			}
+		}
+	}
+	return true
 }
 
 func (f *CycleFinder) row(v int32) []halfEdge { return f.half[f.start[v]:f.start[v+1]] }
 
 // cut finds the biconnected blocks (Hopcroft and Tarjan 1973), and which of them hold contradictory cycles: those with an edge that contradicts the spanning forest of the walk.
-func (f *CycleFinder) cut() {
+func (f *CycleFinder) cut(room *arena.Slab) {
 	n := len(f.start) - 1
-	f.block = make([]int32, len(f.edges))
+	f.block = fit[int32](room, nil, len(f.edges))
 	for e := range f.block {
 		f.block[e] = -1
 	}
-	rank, low, next := make([]int32, n), make([]int32, n), make([]int32, n)
-	by := make([]int32, n) // edge by which a node was reached
-	side := make([]uint8, n)
-	clash := make([]bool, n)
-	var path, open []int32
+	rank, low, next := fitZeroed[int32](room, nil, n), fit[int32](room, nil, n), fit[int32](room, nil, n)
+	by := fit[int32](room, nil, n) // edge by which a node was reached
+	side := fitZeroed[uint8](room, nil, n)
+	clash := fitZeroed[bool](room, nil, n)
+	path, open := fit[int32](room, nil, n)[:0], fit[int32](room, nil, len(f.edges))[:0]
 	var bad []int32
 	count := int32(0)
 	enter := func(v, edge int32) {

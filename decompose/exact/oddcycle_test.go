@@ -138,7 +138,7 @@ func TestOddCyclesAgainstAllCycles(t *testing.T) {
 			if !isOddCycle(edges, c, k) || c[0] != edges[k].U || length > 1 && c[1] != edges[k].V {
 				t.Fatalf("through edge %d of %v: %v is no contradictory cycle that begins with the edge", k, edges, c)
 			}
-			if f := NewCycleFinder(n, edges); length > 1 {
+			if f := NewCycleFinder(nil, n, edges); length > 1 {
 				goal := 2 * edges[k].V
 				if edges[k].Same {
 					goal++
@@ -162,7 +162,7 @@ func TestOddCyclesAgainstAllCycles(t *testing.T) {
 				}
 			}
 		}
-		if c, sure := NewCycleFinder(n, edges).SmallestThrough(some); len(c) != least || !sure || least > 0 && !isOddCycle(edges, c, -1) {
+		if c, sure := NewCycleFinder(nil, n, edges).SmallestThrough(some); len(c) != least || !sure || least > 0 && !isOddCycle(edges, c, -1) {
 			t.Fatalf("through %v of %v: %v, want %d nodes", some, edges, c, least)
 		}
 		c := SmallestOddCycle(n, edges)

@@ -94,7 +94,8 @@ func TestReductionsKeepCosts(t *testing.T) {
 				loops += e.Weight
 			}
 		}
-		r := newReducer(p, everyNode(p.Nodes))
+		var r reducer
+		r.load(p, everyNode(p.Nodes))
 		r.run()
 		g, nodes := r.kernel()
 		if len(nodes) < p.Nodes {
@@ -127,7 +128,8 @@ func TestTwinsMerge(t *testing.T) {
 			}
 		}
 	}
-	r := newReducer(p, everyNode(p.Nodes))
+	var r reducer
+	r.load(p, everyNode(p.Nodes))
 	r.run()
 	if g, _ := r.kernel(); g.nodes() != 0 {
 		t.Errorf("%d nodes are left", g.nodes())
@@ -271,14 +273,14 @@ func TestBlocks(t *testing.T) {
 			}
 		}
 		g, _ := signed(p)
-		want := NewCycleFinder(p.Nodes, p.Edges)
+		want := NewCycleFinder(nil, p.Nodes, p.Edges)
 		of := make([]int, len(p.Edges))
 		for e := range of {
 			of[e] = -1
 		}
 		count := 0
 		below := make([]int, p.Nodes)
-		blocks(g, func(top int32, nodes []int32) {
+		blocks(nil, g, func(top int32, nodes []int32) {
 			in := map[int32]bool{top: true}
 			for _, v := range nodes {
 				in[v] = true

@@ -4,6 +4,8 @@ import (
 	"cmp"
 	"math/bits"
 	"slices"
+
+	"maskpair/gds/arena"
 )
 
 // This file shrinks a problem without losing an optimum.
@@ -27,24 +29,42 @@ type undo struct {
 // for the nodes merged into it, chained; a row is closed up when its node is cleaned. Node numbers in to are kept right when nodes are merged, so that the way from a node to its
 // neighbours goes through its rows alone.
 type reducer struct {
-	to    []int32 // per half-edge: the neighbour
-	mate  []int32
-	s     []int64
-	row   []rowSpan // per node: its own row, and the next in the chain
-	last  []int32   // per node: last row of its chain
-	size  []int32   // per node: half-edges in its rows
-	fresh []int32   // per node: changes since it was cleaned
-	state []uint8
-	h     []int64
-	met   []meeting
+	room  *arena.Slab // nil: the heap
+	half  []rowEntry
+	node  []reducedNode
+	met   []meeting // per node
 	time  int32
 	queue []int32
 	base  int64
 	trail []undo
-	keys  [2][]twinKey
+	local []int32 // per node of the problem: its number here, or -1; then, per node here, its number in the kernel
+
+	// For twins: the nodes that may be some, and the hashes of their neighbours without and with themselves.
+	alive        []int32
+	hash         [2][]uint64
+	open, closed repeats
+	keys, sorted []twinKey
+	count        []int32
+	pairs        []twinPair
+	kept         []int32
 }
 
-type rowSpan struct{ start, end, next int32 }
+// rowEntry is a half-edge: an edge as one of its ends sees it.
+type rowEntry struct {
+	s        int64
+	to, mate int32
+}
+
+// reducedNode is what is known of a node.
+type reducedNode struct {
+	h          int64
+	start, end int32 // its own row
+	next       int32 // node with the next row of the chain, or -1
+	last       int32 // node with the last row of its chain
+	size       int32 // half-edges in its rows
+	fresh      int32 // changes since it was cleaned
+	state      uint8
+}
 
 // meeting says in which row walk a node was met, and at which half-edge.
 type meeting struct{ time, half int32 }
@@ -56,22 +76,21 @@ const (
 	twofold             // may have parallel edges
 )
 
-// newReducer takes in the part of a problem that rest (ascending) spans. Held nodes become unary terms and are left without edges.
-func newReducer(p *Problem, rest []int32) *reducer {
+// load takes in the part of a problem that rest (ascending) spans. Held nodes become unary terms and are left without edges.
+func (r *reducer) load(p *Problem, rest []int32) {
 	n := len(rest)
-	local := make([]int32, p.Nodes)
+	r.local = fit(r.room, r.local, max(p.Nodes, n))
+	local := r.local
 	for i := range local {
 		local[i] = -1
 	}
 	for i, v := range rest {
 		local[v] = int32(i)
 	}
-	r := &reducer{
-		row: make([]rowSpan, n), last: make([]int32, n), size: make([]int32, n), fresh: make([]int32, n),
-		state: make([]uint8, n), h: make([]int64, n), met: make([]meeting, n),
-		queue: make([]int32, 0, n+n/2), trail: make([]undo, 0, n),
-	}
+	r.node, r.met, r.time, r.base = fitZeroed(r.room, r.node, n), fitZeroed(r.room, r.met, n), 0, 0
+	r.queue, r.trail = fit(r.room, r.queue, n+n/2)[:0], fit(r.room, r.trail, n)[:0]
 	for i, v := range rest {
+		nd := &r.node[i]
 		k := p.fixed(v)
 		if p.Cost != nil {
 			c := p.Cost[v]
@@ -79,13 +98,17 @@ func newReducer(p *Problem, rest []int32) *reducer {
 				r.base += c[k]
 			} else {
 				r.base += c[0]
-				r.h[i] = c[1] - c[0]
+				nd.h = c[1] - c[0]
 			}
 		}
 		if k >= 0 {
-			r.state[i] = gone
+			nd.state = gone
 			r.trail = append(r.trail, undo{int32(i), -1, uint8(k)})
 		}
+	}
+	parallel := uint8(twofold)
+	if inOrder(p.Edges) {
+		parallel = 0
 	}
 	for i := range p.Edges {
 		e := &p.Edges[i]
@@ -109,18 +132,18 @@ func newReducer(p *Problem, rest []int32) *reducer {
 		case b >= 0:
 			r.lean(u, s, uint8(b))
 		default:
-			r.size[u]++
-			r.size[v]++
+			r.node[u].size++
+			r.node[v].size++
 		}
 	}
 	at := int32(0)
-	for i := range r.row {
-		r.row[i] = rowSpan{at, at, -1}
-		r.last[i] = int32(i)
-		r.state[i] |= twofold
-		at += r.size[i]
+	for i := range r.node {
+		nd := &r.node[i]
+		nd.start, nd.end, nd.next, nd.last = at, at, -1, int32(i)
+		nd.state |= parallel
+		at += nd.size
 	}
-	r.to, r.mate, r.s = make([]int32, at), make([]int32, at), make([]int64, at)
+	r.half = fit(r.room, r.half, int(at))
 	for i := range p.Edges {
 		e := &p.Edges[i]
 		u, v := local[e.U], local[e.V]
@@ -131,40 +154,41 @@ func newReducer(p *Problem, rest []int32) *reducer {
 		if e.Same {
 			s = -s
 		}
-		a, b := r.row[u].end, r.row[v].end
-		r.to[a], r.mate[a], r.s[a] = v, b, s
-		r.to[b], r.mate[b], r.s[b] = u, a, s
-		r.row[u].end++
-		r.row[v].end++
+		nu, nv := &r.node[u], &r.node[v]
+		r.half[nu.end] = rowEntry{s, v, nv.end}
+		r.half[nv.end] = rowEntry{s, u, nu.end}
+		nu.end++
+		nv.end++
 	}
-	return r
 }
 
 // lean turns an edge to a node that is on mask x into a unary term.
 func (r *reducer) lean(v int32, s int64, x uint8) {
 	if x != 0 {
-		r.h[v] += s
+		r.node[v].h += s
 	} else {
-		r.h[v] -= s
+		r.node[v].h -= s
 		r.base += s
 	}
 }
 
 // clean merges the parallel edges of v and drops deleted ones from its rows.
 func (r *reducer) clean(v int32) {
-	if r.state[v]&twofold != 0 {
+	nv := &r.node[v]
+	if nv.state&twofold != 0 {
 		r.time++
-		for c := v; c >= 0; c = r.row[c].next {
-			for k := r.row[c].start; k < r.row[c].end; k++ {
-				if r.s[k] == 0 {
+		for c := v; c >= 0; c = r.node[c].next {
+			for k := r.node[c].start; k < r.node[c].end; k++ {
+				e := &r.half[k]
+				if e.s == 0 {
 					continue
 				}
-				m := &r.met[r.to[k]]
+				m := &r.met[e.to]
 				if m.time != r.time {
 					*m = meeting{r.time, k}
 					continue
 				}
-				sum := r.s[m.half] + r.s[k]
+				sum := r.half[m.half].s + e.s
 				r.set(k, 0)
 				r.set(m.half, sum)
 				if sum == 0 {
@@ -172,40 +196,42 @@ func (r *reducer) clean(v int32) {
 				}
 			}
 		}
-		r.state[v] &^= twofold
+		nv.state &^= twofold
 	}
 	size, kept := int32(0), v
-	for c := v; c >= 0; c = r.row[c].next {
-		span := &r.row[c]
-		at := span.start
-		for k := span.start; k < span.end; k++ {
-			if r.s[k] == 0 {
+	for c := v; c >= 0; c = r.node[c].next {
+		row := &r.node[c]
+		at := row.start
+		for k := row.start; k < row.end; k++ {
+			e := &r.half[k]
+			if e.s == 0 {
 				continue
 			}
 			if k != at {
-				r.to[at], r.mate[at], r.s[at] = r.to[k], r.mate[k], r.s[k]
-				r.mate[r.mate[at]] = at
+				r.half[at] = *e
+				r.half[e.mate].mate = at
 			}
 			at++
 		}
-		span.end = at
-		size += at - span.start
-		if at > span.start && c != v {
+		row.end = at
+		size += at - row.start
+		if at > row.start && c != v {
 			// Empty rows drop out of the chain, or a node into which thousands have been merged would get slow.
-			r.row[kept].next = c
+			r.node[kept].next = c
 			kept = c
 		}
 	}
-	r.row[kept].next = -1
-	r.last[v] = kept
-	r.size[v] = size
-	r.fresh[v] = 0
+	r.node[kept].next = -1
+	nv.last = kept
+	nv.size = size
+	nv.fresh = 0
 }
 
 // set gives both halves of an edge a new s.
 func (r *reducer) set(k int32, s int64) {
-	r.s[k] = s
-	r.s[r.mate[k]] = s
+	e := &r.half[k]
+	e.s = s
+	r.half[e.mate].s = s
 }
 
 // long is the number of half-edges from which a node is looked at only after a quarter of them may have changed, so that a hub is not walked for each neighbour it loses.
@@ -213,31 +239,32 @@ const long = 64
 
 // touch puts a node in the queue.
 func (r *reducer) touch(v int32) {
-	r.fresh[v]++
-	if r.state[v]&(queued|gone) != 0 || r.size[v] > long && r.fresh[v] < r.size[v]/4 {
+	nd := &r.node[v]
+	nd.fresh++
+	if nd.state&(queued|gone) != 0 || nd.size > long && nd.fresh < nd.size/4 {
 		return
 	}
-	r.state[v] |= queued
+	nd.state |= queued
 	r.queue = append(r.queue, v)
 }
 
 // run applies the first rule until it applies no more, then the twin rule, and so on while the twin rule finds much; each of its rounds costs a walk over the graph.
 func (r *reducer) run() {
 	const rounds = 6
-	for v := range r.row {
-		r.fresh[v] = 1
+	for v := range r.node {
+		r.node[v].fresh = 1
 	}
 	for round := 0; ; round++ {
-		for v := range r.row {
-			if r.fresh[v] > 0 && r.state[v]&(queued|gone) == 0 {
-				r.state[v] |= queued
+		for v := range r.node {
+			if nd := &r.node[v]; nd.fresh > 0 && nd.state&(queued|gone) == 0 {
+				nd.state |= queued
 				r.queue = append(r.queue, int32(v))
 			}
 		}
 		for at := 0; at < len(r.queue); at++ {
 			v := r.queue[at]
-			r.state[v] &^= queued
-			if r.state[v]&gone == 0 {
+			r.node[v].state &^= queued
+			if r.node[v].state&gone == 0 {
 				r.visit(v)
 			}
 		}
@@ -253,19 +280,20 @@ func (r *reducer) visit(v int32) {
 	r.clean(v)
 	var sum, most int64
 	heavy := int32(-1)
-	for c := v; c >= 0; c = r.row[c].next {
-		for k := r.row[c].start; k < r.row[c].end; k++ {
-			a := magnitude(r.s[k])
+	for c := v; c >= 0; c = r.node[c].next {
+		for k := r.node[c].start; k < r.node[c].end; k++ {
+			e := &r.half[k]
+			a := magnitude(e.s)
 			sum += a
-			if a > most || a == most && r.to[k] < r.to[heavy] {
+			if a > most || a == most && e.to < r.half[heavy].to {
 				heavy, most = k, a
 			}
 		}
 	}
-	h := magnitude(r.h[v])
+	h := magnitude(r.node[v].h)
 	if h >= sum {
 		var x uint8
-		if r.h[v] < 0 {
+		if r.node[v].h < 0 {
 			x = 1
 		}
 		r.hold(v, x)
@@ -273,26 +301,26 @@ func (r *reducer) visit(v int32) {
 	}
 	if most >= sum-most+h {
 		var flip uint8
-		if r.s[heavy] > 0 {
+		if r.half[heavy].s > 0 {
 			flip = 1
 		}
-		r.merge(v, r.to[heavy], flip)
+		r.merge(v, r.half[heavy].to, flip)
 	}
 }
 
 // hold takes v out with mask x.
 func (r *reducer) hold(v int32, x uint8) {
-	r.state[v] |= gone
+	r.node[v].state |= gone
 	r.trail = append(r.trail, undo{v, -1, x})
 	if x != 0 {
-		r.base += r.h[v]
+		r.base += r.node[v].h
 	}
-	for c := v; c >= 0; c = r.row[c].next {
-		for k := r.row[c].start; k < r.row[c].end; k++ {
-			if s := r.s[k]; s != 0 {
-				r.lean(r.to[k], s, x)
+	for c := v; c >= 0; c = r.node[c].next {
+		for k := r.node[c].start; k < r.node[c].end; k++ {
+			if e := r.half[k]; e.s != 0 {
+				r.lean(e.to, e.s, x)
 				r.set(k, 0)
-				r.touch(r.to[k])
+				r.touch(e.to)
 			}
 		}
 	}
@@ -300,7 +328,7 @@ func (r *reducer) hold(v int32, x uint8) {
 
 // merge takes one of v and j out, the one with fewer half-edges, with x[v] = x[j] ^ flip, and gives its edges to the other.
 func (r *reducer) merge(v, j int32, flip uint8) {
-	if r.size[v] > r.size[j] {
+	if r.node[v].size > r.node[j].size {
 		v, j = j, v
 	}
 	r.absorb(v, j, flip)
@@ -308,41 +336,42 @@ func (r *reducer) merge(v, j int32, flip uint8) {
 
 // absorb takes v out with x[v] = x[j] ^ flip, and gives its edges to j.
 func (r *reducer) absorb(v, j int32, flip uint8) {
-	r.state[v] |= gone
+	nv, nj := &r.node[v], &r.node[j]
+	nv.state |= gone
 	r.trail = append(r.trail, undo{v, j, flip})
 	if flip != 0 {
-		r.base += r.h[v]
-		r.h[j] -= r.h[v]
+		r.base += nv.h
+		nj.h -= nv.h
 	} else {
-		r.h[j] += r.h[v]
+		nj.h += nv.h
 	}
-	for c := v; c >= 0; c = r.row[c].next {
-		for k := r.row[c].start; k < r.row[c].end; k++ {
-			s, w := r.s[k], r.to[k]
-			if s == 0 {
+	for c := v; c >= 0; c = r.node[c].next {
+		for k := r.node[c].start; k < r.node[c].end; k++ {
+			e := r.half[k]
+			if e.s == 0 {
 				continue
 			}
-			if w == j {
+			if e.to == j {
 				if flip == 0 {
-					r.base += s
+					r.base += e.s
 				}
 				r.set(k, 0)
 				continue
 			}
 			if flip != 0 {
 				// s*[x[v]==x[w]] = s*[x[j]!=x[w]] = s - s*[x[j]==x[w]]
-				r.base += s
-				r.set(k, -s)
+				r.base += e.s
+				r.set(k, -e.s)
 			}
-			r.to[r.mate[k]] = j
-			r.state[w] |= twofold
-			r.touch(w)
+			r.half[e.mate].to = j
+			r.node[e.to].state |= twofold
+			r.touch(e.to)
 		}
 	}
-	r.row[r.last[j]].next = v
-	r.last[j] = r.last[v]
-	r.size[j] += r.size[v]
-	r.state[j] |= twofold
+	r.node[nj.last].next = v
+	nj.last = nv.last
+	nj.size += nv.size
+	nj.state |= twofold
 	r.touch(j)
 }
 
@@ -363,47 +392,47 @@ type twinPair struct {
 //
 // Pairs found in one pass may all be merged: when twins u and u' are merged, two twins among their neighbours still see the merged node with edges in their old proportion.
 func (r *reducer) twins() bool {
-	n := len(r.row)
-	open, closed := newRepeats(n), newRepeats(n)
-	hashOf := func(v int32) (uint64, bool) {
-		if r.state[v]&gone != 0 || r.size[v] > long {
-			return 0, false
-		}
-		var hash uint64
-		for c := v; c >= 0; c = r.row[c].next {
-			for _, w := range r.to[r.row[c].start:r.row[c].end] {
-				hash += scramble(uint64(w))
-			}
-		}
-		return hash, true
-	}
-	living := 0
+	n := len(r.node)
+	r.open.reset(r.room, n)
+	r.closed.reset(r.room, n)
+	r.hash[0], r.hash[1] = fit(r.room, r.hash[0], n)[:0], fit(r.room, r.hash[1], n)[:0]
+	r.alive = fit(r.room, r.alive, n)[:0]
 	for v := range int32(n) {
-		if r.fresh[v] > 0 && r.state[v]&gone == 0 {
+		nd := &r.node[v]
+		if nd.state&gone != 0 {
+			continue
+		}
+		if nd.fresh > 0 {
 			r.clean(v)
-			r.fresh[v] = 1 // still to be visited
+			nd.fresh = 1 // still to be visited
 		}
-		if hash, ok := hashOf(v); ok {
-			living++
-			open.note(hash)
-			closed.note(hash + scramble(uint64(v)))
+		if nd.size > long {
+			continue
 		}
-	}
-	r.keys[0], r.keys[1] = r.keys[0][:0], r.keys[1][:0]
-	for v := range int32(n) {
-		if hash, ok := hashOf(v); ok {
-			if open.twice(hash) {
-				r.keys[0] = append(r.keys[0], twinKey{hash, v})
-			}
-			if hash += scramble(uint64(v)); closed.twice(hash) {
-				r.keys[1] = append(r.keys[1], twinKey{hash, v})
+		var open uint64
+		for c := v; c >= 0; c = r.node[c].next {
+			for k := r.node[c].start; k < r.node[c].end; k++ {
+				open += scramble(uint64(r.half[k].to))
 			}
 		}
+		closed := open + scramble(uint64(v))
+		r.open.note(open)
+		r.closed.note(closed)
+		r.hash[0], r.hash[1] = append(r.hash[0], open), append(r.hash[1], closed)
+		r.alive = append(r.alive, v)
 	}
-	merged := r.mergeTwins(r.keys[0])
-	merged += r.mergeTwins(r.keys[1])
+	merged := 0
+	for i, seen := range [2]*repeats{&r.open, &r.closed} {
+		r.keys = fit(r.room, r.keys, len(r.alive))[:0]
+		for k, v := range r.alive {
+			if hash := r.hash[i][k]; seen.twice(hash) {
+				r.keys = append(r.keys, twinKey{hash, v})
+			}
+		}
+		merged += r.mergeTwins()
+	}
 	const many = 64 // one in so many: fewer are not worth another round
-	return merged*many > living
+	return merged*many > len(r.alive)
 }
 
 // repeats tells hashes that may have been noted more than once from those that were noted once: two bits for each of several places per node.
@@ -412,12 +441,13 @@ type repeats struct {
 	mask       uint64
 }
 
-func newRepeats(n int) *repeats {
+// reset forgets all hashes and makes room for n.
+func (r *repeats) reset(room *arena.Slab, n int) {
 	places := uint64(64)
 	for places < 8*uint64(n) {
 		places *= 2
 	}
-	return &repeats{make([]uint64, places/64), make([]uint64, places/64), places - 1}
+	r.once, r.more, r.mask = fitZeroed(room, r.once, int(places/64)), fitZeroed(room, r.more, int(places/64)), places-1
 }
 
 func (r *repeats) note(hash uint64) {
@@ -432,41 +462,74 @@ func (r *repeats) twice(hash uint64) bool {
 	return r.more[h/64]>>(h&63)&1 != 0
 }
 
-// mergeTwins merges the twins among nodes of equal hash, and returns how many it took out.
-func (r *reducer) mergeTwins(keys []twinKey) int {
-	slices.SortFunc(keys, func(a, b twinKey) int {
-		if c := cmp.Compare(a.hash, b.hash); c != 0 {
-			return c
+// sortKeys orders the keys, which come in the order of their nodes, by hash and node: by leading bits first, as hashes spread evenly.
+func (r *reducer) sortKeys() {
+	compare := func(a, b twinKey) int {
+		if a.hash != b.hash {
+			return cmp.Compare(a.hash, b.hash)
 		}
 		return cmp.Compare(a.node, b.node)
-	})
-	var pairs []twinPair
-	var kept []int32
-	for i := range keys {
-		v := keys[i].node
-		if i == 0 || keys[i].hash != keys[i-1].hash {
-			kept = kept[:0]
+	}
+	const few = 1 << 6
+	if len(r.keys) < few {
+		slices.SortFunc(r.keys, compare)
+		return
+	}
+	wide := bits.Len(uint(len(r.keys)))
+	shift := 64 - wide
+	r.count = fitZeroed(r.room, r.count, 1<<wide)
+	for i := range r.keys {
+		r.count[r.keys[i].hash>>shift]++
+	}
+	at := int32(0)
+	for i, n := range r.count {
+		r.count[i], at = at, at+n
+	}
+	r.sorted = fit(r.room, r.sorted, len(r.keys))
+	for _, k := range r.keys {
+		c := &r.count[k.hash>>shift]
+		r.sorted[*c] = k
+		*c++
+	}
+	r.keys, r.sorted = r.sorted, r.keys
+	from := int32(0)
+	for _, to := range r.count {
+		if to-from > 1 {
+			slices.SortFunc(r.keys[from:to], compare)
 		}
-		if r.state[v]&gone != 0 {
+		from = to
+	}
+}
+
+// mergeTwins merges the twins among nodes of equal hash, and returns how many it took out.
+func (r *reducer) mergeTwins() int {
+	r.sortKeys()
+	r.pairs = r.pairs[:0]
+	for i := range r.keys {
+		v := r.keys[i].node
+		if i == 0 || r.keys[i].hash != r.keys[i-1].hash {
+			r.kept = r.kept[:0]
+		}
+		if r.node[v].state&gone != 0 {
 			continue
 		}
 		joined := false
 		const memory = 8
-		for _, u := range kept[max(0, len(kept)-memory):] {
+		for _, u := range r.kept[max(0, len(r.kept)-memory):] {
 			if flip, ok := r.compare(u, v); ok {
-				pairs = append(pairs, twinPair{u, v, flip})
+				r.pairs = append(r.pairs, twinPair{u, v, flip})
 				joined = true
 				break
 			}
 		}
 		if !joined {
-			kept = append(kept, v)
+			r.kept = append(r.kept, v)
 		}
 	}
-	for _, p := range pairs {
+	for _, p := range r.pairs {
 		r.absorb(p.drop, p.keep, p.flip)
 	}
-	return len(pairs)
+	return len(r.pairs)
 }
 
 // compare tells whether u and v are twins, and whether they want opposite masks.
@@ -474,44 +537,45 @@ func (r *reducer) compare(u, v int32) (flip uint8, ok bool) {
 	r.time++
 	var between int64
 	du, dv := 0, 0
-	for c := u; c >= 0; c = r.row[c].next {
-		for k := r.row[c].start; k < r.row[c].end; k++ {
-			w := r.to[k]
-			if r.s[k] == 0 {
+	for c := u; c >= 0; c = r.node[c].next {
+		for k := r.node[c].start; k < r.node[c].end; k++ {
+			e := &r.half[k]
+			if e.s == 0 {
 				continue
 			}
-			if w == v {
-				between += r.s[k]
+			if e.to == v {
+				between += e.s
 				continue
 			}
-			if r.met[w].time == r.time {
+			m := &r.met[e.to]
+			if m.time == r.time {
 				return 0, false // a parallel edge not merged yet
 			}
-			r.met[w] = meeting{r.time, k}
+			*m = meeting{r.time, k}
 			du++
 		}
 	}
 	var su, sv int64 // one edge of each, to which all others are held
-	for c := v; c >= 0; c = r.row[c].next {
-		for k := r.row[c].start; k < r.row[c].end; k++ {
-			b, w := r.s[k], r.to[k]
-			if b == 0 || w == u {
+	for c := v; c >= 0; c = r.node[c].next {
+		for k := r.node[c].start; k < r.node[c].end; k++ {
+			e := &r.half[k]
+			if e.s == 0 || e.to == u {
 				continue
 			}
-			m := &r.met[w]
+			m := &r.met[e.to]
 			if m.time != r.time {
 				return 0, false
 			}
-			m.time = 0 // a second edge to w is no match
-			a := r.s[m.half]
+			m.time = 0 // a second edge to the same node is no match
+			a := r.half[m.half].s
 			if dv++; dv == 1 {
-				su, sv = a, b
-			} else if !proportional(su, sv, a, b) {
+				su, sv = a, e.s
+			} else if !proportional(su, sv, a, e.s) {
 				return 0, false
 			}
 		}
 	}
-	if du != dv || du == 0 || !proportional(su, sv, r.h[u], r.h[v]) {
+	if du != dv || du == 0 || !proportional(su, sv, r.node[u].h, r.node[v].h) {
 		return 0, false
 	}
 	if su > 0 == (sv > 0) {
@@ -543,36 +607,32 @@ func scramble(x uint64) uint64 {
 
 // kernel is what is left: a graph over the surviving nodes, which it lists in ascending order.
 func (r *reducer) kernel() (*graph, []int32) {
-	nodes := make([]int32, 0, len(r.row))
-	local := r.last // the chains are not lengthened any more
+	nodes := fit(r.room, r.alive, len(r.node))[:0]
 	halves := 0
-	for v := range r.row {
-		if r.state[v]&gone == 0 {
+	for v := range r.node {
+		if r.node[v].state&gone == 0 {
 			r.clean(int32(v))
-			halves += int(r.size[v])
-			local[v] = int32(len(nodes))
+			halves += int(r.node[v].size)
+			r.local[v] = int32(len(nodes))
 			nodes = append(nodes, int32(v))
 		}
 	}
-	g := &graph{start: make([]int32, 1, len(nodes)+1), adj: make([]int32, 0, halves), wt: make([]int64, 0, halves), h: make([]int64, len(nodes))}
+	g := &graph{start: fit[int32](r.room, nil, len(nodes)+1)[:0], adj: fit[int32](r.room, nil, halves)[:0],
+		wt: fit[int64](r.room, nil, halves)[:0], h: fit[int64](r.room, nil, len(nodes))}
+	g.start = append(g.start, 0)
 	for i, v := range nodes {
-		g.h[i] = r.h[v]
-		for c := v; c >= 0; c = r.row[c].next {
-			for k := r.row[c].start; k < r.row[c].end; k++ {
-				if s := r.s[k]; s != 0 {
-					g.adj = append(g.adj, local[r.to[k]])
-					g.wt = append(g.wt, s)
+		g.h[i] = r.node[v].h
+		for c := v; c >= 0; c = r.node[c].next {
+			for k := r.node[c].start; k < r.node[c].end; k++ {
+				if e := &r.half[k]; e.s != 0 {
+					g.adj = append(g.adj, r.local[e.to])
+					g.wt = append(g.wt, e.s)
 				}
 			}
 		}
 		g.start = append(g.start, int32(len(g.adj)))
 	}
 	return g, nodes
-}
-
-// release lets go of what restore does not need.
-func (r *reducer) release() {
-	*r = reducer{base: r.base, trail: r.trail}
 }
 
 // restore completes x, over all nodes that the reducer was given, from the masks of the kernel.

@@ -1,0 +1,104 @@
+package arena
+
+import (
+	"sync"
+	"unsafe"
+)
+
+// Slab is memory for slices that are given up together. It deals them out of a few large blocks one behind the other, and when they are
+// given up the blocks serve again: their pages are there already. Memory that another array no longer needs can be handed to it. Several
+// goroutines may cut from one slab. The zero value is ready.
+type Slab struct {
+	mu     sync.Mutex
+	from   *Slab // takes its blocks there; nil: from the system
+	blocks [][]byte
+	at     int      // block that is dealt out of
+	used   int      // bytes of it
+	mapped [][]byte // of blocks: what the system gave
+}
+
+// The blocks of a slab are each at least twice as large as the one before, from firstBlock to usualBlock bytes, if nothing larger is asked
+// for.
+const (
+	firstBlock = 1 << 16
+	usualBlock = 4 << 20
+)
+
+// Within gives a slab that takes its blocks from s, smaller ones than s takes.
+func (s *Slab) Within() *Slab { return &Slab{from: s} }
+
+// Hand gives the memory of an array to a slab. The array is gone then.
+func Hand[T any](s *Slab, a *Array[T]) {
+	if a == nil {
+		return
+	}
+	if a.memory != nil {
+		s.mu.Lock()
+		s.blocks, s.mapped = append(s.blocks, a.memory), append(s.mapped, a.memory)
+		s.mu.Unlock()
+	}
+	a.Data, a.memory = nil, nil
+}
+
+// Cut gives a zeroed slice of n elements of T, which must hold no pointers.
+func Cut[T any](s *Slab, n int) []T {
+	out := CutDirty[T](s, n)
+	clear(out)
+	return out
+}
+
+// CutDirty is Cut, but for what the slice holds: anything.
+func CutDirty[T any](s *Slab, n int) []T {
+	var one T
+	memory := s.cut(n * int(unsafe.Sizeof(one)))
+	return unsafe.Slice((*T)(unsafe.Pointer(unsafe.SliceData(memory))), n)
+}
+
+// cut gives the next bytes, at an address that every type may have.
+func (s *Slab) cut(size int) []byte {
+	const align = 64
+	size = (size + align - 1) &^ (align - 1)
+	s.mu.Lock()
+	defer s.mu.Unlock()
+	for ; s.at < len(s.blocks); s.at, s.used = s.at+1, 0 {
+		if block := s.blocks[s.at]; len(block)-s.used >= size {
+			s.used += size
+			return block[s.used-size : s.used : s.used]
+		}
+	}
+	s.blocks = append(s.blocks, s.block(size))
+	s.used = size
+	return s.blocks[s.at][:size:size]
+}
+
+// block gives a block of at least a size.
+func (s *Slab) block(size int) []byte {
+	usual := firstBlock
+	if n := len(s.blocks); n > 0 {
+		usual = min(max(usual, 2*len(s.blocks[n-1])), usualBlock)
+	}
+	size = (size + usual - 1) &^ (usual - 1)
+	if s.from != nil {
+		return s.from.cut(size)
+	}
+	if size < smallest {
+		return make([]byte, size)
+	}
+	memory := take(size)
+	if memory == nil {
+		return make([]byte, size)
+	}
+	s.mapped = append(s.mapped, memory)
+	return memory
+}
+
+// Reset gives up all slices, and with them the slabs within this one. The memory stays for what comes.
+func (s *Slab) Reset() { s.at, s.used = 0, 0 }
+
+// Free gives up all slices and the memory, of slabs within this one too.
+func (s *Slab) Free() {
+	for _, memory := range s.mapped {
+		give(memory)
+	}
+	s.blocks, s.mapped, s.at, s.used = nil, nil, 0, 0
+}
