@@ -46,7 +46,7 @@ func pairOf(t *testing.T, f folder, r *rand.Rand) (s *orders.Sketch, in, earlier
 
 // TestCompare holds the command against a comparison square by square.
 func TestCompare(t *testing.T) {
-	f := newFolder(t)
+	f := quickFolder(t)
 	done := 0
 	for seed := range layouts(600) {
 		r := rand.New(rand.NewPCG(seed, 12))
@@ -116,7 +116,7 @@ func TestCompare(t *testing.T) {
 
 // TestFreeze holds frozen masks against the baseline square by square.
 func TestFreeze(t *testing.T) {
-	f := newFolder(t)
+	f := quickFolder(t)
 	done, broken := 0, 0
 	for seed := range layouts(600) {
 		r := rand.New(rand.NewPCG(seed, 13))

@@ -22,8 +22,9 @@ import (
 // These tests bring the program into trouble: damaged streams, bombs, interrupts, inputs that change, runs that meet. What
 // must hold is always the same: no panic, no hang, no wrong success, nothing lost and nothing left behind.
 
-// patience is how long a run on a small file may take before it counts as hanging; far above what any machine needs.
-const patience = time.Minute
+// patience is how long a run may take before it counts as hanging. It guards against a run without end, and says nothing of how fast one
+// is: the longest takes seconds, and a machine a hundred times slower, or as busy, is no fault.
+const patience = 8 * time.Minute
 
 var (
 	faultDrawn = gds.LayerType{Layer: 7}
@@ -156,7 +157,7 @@ func TestEveryBitFlipped(t *testing.T) {
 			step = 1
 		}
 		if testing.Short() {
-			step = 11
+			step = 47
 		}
 		for bit := 0; bit < 8*len(stream); bit += step {
 			broken := bytes.Clone(stream)
@@ -288,7 +289,7 @@ func TestDeepChain(t *testing.T) {
 // TestSpacingAsLargeAsTheChip takes spacings up to far beyond the plane: all shapes are near each other then.
 func TestSpacingAsLargeAsTheChip(t *testing.T) {
 	f := quickFolder(t)
-	for seed := range layouts(30) {
+	for seed := range layouts(12) {
 		r := rand.New(rand.NewPCG(seed, 5))
 		taste := twin.RandomTaste(r)
 		taste.Flat, taste.Layers = 12, 1

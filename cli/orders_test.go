@@ -134,7 +134,7 @@ func again(f folder, what string, stream []byte, entries []orders.Entry, baselin
 
 // TestOrders compares runs with orders, wishes and baselines with all assignments, and looks for the same bytes where nothing changed.
 func TestOrders(t *testing.T) {
-	f := newFolder(t)
+	f := quickFolder(t)
 	done, failures := 0, 0
 	for seed := range layouts(1200) {
 		if failures == 5 {
@@ -187,7 +187,7 @@ func TestOrders(t *testing.T) {
 // TestOrdersVerified gives orders to layouts of any kind (slants, paths, odd placements, half units) and lets verify look whether they are
 // held; it has code of its own for what a place hits.
 func TestOrdersVerified(t *testing.T) {
-	f := newFolder(t)
+	f := quickFolder(t)
 	done, failures := 0, 0
 	for seed := range layouts(1000) {
 		if failures == 5 {

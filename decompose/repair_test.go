@@ -21,8 +21,12 @@ func twinLack(a, b twinShape) int64 {
 func TestRepairsAgainstEnumeration(t *testing.T) {
 	rng := rand.New(rand.NewPCG(11, 13))
 	const deck = "unit = \"nm\"\n[[layer]]\nname = \"m\"\ndrawn = \"1/0\"\nmask_a = \"2/0\"\nmask_b = \"3/0\"\nsame_mask_spacing = 20\n"
+	most := 800
+	if testing.Short() {
+		most = 60
+	}
 	tried, several := 0, 0
-	for tried < 800 {
+	for tried < most {
 		figures := bentLayout(rng)
 		if tried%2 == 0 {
 			figures = combLayout(rng)
@@ -96,7 +100,7 @@ func TestRepairsAgainstEnumeration(t *testing.T) {
 			}
 		}
 	}
-	if several < 40 {
+	if several < most/20 {
 		t.Errorf("only %d components need several gaps", several)
 	}
 }

@@ -358,7 +358,7 @@ func cutsAgainstEnumeration(t *testing.T, draw func(*rand.Rand) []gds.Rect, crow
 	tried, cut, left, resolvable, crowded, bent := 0, 0, 0, 0, 0, 0
 	most := 1000
 	if testing.Short() {
-		most = 200
+		most = 60
 	}
 	const mostPieces = 15
 	for tried < most {

@@ -149,7 +149,10 @@ func TestIndexMutated(t *testing.T) {
 	}
 	r := rand.New(rand.NewPCG(13, 14))
 	accepted := 0
-	const rounds = 4000
+	rounds := 4000
+	if testing.Short() {
+		rounds = 400
+	}
 	for range rounds {
 		records := slowRecords(t, streams[r.IntN(len(streams))])
 		for range 1 + r.IntN(3) {
