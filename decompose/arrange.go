@@ -76,7 +76,10 @@ func (b *brokenGroup) arrange(room *arena.Slab, boxes []Box, scale int64) {
 	best.sort(room, b.nodes, boxes)
 	for _, a := range able[1:] {
 		a.sort(room, b.nodes, boxes)
-		if slices.CompareFunc(a.list, best.list, func(p, q placedNode) int { return compareBoxes(p.box, q.box) }) < 0 {
+		less := slices.CompareFunc(a.list, best.list, func(p, q placedNode) int {
+			return compareBoxes(a.back.applyBox(boxes[p.node]), best.back.applyBox(boxes[q.node]))
+		})
+		if less < 0 {
 			best = a
 		}
 	}
@@ -93,9 +96,9 @@ type arrangement struct {
 	list  []placedNode
 }
 
-// placedNode is a node with its box as placed.
+// placedNode is a node with the least corner of its box as placed.
 type placedNode struct {
-	box  Box
+	x, y int64
 	node uint32
 }
 
@@ -120,12 +123,16 @@ func arranged(nodes []uint32, boxes []Box, p placement, scale int64) arrangement
 func (a *arrangement) sort(room *arena.Slab, nodes []uint32, boxes []Box) {
 	a.list = arena.CutDirty[placedNode](room, len(nodes))
 	for k, u := range nodes {
-		a.list[k] = placedNode{a.back.applyBox(boxes[u]), u}
+		box := a.back.applyBox(boxes[u])
+		a.list[k] = placedNode{box.X1, box.Y1, u}
 	}
 	slices.SortFunc(a.list, func(p, q placedNode) int {
-		if c := compareBoxes(p.box, q.box); c != 0 {
-			return c
+		switch {
+		case p.x != q.x:
+			return cmp.Compare(p.x, q.x)
+		case p.y != q.y:
+			return cmp.Compare(p.y, q.y)
 		}
-		return cmp.Compare(p.node, q.node)
+		return cmp.Or(compareBoxes(a.back.applyBox(boxes[p.node]), a.back.applyBox(boxes[q.node])), cmp.Compare(p.node, q.node))
 	})
 }

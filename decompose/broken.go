@@ -170,7 +170,7 @@ func (s *solver) of(node uint32) (int, bool) {
 	if s.broken == nil {
 		return 0, false
 	}
-	return s.broken.rank(s.a.group.Data[node])
+	return s.broken.rank(s.a.group[node])
 }
 
 // each calls work for every broken group, some at a time.

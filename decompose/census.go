@@ -22,11 +22,11 @@ func (r *Run) Census(ctx context.Context, i int) (*Census, error) {
 	}
 	defer l.free()
 	a := l.assign(&Orders{})
-	defer a.release()
+	defer a.mask.Free()
 	c := &Census{Figures: int64(l.flat.total), Shapes: int64(l.shapes), NearPairs: l.near.pairs, Components: int64(a.components),
 		Odd: int64(len(a.broken))} // without ties a group is a component
 	sizes := make([]int64, a.components)
-	for _, n := range a.component.Data {
+	for _, n := range a.component {
 		sizes[n]++
 		c.Largest = max(c.Largest, sizes[n])
 	}

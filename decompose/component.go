@@ -9,30 +9,24 @@ import "maskpair/gds/arena"
 //
 // A component hangs together by near pairs. A group is a set of components that ties join; without ties, groups are components.
 // The masks of the nodes of a free group may still be turned over together.
+//
+// All but the masks lies in the room of the layout.
 type assignment struct {
-	mask       *arena.Array[uint8]  // by node
-	component  *arena.Array[uint32] // by node: number, dealt by least node
+	mask       *arena.Array[uint8] // by node
+	component  []uint32            // by node: number, dealt by least node
 	components int
-	group      *arena.Array[uint32] // by node; the same array as component where no tie joins components
+	group      []uint32 // by node; the same slice as component where no tie joins components
 	groups     int
 	free       []bool  // by group: may be turned over
 	broken     []int32 // groups that parity cannot settle, ascending
 	tied       bool
 }
 
-func (a *assignment) release() {
-	a.mask.Free()
-	if a.group != a.component {
-		a.group.Free()
-	}
-	a.component.Free()
-}
-
 // assign finds components and groups and settles what parity settles. The masks of broken groups are not final.
 func (l *layout) assign(o *Orders) *assignment {
-	a := &assignment{mask: arena.New[uint8](l.nodes), component: arena.New[uint32](l.nodes), tied: len(o.Ties) > 0}
+	a := &assignment{mask: arena.New[uint8](l.nodes), component: arena.CutDirty[uint32](&l.room, l.nodes), tied: len(o.Ties) > 0}
 	broken := map[uint32]bool{} // by root, possibly no longer a root
-	p := newParity(a.component.Data)
+	p := newParity(a.component)
 	for u := range uint32(l.nodes) {
 		for _, e := range l.near.of(u) {
 			if !p.relate(u, e>>1, 1) {
@@ -42,9 +36,9 @@ func (l *layout) assign(o *Orders) *assignment {
 	}
 	a.group = a.component
 	if a.tied {
-		a.group = arena.New[uint32](l.nodes)
-		copy(a.group.Data, a.component.Data)
-		q := parity{a.group.Data}
+		a.group = arena.CutDirty[uint32](&l.room, l.nodes)
+		copy(a.group, a.component)
+		q := parity{a.group}
 		for _, t := range o.Ties {
 			apart := uint32(0)
 			if t.Opposite {
@@ -68,13 +62,13 @@ func (l *layout) assign(o *Orders) *assignment {
 		a.components = numberRoots(p)
 		a.groups = a.components
 	}
-	a.free = make([]bool, a.groups)
+	a.free = arena.CutDirty[bool](&l.room, a.groups)
 	for i := range a.free {
 		a.free[i] = true
 	}
-	isBroken := make([]bool, a.groups)
+	isBroken := arena.Cut[bool](&l.room, a.groups)
 	for u := range broken {
-		isBroken[a.group.Data[u]] = true
+		isBroken[a.group[u]] = true
 	}
 	a.anchor(o, isBroken)
 	a.remember(o, isBroken)
@@ -111,7 +105,7 @@ func (a *assignment) anchor(o *Orders, isBroken []bool) {
 		turn[i] = unset
 	}
 	for _, an := range o.Anchors {
-		g := a.group.Data[an.Node]
+		g := a.group[an.Node]
 		a.free[g] = false
 		want := a.mask.Data[an.Node] ^ uint8(an.Mask)
 		if turn[g] == unset {
@@ -126,7 +120,7 @@ func (a *assignment) anchor(o *Orders, isBroken []bool) {
 // turnOver changes the masks of all nodes of the groups that are named.
 func (a *assignment) turnOver(which func(group uint32) bool) {
 	for u := range a.mask.Data {
-		if which(a.group.Data[u]) {
+		if which(a.group[u]) {
 			a.mask.Data[u] ^= 1
 		}
 	}
@@ -145,16 +139,16 @@ func (a *assignment) remember(o *Orders, isBroken []bool) {
 			continue
 		}
 		if a.mask.Data[u] == m-1 {
-			gain[a.group.Data[u]].moved++
+			gain[a.group[u]].moved++
 		} else {
-			gain[a.group.Data[u]].moved--
+			gain[a.group[u]].moved--
 		}
 	}
 	for _, w := range o.Wishes {
 		if a.mask.Data[w.Node] == uint8(w.Mask) {
-			gain[a.group.Data[w.Node]].wishes++
+			gain[a.group[w.Node]].wishes++
 		} else {
-			gain[a.group.Data[w.Node]].wishes--
+			gain[a.group[w.Node]].wishes--
 		}
 	}
 	turn := make([]bool, a.groups)

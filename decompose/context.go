@@ -94,7 +94,7 @@ func (c *contexts) walk(s int32) bool {
 	shared := c.shared(s)
 	if own := uint64(f.own[s]); own > 0 {
 		if shared {
-			group, mask := c.d.a.group.Data, c.d.a.mask.Data
+			group, mask := c.d.a.group, c.d.a.mask.Data
 			for _, n := range l.nodeOf.Data[c.cursor : c.cursor+own] {
 				g := group[n]
 				c.stack = append(c.stack, uint32(c.d.classOf[g])<<1|uint32(mask[n]^c.bit[g]))

@@ -82,7 +82,7 @@ func (l *layout) draw(a *assignment, o *Orders, res *LayerResult, most int) *Dra
 	if len(sketches) == 0 {
 		return d
 	}
-	for u, c := range a.component.Data {
+	for u, c := range a.component {
 		if s := byComponent[c]; s != nil {
 			s.nodes = append(s.nodes, uint32(u))
 		}
@@ -318,7 +318,7 @@ func (l *layout) lookAround(a *assignment, sketches []*sketch) {
 			return math.Hypot(float64(dx), float64(dy))
 		}
 		slices.SortStableFunc(s.others, func(u, v uint32) int {
-			return cmp.Or(boolInt(a.component.Data[v] == component)-boolInt(a.component.Data[u] == component), cmp.Compare(far(u), far(v)),
+			return cmp.Or(boolInt(a.component[v] == component)-boolInt(a.component[u] == component), cmp.Compare(far(u), far(v)),
 				compareBoxes(l.boxes()[u], l.boxes()[v]))
 		})
 		if more := len(s.others) - othersDrawn; more > 0 {
@@ -352,7 +352,7 @@ func (s *sketch) fill(l *layout, a *assignment, parts map[uint32]*geom.Parts, an
 	clip := geom.Rect{X1: s.window.X1 - rim, Y1: s.window.Y1 - rim, X2: s.window.X2 + rim, Y2: s.window.Y2 + rim}
 	add := func(u uint32, step int) {
 		shape := PictureShape{Mask: Mask(a.mask.Data[u]), Step: step, Anchor: anchors[u], Box: l.half(l.boxes()[u]),
-			Member: a.component.Data[u] == uint32(s.entry.Component)}
+			Member: a.component[u] == uint32(s.entry.Component)}
 		if cut := l.cutOf(u); cut != nil {
 			for m, held := range cut.held {
 				piece := shape

@@ -99,37 +99,35 @@ func (e *explainer) sign() {
 	if nodes == 0 {
 		return
 	}
-	type figure struct {
-		node uint32
-		hash uint64
+	indexOf := func(n uint32) (int, *brokenGroup) {
+		i, _ := e.of(n)
+		b := &e.solver.groups[i]
+		return int(e.local[i] - 1 + e.place(b, n)), b
 	}
-	var list []figure
-	end := make([]uint32, nodes+1) // of the figures of each node
+	end := arena.Cut[uint32](&l.room, int(nodes)) // of the figures of each node
 	for top := range l.flat.h.tops {
-		l.eachFigureOf(top, signed, func(o, fig uint32, at placement, odd *oddFigure) {
-			n := l.nodeOf.Data[o]
-			i, _ := e.of(n)
-			b := &e.solver.groups[i]
-			made := figure{node: e.local[i] - 1 + e.place(b, n)}
-			if odd != nil {
-				made.hash = hashBox(b.canon.back.applyBox(odd.form.box))
-			} else {
-				made.hash = hashPlaced(l.flat, fig, b.canon.back.compose(at))
-			}
-			list = append(list, made)
-			end[made.node]++
+		l.eachFigureOf(top, signed, func(o, _ uint32, _ placement, _ *oddFigure) {
+			k, _ := indexOf(l.nodeOf.Data[o])
+			end[k]++
 		})
 	}
 	at := uint32(0)
-	for n, count := range end {
-		end[n], at = at, at+count
+	for k, count := range end {
+		end[k], at = at, at+count
 	}
-	hashes := make([]uint64, len(list))
-	for _, f := range list {
-		hashes[end[f.node]] = f.hash
-		end[f.node]++
+	hashes := arena.CutDirty[uint64](&l.room, int(at))
+	for top := range l.flat.h.tops {
+		l.eachFigureOf(top, signed, func(o, fig uint32, at placement, odd *oddFigure) {
+			k, b := indexOf(l.nodeOf.Data[o])
+			if odd != nil {
+				hashes[end[k]] = hashBox(b.canon.back.applyBox(odd.form.box))
+			} else {
+				hashes[end[k]] = hashPlaced(l.flat, fig, b.canon.back.compose(at))
+			}
+			end[k]++
+		})
 	}
-	e.shape = make([]uint64, nodes)
+	e.shape = arena.Cut[uint64](&l.room, int(nodes))
 	from := uint32(0)
 	for n := range e.shape {
 		own := hashes[from:end[n]]
@@ -189,7 +187,7 @@ func (e *explainer) group(room *arena.Slab, b *brokenGroup, res *LayerResult) {
 			res.UnresolvedComponents++
 		}
 		if part.stuck || len(part.left)+len(part.accepted) > 0 {
-			u := e.entry(room, b, part, a.component.Data[b.nodes[nodes[0]]])
+			u := e.entry(room, b, part, a.component[b.nodes[nodes[0]]])
 			for _, x := range part.accepted {
 				res.Waived = append(res.Waived, e.waived(b, part, x, u.Top))
 			}
@@ -243,7 +241,7 @@ func (b *brokenGroup) components(room *arena.Slab, a *assignment) [][]int32 {
 	}
 	by := map[uint32][]int32{}
 	for k, u := range b.nodes {
-		c := a.component.Data[u]
+		c := a.component[u]
 		by[c] = append(by[c], int32(k))
 	}
 	out := make([][]int32, 0, len(by))

@@ -116,7 +116,7 @@ func (d *dealer) findDeltas() {
 	d.delta = arena.Cut[float64](d.room, d.a.groups)
 	for u := range d.l.area {
 		onA, onB := d.l.areaOn(uint32(u), d.a.mask.Data[u])
-		d.delta[d.a.group.Data[u]] += onA - onB
+		d.delta[d.a.group[u]] += onA - onB
 	}
 }
 
@@ -255,7 +255,7 @@ func (d *dealer) eachShared(fn func(first uint32, figures []uint32)) {
 // hashGroups adds up, group by group, what is in it; sums do not depend on the order.
 func (d *dealer) hashGroups() {
 	d.hashes, d.size = arena.Cut[[2]uint64](d.room, d.a.groups), arena.Cut[uint32](d.room, d.a.groups)
-	node, group, mask := d.l.nodeOf.Data, d.a.group.Data, d.a.mask.Data
+	node, group, mask := d.l.nodeOf.Data, d.a.group, d.a.mask.Data
 	d.eachShared(func(first uint32, figures []uint32) {
 		for k, n := range node[first : first+uint32(len(figures))] {
 			g, m := group[n], mask[n]&1
@@ -315,7 +315,7 @@ func (d *dealer) fillClasses() {
 	found := arena.CutDirty[uint64](d.room, int(begin[len(d.classes)]))
 	end := slices.Clone(begin)
 	example := newBitset(d.l.nodes) // nodes in the examples of classes
-	group, mask := d.a.group.Data, d.a.mask.Data
+	group, mask := d.a.group, d.a.mask.Data
 	for n, g := range group {
 		if c := d.classOf[g]; c >= 0 && d.classes[c].example == int32(g) {
 			example.add(uint32(n))
@@ -512,7 +512,7 @@ func (d *dealer) turnEven(even, turn []bool) {
 		node        uint32
 	}
 	at := map[uint32]*extent{}
-	node, group := l.nodeOf.Data, d.a.group.Data
+	node, group := l.nodeOf.Data, d.a.group
 	for o, n := range node {
 		if g := group[n]; even[g] {
 			e := at[g]

@@ -54,7 +54,7 @@ type builder struct {
 	near     [][]uint64 // near pairs, in blocks
 	done     built
 	areas    geom.AreaScratch
-	merged   merged
+	merged   []merged               // by worker
 	sorted   []item                 // of the window at hand
 	slanted  map[uint32]*geom.Parts // shapes of the top at hand that have slanted figures
 	joined   bool                   // the shapes of the top at hand are settled: a window is only looked at again
@@ -92,7 +92,7 @@ func newLayout(ctx context.Context, h *hierarchy, sel *selection, rules *LayerRu
 	if err := l.checkMemory(opt, bytesAlways+indexBytes(h.lib)+opt.held); err != nil {
 		return nil, err
 	}
-	b := &builder{ctx: ctx, jobs: opt.jobs(), l: l, opt: opt}
+	b := &builder{ctx: ctx, jobs: opt.jobs(), l: l, opt: opt, merged: make([]merged, opt.jobs())}
 	defer b.free()
 	b.limit.Store(opt.mostPairs())
 	l.nodeOf = arena.New[uint32](int(f.total))
@@ -448,10 +448,19 @@ func (b *builder) measure(begin, end uint32) {
 			n[node[o]-begin]++
 		}
 	}
-	// Shapes of several rectangles are gathered, each in a stretch of its own.
+	// Shapes of several rectangles are gathered, each in a stretch of its own. Parts of the shapes are measured at once.
 	const alone = math.MaxUint32
+	const partItems = 1 << 14
+	type part struct {
+		shape int
+		from  uint32 // in group
+	}
+	parts := []part{{}}
 	at := uint32(0)
 	for k := range n {
+		if at-parts[len(parts)-1].from >= partItems {
+			parts = append(parts, part{k, at})
+		}
 		if n[k] > 1 && b.slanted[begin+uint32(k)] == nil {
 			n[k], at = at, at+n[k]
 		} else {
@@ -473,13 +482,16 @@ func (b *builder) measure(begin, end uint32) {
 			b.l.area[node[o]] += float64(int64(it.X2)-int64(it.X1)) * float64(int64(it.Y2)-int64(it.Y1))
 		}
 	}
-	from := uint32(0)
-	for k := range n {
-		if n[k] != alone {
-			b.l.area[begin+uint32(k)] += float64(b.merged.area(group[from:n[k]]))
-			from = n[k]
+	parts = append(parts, part{shape: len(n)})
+	inTurn(b.jobs, len(parts)-1, func(worker, i int) {
+		from := parts[i].from
+		for k := parts[i].shape; k < parts[i+1].shape; k++ {
+			if n[k] != alone {
+				b.l.area[begin+uint32(k)] += float64(b.merged[worker].area(group[from:n[k]]))
+				from = n[k]
+			}
 		}
-	}
+	})
 }
 
 // measureSlanted gives the shapes of a top that have slanted figures their areas.

@@ -16,6 +16,24 @@ type merged struct {
 	high  []geom.Rect32 // of the rectangles of the band, those that reach above it
 }
 
+// add adds a rectangle to the band. Where it goes on one of the last, as the pieces of a wire do from cell to cell, it makes that longer;
+// the rectangles come by their lower edges, those at one height by their left edges.
+func (m *merged) add(r geom.Rect32) {
+	const last = 4
+	for i := len(m.band) - 1; i >= max(0, len(m.band)-last); i-- {
+		q := &m.band[i]
+		switch {
+		case q.X1 == r.X1 && q.X2 == r.X2 && q.Y1 <= r.Y1 && r.Y1 <= q.Y2:
+			q.Y2 = max(q.Y2, r.Y2)
+			return
+		case q.Y1 == r.Y1 && q.Y2 == r.Y2 && q.X1 <= r.X1 && r.X1 <= q.X2:
+			q.X2 = max(q.X2, r.X2)
+			return
+		}
+	}
+	m.band = append(m.band, r)
+}
+
 // bandItems is about how many rectangles a band has.
 const bandItems = 1 << 14
 
@@ -33,7 +51,7 @@ func (m *merged) area(items []item) uint64 {
 		m.band = append(m.band[:0], m.high...)
 		for i := range items[:n] {
 			it := &items[i]
-			m.band = append(m.band, geom.Rect32{X1: it.X1, Y1: it.Y1, X2: it.X2, Y2: it.Y2})
+			m.add(geom.Rect32{X1: it.X1, Y1: it.Y1, X2: it.X2, Y2: it.Y2})
 		}
 		top := int32(math.MaxInt32)
 		if n < len(items) {

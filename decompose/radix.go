@@ -4,8 +4,6 @@ import (
 	"cmp"
 	"math/bits"
 	"slices"
-
-	"golang.org/x/sync/errgroup"
 )
 
 // This file puts items in the order of the sweep: by lower edge, then left edge, by a radix sort with the least digit first. It is
@@ -76,18 +74,4 @@ func scatter(from, to []item, key func(*item) uint32, shift, jobs int) {
 			c[d]++
 		}
 	})
-}
-
-// each runs work for 0 to n-1 at once and waits for all.
-func each(n int, work func(int)) {
-	if n == 1 {
-		work(0)
-		return
-	}
-	var g errgroup.Group
-	for w := range n {
-		g.Go(func() error { work(w); return nil })
-	}
-	// The work returns no error.
-	_ = g.Wait()
 }

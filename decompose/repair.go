@@ -52,7 +52,7 @@ func (e *explainer) repairs(ctx context.Context, res *LayerResult, jobs int) err
 	e.l.geometryOf(e.more)
 	return e.solver.each(ctx, jobs, func(b *brokenGroup) {
 		if u := byGroup[int32(e.indexOf(b))]; u != nil {
-			if u.Repair = e.repair(b, u.Top); u.Repair == nil {
+			if u.Repair = e.repair(b, u.Top, jobs); u.Repair == nil {
 				u.NotComputed = append(u.NotComputed, "repair")
 			}
 		}
@@ -60,21 +60,26 @@ func (e *explainer) repairs(ctx context.Context, res *LayerResult, jobs int) err
 }
 
 // repair gives the pairs to be widened; nil where that takes too much work.
-func (e *explainer) repair(b *brokenGroup, top string) []Pair {
+func (e *explainer) repair(b *brokenGroup, top string, jobs int) []Pair {
 	trial := *b
 	trial.cutting = false
 	e.weigh(&trial, nil)
 	p := trial.problem
 	p.Cost = nil
-	list := make([]Pair, len(b.edges))
-	for i, ed := range b.edges {
-		list[i] = e.pairOf(&trial, i, b.nodes[ed.U], b.nodes[ed.V], top)
-		// What is accepted need not be widened: any number of such pairs weighs less than one unit of a gap, or one pair more.
-		p.Edges[i].Weight = 1
-		if !b.waived[i] {
-			p.Edges[i].Weight = (list[i].Widen*int64(len(b.edges)+1) + 1) * int64(len(b.edges)+1)
-		}
+	pair := func(i int) Pair {
+		return e.pairOf(&trial, i, b.nodes[b.edges[i].U], b.nodes[b.edges[i].V], top)
 	}
+	const part = 1 << 10 // edges
+	parts := (len(b.edges) + part - 1) / part
+	inTurn(jobs, parts, func(_, k int) {
+		for i := k * part; i < min((k+1)*part, len(b.edges)); i++ {
+			// What is accepted need not be widened: any number of such pairs weighs less than one unit of a gap, or one pair more.
+			p.Edges[i].Weight = 1
+			if !b.waived[i] {
+				p.Edges[i].Weight = (pair(i).Widen*int64(len(b.edges)+1) + 1) * int64(len(b.edges)+1)
+			}
+		}
+	})
 	sol := e.exactly(p, b.again())
 	if !sol.Proved {
 		return nil
@@ -83,7 +88,7 @@ func (e *explainer) repair(b *brokenGroup, top string) []Pair {
 	out := []Pair{}
 	for i := range b.edges {
 		if !b.waived[i] && trial.violated(i, masks) {
-			out = append(out, list[i])
+			out = append(out, pair(i))
 		}
 	}
 	slices.SortFunc(out, func(a, b Pair) int { return cmp.Or(compareBoxes(a.A, b.A), compareBoxes(a.B, b.B)) })

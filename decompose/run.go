@@ -8,6 +8,7 @@ import (
 	"strings"
 
 	"maskpair/gds"
+	"maskpair/gds/arena"
 )
 
 // Run is one decomposition, stage by stage: New reads the hierarchy, Decompose assigns masks, Write copies the stream.
@@ -18,11 +19,10 @@ type Run struct {
 	classes  *classes
 	h        *hierarchy
 	layers   []*layout
-	masks    [][]uint8
-	assigned []*assignment
-	marks    map[string][]markBox // by top
-	baseline *Baseline            // nil: none
-	frozen   [2]bool              // masks that are already made
+	masks    []*arena.Array[uint8] // by layer, by node
+	marks    map[string][]markBox  // by top
+	baseline *Baseline             // nil: none
+	frozen   [2]bool               // masks that are already made
 	result   Result
 	// Warnings are remarks for the user, one line each; they are not part of the result.
 	Warnings []string
@@ -112,10 +112,10 @@ func (r *Run) Close() {
 	for _, l := range r.layers {
 		l.free()
 	}
-	for _, a := range r.assigned {
-		a.release()
+	for _, m := range r.masks {
+		m.Free()
 	}
-	r.layers, r.assigned, r.masks = nil, nil, nil
+	r.layers, r.masks = nil, nil
 }
 
 func (r *Run) layer(ctx context.Context, i int, orders Orderer) error {
@@ -149,7 +149,7 @@ func (r *Run) layer(ctx context.Context, i int, orders Orderer) error {
 		return err
 	}
 	a := l.assign(o)
-	r.assigned = append(r.assigned, a)
+	r.masks = append(r.masks, a.mask)
 	s := newSolver(l, a, o, &r.opt)
 	if err := s.solve(ctx, r.opt.jobs()); err != nil {
 		return err
@@ -163,7 +163,6 @@ func (r *Run) layer(ctx context.Context, i int, orders Orderer) error {
 	if err := l.cutFigures(a.mask.Data); err != nil {
 		return err
 	}
-	r.masks = append(r.masks, a.mask.Data)
 	r.opt.stage(stageReport)
 	res := r.summarise(l, a, o)
 	if err := s.explain(ctx, r.rules, &res, r.opt.jobs()); err != nil {
@@ -244,7 +243,11 @@ func (r *Run) summarise(l *layout, a *assignment, o *Orders) LayerResult {
 // Write copies the stream with every figure on its mask.
 func (r *Run) Write(ctx context.Context, dst io.Writer, src io.ReaderAt, progress func(int64)) error {
 	r.opt.stage(stageVariants)
-	v := newVariants(r.h, r.layers, r.masks)
+	masks := make([][]uint8, len(r.masks))
+	for i, m := range r.masks {
+		masks[i] = m.Data
+	}
+	v := newVariants(r.h, r.layers, masks)
 	p := newOutputPlan(r.rules, r.classes, v, r.opt.Top, r.tails())
 	for s := range v.tables {
 		r.opt.work(stageVariants, "ways", int64(v.tables[s].ways()))

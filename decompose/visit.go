@@ -184,6 +184,9 @@ func (l *layout) geometryOf(wanted map[uint32]*geom.Parts) {
 	}
 }
 
+// mostRecent is how many rectangles of a node a further one is compared with. Cells that abut draw the same figure again and again.
+const mostRecent = 8
+
 // geometryIn gathers the geometry of wanted nodes from one top.
 func (l *layout) geometryIn(top int, wanted map[uint32]*geom.Parts) {
 	node := l.nodeOf.Data
@@ -213,10 +216,14 @@ func (l *layout) geometryIn(top int, wanted map[uint32]*geom.Parts) {
 	}
 	l.eachFigureOf(top, nodes, func(ordinal, figure uint32, at placement, odd *oddFigure) {
 		p := parts[rankOf(ordinal)]
+		before := len(p.Rects)
 		if odd != nil {
 			l.odd[top].forms.place(&odd.form, placement{}, p)
 		} else {
 			l.flat.parts(figure, at, p)
+		}
+		if len(p.Rects) == before+1 && slices.Contains(p.Rects[max(0, before-mostRecent):before], p.Rects[before]) {
+			p.Rects = p.Rects[:before] // drawn once more
 		}
 	})
 }

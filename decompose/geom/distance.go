@@ -17,6 +17,14 @@ import (
 // part, else good to 15 digits; it is 0 where a and b touch. If a or b has no parts the distance is infinite.
 func Closest(a, b Parts) (from, to Point, distanceSq float64) {
 	s := search{distance: math.Inf(1)}
+	if len(a.Polygons)+len(b.Polygons) == 0 && len(a.Rects)*len(b.Rects) <= fewPairs {
+		for _, p := range a.Rects {
+			for _, q := range b.Rects {
+				s.rects(p, q)
+			}
+		}
+		return s.from, s.to, s.distance
+	}
 	s.a.add(a)
 	s.b.add(b)
 	if len(s.a.items) > 0 && len(s.b.items) > 0 {
@@ -26,6 +34,9 @@ func Closest(a, b Parts) (from, to Point, distanceSq float64) {
 	}
 	return s.from, s.to, s.distance
 }
+
+// fewPairs is up to how many pairs of rectangles are all compared: trees would cost more.
+const fewPairs = 64
 
 // part is a rectangle, or a band of a placed polygon.
 type part struct {
@@ -140,14 +151,21 @@ func sideways(p, q Point) int {
 	return cmp.Or(cmp.Compare(p.X, q.X), cmp.Compare(p.Y, q.Y))
 }
 
+// rects offers the nearest points of two rectangles.
+func (s *search) rects(p, q Rect) {
+	if distance := gapSq(p, q); distance <= s.distance {
+		fx, tx := facing(p.X1, p.X2, q.X1, q.X2)
+		fy, ty := facing(p.Y1, p.Y2, q.Y1, q.Y2)
+		s.offer(Point{fx, fy}, Point{tx, ty}, distance)
+	}
+}
+
 func (s *search) parts(p, q *part) {
-	if gapSq(p.box, q.box) > s.distance {
+	if p.poly == nil && q.poly == nil {
+		s.rects(p.box, q.box)
 		return
 	}
-	if p.poly == nil && q.poly == nil {
-		fx, tx := facing(p.box.X1, p.box.X2, q.box.X1, q.box.X2)
-		fy, ty := facing(p.box.Y1, p.box.Y2, q.box.Y1, q.box.Y2)
-		s.offer(Point{fx, fy}, Point{tx, ty}, gapSq(p.box, q.box))
+	if gapSq(p.box, q.box) > s.distance {
 		return
 	}
 	p.segments(func(a, b Point) {

@@ -6,7 +6,13 @@ import "unsafe"
 // dead slice on the heap would stay until the next collection. Where mapping is not available the heap serves.
 type Array[T any] struct {
 	Data   []T
-	memory []byte
+	memory mapping
+}
+
+// mapping is memory from the system; the zero value is none.
+type mapping struct {
+	whole  []byte // to be given back
+	usable []byte // of it
 }
 
 // smallest is the size in bytes from which an array is mapped; below it the heap is cheaper.
@@ -19,11 +25,11 @@ func New[T any](n int) *Array[T] {
 	if size < smallest {
 		return &Array[T]{Data: make([]T, n)}
 	}
-	memory := take(size)
-	if memory == nil {
+	m := take(size)
+	if m.usable == nil {
 		return &Array[T]{Data: make([]T, n)}
 	}
-	return &Array[T]{Data: unsafe.Slice((*T)(unsafe.Pointer(unsafe.SliceData(memory))), n), memory: memory}
+	return &Array[T]{Data: unsafe.Slice((*T)(unsafe.Pointer(unsafe.SliceData(m.usable))), n), memory: m}
 }
 
 // Free gives the memory back. The array and all slices of it must not be used after that. A nil array is free already.
@@ -31,8 +37,6 @@ func (a *Array[T]) Free() {
 	if a == nil {
 		return
 	}
-	if a.memory != nil {
-		give(a.memory)
-	}
-	a.Data, a.memory = nil, nil
+	give(a.memory)
+	a.Data, a.memory = nil, mapping{}
 }

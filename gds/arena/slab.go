@@ -12,9 +12,9 @@ type Slab struct {
 	mu     sync.Mutex
 	from   *Slab // takes its blocks there; nil: from the system
 	blocks [][]byte
-	at     int      // block that is dealt out of
-	used   int      // bytes of it
-	mapped [][]byte // of blocks: what the system gave
+	at     int       // block that is dealt out of
+	used   int       // bytes of it
+	mapped []mapping // of blocks: what the system gave
 }
 
 // The blocks of a slab are each at least twice as large as the one before, from firstBlock to usualBlock bytes, if nothing larger is asked
@@ -32,12 +32,12 @@ func Hand[T any](s *Slab, a *Array[T]) {
 	if a == nil {
 		return
 	}
-	if a.memory != nil {
+	if a.memory.usable != nil {
 		s.mu.Lock()
-		s.blocks, s.mapped = append(s.blocks, a.memory), append(s.mapped, a.memory)
+		s.blocks, s.mapped = append(s.blocks, a.memory.usable), append(s.mapped, a.memory)
 		s.mu.Unlock()
 	}
-	a.Data, a.memory = nil, nil
+	a.Data, a.memory = nil, mapping{}
 }
 
 // Cut gives a zeroed slice of n elements of T, which must hold no pointers.
@@ -84,12 +84,12 @@ func (s *Slab) block(size int) []byte {
 	if size < smallest {
 		return make([]byte, size)
 	}
-	memory := take(size)
-	if memory == nil {
+	m := take(size)
+	if m.usable == nil {
 		return make([]byte, size)
 	}
-	s.mapped = append(s.mapped, memory)
-	return memory
+	s.mapped = append(s.mapped, m)
+	return m.usable
 }
 
 // Reset gives up all slices, and with them the slabs within this one. The memory stays for what comes.
@@ -97,8 +97,8 @@ func (s *Slab) Reset() { s.at, s.used = 0, 0 }
 
 // Free gives up all slices and the memory, of slabs within this one too.
 func (s *Slab) Free() {
-	for _, memory := range s.mapped {
-		give(memory)
+	for _, m := range s.mapped {
+		give(m)
 	}
 	s.blocks, s.mapped, s.at, s.used = nil, nil, 0, 0
 }
