@@ -20,16 +20,18 @@ type canon struct {
 // arrange orders the nodes of all broken groups.
 func (s *solver) arrange(ctx context.Context, jobs int) error {
 	l := s.l
+	nodes := newBitset(l.nodes)
 	for i := range s.groups {
 		s.groups[i].first = ^uint32(0)
-	}
-	for o, n := range l.nodeOf.Data {
-		if i, ok := s.of(n); ok {
-			b := &s.groups[i]
-			b.first, b.last = min(b.first, uint32(o)), uint32(o)
+		for _, u := range s.groups[i].nodes {
+			nodes.add(u)
 		}
 	}
-	boxes := l.boxes()
+	s.boxes = l.boxesOf(nodes, func(ordinal, node uint32) {
+		i, _ := s.of(node)
+		b := &s.groups[i]
+		b.first, b.last = min(b.first, ordinal), max(b.last, ordinal)
+	})
 	fr := newFrames(l.flat)
 	for i := range s.groups {
 		b := &s.groups[i]
@@ -40,7 +42,7 @@ func (s *solver) arrange(ctx context.Context, jobs int) error {
 	}
 	s.number = arena.Cut[uint32](&l.room, l.nodes)
 	return s.each(ctx, jobs, func(b *brokenGroup) {
-		s.within(func(room *arena.Slab) { b.arrange(room, boxes, l.flat.forms.scale) })
+		s.within(func(room *arena.Slab) { b.arrange(room, s.boxes, l.flat.forms.scale) })
 		for k, u := range b.nodes {
 			s.number[u] = b.begin + uint32(k)
 		}

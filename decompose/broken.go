@@ -68,6 +68,7 @@ type solver struct {
 	broken *bitset  // group numbers; their ranks are their places in groups
 	nodes  int      // of all groups
 	number []uint32 // by node: its number among those of all groups, from 1; 0: its group is not broken
+	boxes  []Box    // of the nodes of all groups, by node
 	mu     sync.Mutex
 	idle   []*arena.Slab // memory for the work on one group, not in use now
 	opt    *Options

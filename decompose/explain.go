@@ -21,10 +21,9 @@ func (s *solver) explain(ctx context.Context, rules *Rules, res *LayerResult, jo
 	if len(s.groups) == 0 {
 		return nil
 	}
-	e := &explainer{solver: s, boxes: s.l.boxes(), groups: map[uint64]int64{}, rules: rules, more: map[uint32]*geom.Parts{},
+	e := &explainer{solver: s, groups: map[uint64]int64{}, rules: rules, more: map[uint32]*geom.Parts{},
 		facing: newFacingNames(s.l)}
-	e.gather()
-	e.sign()
+	inTurn(jobs, 2, func(_, i int) { [...]func(){e.gather, e.sign}[i]() })
 	found := make([]LayerResult, len(s.groups))
 	err := s.each(ctx, jobs, func(b *brokenGroup) {
 		s.within(func(room *arena.Slab) { e.group(room, b, &found[s.indexOf(b)]) })
@@ -45,7 +44,6 @@ func (s *solver) explain(ctx context.Context, rules *Rules, res *LayerResult, jo
 // explainer holds what explaining needs.
 type explainer struct {
 	*solver
-	boxes  []Box
 	parts  map[uint32]*geom.Parts // of the nodes of pairs that stay
 	shape  []uint64               // what a node is, in the canonical frame of its group: of the nodes of one group after another
 	local  []uint32               // by group: where its nodes are in shape, plus 1; 0: no other group can be equal

@@ -31,14 +31,16 @@ func (l *layout) deal(ctx context.Context, a *assignment, s *solver, jobs int) e
 	if !shared || len(s.groups) == 0 {
 		return nil
 	}
-	best, bestCost := s.keep(), d.cost()
+	best := s.keep()
+	usual, bestCost := d.usualAndCost(jobs)
 	homing, bias := newHoming(s, d), 0.0
 	for range solveRounds {
-		if err := homing.solve(ctx, d.usualMasks(), bias, jobs); err != nil {
+		if err := homing.solve(ctx, usual, bias, jobs); err != nil {
 			return err
 		}
 		s.within(func(room *arena.Slab) { d.turn(room, shared) })
-		cost := d.cost()
+		var cost float64
+		usual, cost = d.usualAndCost(jobs)
 		gained := cost < worthwhile*bestCost
 		if cost < bestCost {
 			best, bestCost = s.keep(), cost
@@ -50,6 +52,18 @@ func (l *layout) deal(ctx context.Context, a *assignment, s *solver, jobs int) e
 	}
 	s.restore(best)
 	return nil
+}
+
+// usualAndCost gives what the next round of solving strives for, and what the assignment costs as it is.
+func (d *dealer) usualAndCost(jobs int) (usual []int8, cost float64) {
+	inTurn(jobs, 2, func(_, i int) {
+		if i == 0 {
+			usual = d.usualMasks()
+		} else {
+			cost = d.cost()
+		}
+	})
+	return usual, cost
 }
 
 // cost says how dear an assignment is: the bytes of the structures and their variants, raised by what the masks' areas differ by beyond

@@ -98,7 +98,7 @@ func newLayout(ctx context.Context, h *hierarchy, sel *selection, rules *LayerRu
 	l.nodeOf = arena.New[uint32](int(f.total))
 	l.areas = arena.New[float64](int(f.total))
 	l.area = l.areas.Data[:0]
-	sets := newUnion(l.nodeOf.Data)
+	sets := newUnionBy(opt.jobs(), l.nodeOf.Data)
 	if err := b.collectOdd(); err != nil {
 		return nil, err
 	}
@@ -323,36 +323,10 @@ func (b *builder) prepare(top int, win window) error {
 		sets = nil
 	}
 	sorted := sortItems(b.items.Data[:w.nItem], b.scratch.Data[:w.nItem], b.jobs)
-	b.sorted = dropCopies(sorted, sets, uint32(f.total), b.l.keptTags())
+	b.sorted = dropCopiesBy(b.jobs, sorted, sets, uint32(f.total), b.l.keptTags())
 	b.done.items += int64(w.nItem)
 	b.done.copies += int64(len(sorted) - len(b.sorted))
 	return nil
-}
-
-// dropCopies drops rectangles that are exact copies of one before them and joins the two figures. Copies stand side by side, or among
-// the few that share a corner. With no sets the figures are joined already.
-// tags tell, where not nil, what arrived on a mask: only figures with equal tags are copies.
-func dropCopies(items []item, sets union, figures uint32, tags []uint8) []item {
-	kept := items[:0]
-	begin := 0 // of the kept items that share the corner at hand
-next:
-	for _, it := range items {
-		if begin < len(kept) && (kept[begin].Y1 != it.Y1 || kept[begin].X1 != it.X1) {
-			begin = len(kept)
-		}
-		if it.ID < figures { // neither a band nor a probe
-			for k := len(kept) - 1; k >= max(begin, len(kept)-8); k-- {
-				if q := &kept[k]; q.X2 == it.X2 && q.Y2 == it.Y2 && q.ID < figures && (tags == nil || tags[q.ID] == tags[it.ID]) {
-					if sets != nil && q.ID != it.ID {
-						sets.join(q.ID, it.ID)
-					}
-					continue next
-				}
-			}
-		}
-		kept = append(kept, it)
-	}
-	return kept
 }
 
 // search sweeps the window at hand.

@@ -6,10 +6,15 @@ import "sync/atomic"
 // the calls, because a root is only ever hung under a smaller one (compare-and-swap, path halving).
 type union []uint32
 
-func newUnion(u union) union {
-	for i := range u {
-		u[i] = uint32(i)
-	}
+func newUnion(u union) union { return newUnionBy(1, u) }
+
+// newUnionBy is newUnion with several workers.
+func newUnionBy(jobs int, u union) union {
+	each(jobs, func(w int) {
+		for i := len(u) * w / jobs; i < len(u)*(w+1)/jobs; i++ {
+			u[i] = uint32(i)
+		}
+	})
 	return u
 }
 

@@ -155,20 +155,27 @@ func (l *layout) boxes() []Box {
 	if l.box != nil {
 		return l.box
 	}
-	l.box = arena.CutDirty[Box](&l.room, l.nodes)
-	box := l.box
+	l.box = l.boxesOf(nil, func(uint32, uint32) {})
+	return l.box
+}
+
+// boxesOf gives the boxes of some nodes, by node; those of others are not told. It calls fn for each flat figure of these nodes, in the
+// order of ordinals.
+func (l *layout) boxesOf(nodes *bitset, fn func(ordinal, node uint32)) []Box {
+	box := arena.CutDirty[Box](&l.room, l.nodes)
 	for i := range box {
 		box[i] = emptyBox
 	}
-	node := l.nodeOf.Data
 	for top := range l.flat.h.tops {
-		l.eachFigureOf(top, nil, func(ordinal, figure uint32, at placement, odd *oddFigure) {
-			b := &box[node[ordinal]]
+		l.eachFigureOf(top, nodes, func(ordinal, figure uint32, at placement, odd *oddFigure) {
+			n := l.nodeOf.Data[ordinal]
+			b := &box[n]
 			if odd != nil {
 				*b = b.join(odd.form.box)
 			} else {
 				*b = b.join(l.flat.figureBox(figure, at))
 			}
+			fn(ordinal, n)
 		})
 	}
 	return box
