@@ -7,6 +7,7 @@ import (
 	"strings"
 
 	"maskpair/decompose"
+	"maskpair/gds/arena"
 )
 
 // This file turns what was hit into orders, and words where they come from.
@@ -88,7 +89,8 @@ func (c *collector) take() {
 	f := c.s.file()
 	markers := c.markers()
 	if len(st.masks) > 0 { // markers may be as many as figures, and nearly all they touch becomes an anchor
-		c.o.Anchors = slices.Grow(c.o.Anchors, min(c.v.HitCount(), c.v.Nodes()))
+		room := arena.Make[decompose.Anchor](0, len(c.o.Anchors)+min(c.v.HitCount(), c.v.Nodes()))
+		c.o.Anchors = append(room, c.o.Anchors...)
 	}
 	c.v.Hits(func(probe, node uint32) {
 		if probe >= markers {

@@ -39,7 +39,7 @@ func runDecompose(ctx context.Context, o *Options, w *work) (*report.Report, err
 	defer in.Close()
 	var early func() (*gds.Library, error)
 	if o.Baseline != "" {
-		early = beside(func() (*gds.Library, error) { return readBaseline(o.Baseline, want) })
+		early = beside(func() (*gds.Library, error) { return readBaseline(o.Baseline, o.Deck) })
 	}
 	lib, err := in.Index(want, func(done int64) { w.clock.Progress(done, in.Given()) })
 	if err != nil {
@@ -127,8 +127,12 @@ func (m *metered) Write(p []byte) (int, error) {
 }
 
 // readBaseline indexes an earlier result.
-func readBaseline(path string, want gds.Interest) (*gds.Library, error) {
-	in, err := gds.Open(path, false, nil)
+func readBaseline(path string, deck *decompose.Deck) (*gds.Library, error) {
+	want, err := deck.BaselineInterest()
+	if err != nil {
+		return nil, err
+	}
+	in, err := gds.OpenUnsummed(path)
 	if err != nil {
 		return nil, err
 	}

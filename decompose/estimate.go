@@ -13,8 +13,8 @@ import (
 
 // Bytes that a layer takes, as measured on generated and open layouts; go run ./testdata/bench prints what came of them.
 const (
-	bytesPerItem   = 2 * int64(unsafe.Sizeof(item{})) // the items, and as much again to sort them
-	bytesPerFigure = 4                                // node of each flat figure
+	bytesPerItem   = int64(unsafe.Sizeof(item{})) // in each of the two arrays between which items are sorted
+	bytesPerFigure = 4                            // node of each flat figure
 	bytesPerBand   = int64(unsafe.Sizeof(band{}))
 	bytesPerProbe  = 24 // what a marker touches
 	// What is found: near pairs, areas, pairs by shape. Where cells are placed often, much of what they share lies on itself and is found
@@ -55,15 +55,17 @@ func (l *layout) checkMemory(opt *Options, before int64) error {
 // estimate is what a layer will need at most, in bytes, above the index: while its largest top is searched.
 func (l *layout) estimate() int64 {
 	f := l.flat
-	var most, mostBands, probes int64
+	var most, mostBands, mostSeekers, probes int64
 	for i, t := range f.h.tops {
 		items, bands := int64(min(f.items[t], maxFlat)), int64(min(f.bands[t], maxFlat))
 		more, moreBands := l.look.size(i)
 		probes += int64(more)
-		most, mostBands = max(most, items+int64(more)), max(mostBands, bands+int64(moreBands))
+		most, mostBands, mostSeekers = max(most, items), max(mostBands, bands+int64(moreBands)), max(mostSeekers, int64(more))
 	}
 	forms := int64(len(f.forms.rects))*bytesPerRect + int64(len(f.forms.of))*bytesPerForm
-	return forms + int64(f.total)*bytesPerFigure + most*bytesPerItem + mostBands*bytesPerBand + probes*bytesPerProbe + l.found(foundPerDrawn, foundPerPlaced)
+	// Seekers take the array that the sorted items leave.
+	items := (most + max(most, mostSeekers)) * bytesPerItem
+	return forms + int64(f.total)*bytesPerFigure + items + mostBands*bytesPerBand + probes*bytesPerProbe + l.found(foundPerDrawn, foundPerPlaced)
 }
 
 // kept is what a layer holds once it is done, in bytes.

@@ -277,13 +277,13 @@ type task struct {
 	item, band            uint64
 }
 
-// flatten fills items and bands with what a top places exactly, and returns how many there are.
-func (f *flat) flatten(ctx context.Context, top int, win window, items []item, bands []band, jobs int) (nItem, nBand uint64, err error) {
+// flatten fills items and bands with what a top places exactly, with ordinals from first on, and returns how many there are.
+func (f *flat) flatten(ctx context.Context, top int, first uint64, win window, items []item, bands []band, jobs int) (nItem, nBand uint64, err error) {
 	s := f.h.tops[top]
 	at := placement{0, -win.originX, -win.originY}
 	if win.clip || jobs < 2 || f.items[s] < 1<<16 {
 		w := flattener{f: f, win: win, items: items, bands: bands}
-		w.walk(s, at, f.first[top])
+		w.walk(s, at, first)
 		return w.nItem, w.nBand, ctx.Err()
 	}
 	g, within := errgroup.WithContext(ctx)
@@ -295,7 +295,7 @@ func (f *flat) flatten(ctx context.Context, top int, win window, items []item, b
 			return within.Err()
 		})
 	}}
-	c.cut(s, at, f.first[top], 0, 0)
+	c.cut(s, at, first, 0, 0)
 	if err := g.Wait(); err != nil {
 		return 0, 0, err
 	}

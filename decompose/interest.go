@@ -5,6 +5,30 @@ import "maskpair/gds"
 // Interest gives what the index of a stream must keep for a run by this deck. It needs no lengths, so it is known before the stream's
 // database unit is.
 func (d *Deck) Interest() (gds.Interest, error) {
+	c, err := d.classes()
+	if err != nil {
+		return gds.Interest{}, err
+	}
+	return c.interest, nil
+}
+
+// BaselineInterest gives what the index of an earlier result must keep: the figures on the masks, with the same classes.
+func (d *Deck) BaselineInterest() (gds.Interest, error) {
+	c, err := d.classes()
+	if err != nil {
+		return gds.Interest{}, err
+	}
+	onMasks := gds.Interest{Figures: map[gds.LayerType]uint8{}}
+	for i := range d.Layers {
+		for _, m := range []gds.LayerType{d.Layers[i].MaskA, d.Layers[i].MaskB} {
+			onMasks.Figures[m] = c.interest.Figures[m]
+		}
+	}
+	return onMasks, nil
+}
+
+// classes deals the classes of the layers that the deck names.
+func (d *Deck) classes() (*classes, error) {
 	r := &Rules{Marks: d.Marks}
 	for i := range d.Layers {
 		l := &d.Layers[i]
@@ -14,9 +38,5 @@ func (d *Deck) Interest() (gds.Interest, error) {
 		}
 		r.Layers = append(r.Layers, rules)
 	}
-	c, err := newClasses(r)
-	if err != nil {
-		return gds.Interest{}, err
-	}
-	return c.interest, nil
+	return newClasses(r)
 }

@@ -34,7 +34,7 @@ type layout struct {
 	tags    *arena.Array[uint8] // by ordinal: what arrived on a mask; nil where nothing did
 	given   *givenStitches      // nil: none
 	cuts    *cuts               // nil: no shape of the layer can be cut
-	hits    []hit               // what looks for shapes, and the flat figures it touches
+	hits    []hit               // what looks for shapes, and the flat figures it touches; empty once orders were made of them
 	look    *lookout
 	memory  *memory     // nil: no baseline
 	far     []farPair   // pairs within the largest spacing that no rule makes near, as far as anything asks for them
@@ -49,6 +49,7 @@ type builder struct {
 	limit    atomic.Int64 // near pairs of figures that may still be kept
 	items    *arena.Array[item]
 	scratch  *arena.Array[item]
+	others   *arena.Array[item] // what looks for shapes and is no seeker
 	bands    *arena.Array[band]
 	room     pairRoom
 	near     [][]uint64 // near pairs, in blocks
@@ -56,6 +57,8 @@ type builder struct {
 	areas    geom.AreaScratch
 	merged   []merged               // by worker
 	sorted   []item                 // of the window at hand
+	seekers  []item                 // likewise; see seek.go
+	filled   int                    // sorted items before copies were dropped
 	slanted  map[uint32]*geom.Parts // shapes of the top at hand that have slanted figures
 	joined   bool                   // the shapes of the top at hand are settled: a window is only looked at again
 	polygons []*geom.Polygon
@@ -89,7 +92,11 @@ func newLayout(ctx context.Context, h *hierarchy, sel *selection, rules *LayerRu
 	if err := l.look.number(f.total); err != nil {
 		return nil, err
 	}
-	if err := l.checkMemory(opt, bytesAlways+indexBytes(h.lib)+opt.held); err != nil {
+	before := bytesAlways + indexBytes(h.lib) + opt.held
+	if l.memory != nil {
+		before += indexBytes(l.memory.e.lib)
+	}
+	if err := l.checkMemory(opt, before); err != nil {
 		return nil, err
 	}
 	b := &builder{ctx: ctx, jobs: opt.jobs(), l: l, opt: opt, merged: make([]merged, opt.jobs())}
@@ -103,12 +110,16 @@ func newLayout(ctx context.Context, h *hierarchy, sel *selection, rules *LayerRu
 		return nil, err
 	}
 	l.findTags()
-	most, mostBands := 0, 0
+	most, mostBands, mostLooking, looking := 0, 0, 0, 0
 	for i := range h.tops {
 		items, bands := b.size(i)
-		most, mostBands = max(most, items), max(mostBands, bands)
+		more, moreBands := l.look.size(i)
+		most, mostBands = max(most, items+more), max(mostBands, bands+moreBands)
+		mostLooking, looking = max(mostLooking, more), looking+more
 	}
-	b.items, b.scratch, b.bands = arena.New[item](most), arena.New[item](most), arena.New[band](mostBands)
+	// What looks for shapes mostly finds room in one of the arrays, and touches one figure: room that is not touched takes no memory.
+	b.items, b.scratch, b.others, b.bands = arena.New[item](most), arena.New[item](most), arena.New[item](mostLooking), arena.New[band](mostBands)
+	l.hits = arena.Make[hit](0, looking)
 	shapes := uint32(0)
 	for rank, top := range h.byName {
 		l.first[rank] = shapes
@@ -126,6 +137,7 @@ func newLayout(ctx context.Context, h *hierarchy, sel *selection, rules *LayerRu
 	l.shapes, l.nodes = int(shapes), int(shapes)
 	arena.Hand(&l.room, b.items)
 	arena.Hand(&l.room, b.scratch)
+	b.others.Free()
 	b.bands.Free()
 	if l.given != nil {
 		l.given.apply(l)
@@ -167,6 +179,7 @@ func (b *builder) arrays() (busy, idle []item) {
 func (b *builder) free() {
 	b.items.Free()
 	b.scratch.Free()
+	b.others.Free()
 	b.bands.Free()
 	b.room.free()
 	for i := range b.kept {
@@ -200,7 +213,7 @@ func (b *builder) collectOdd() error {
 	return nil
 }
 
-// size gives the number of items and bands of a top, probes included.
+// size gives the number of items and bands of a top, but for what looks for shapes.
 func (b *builder) size(top int) (items, bands int) {
 	f := b.l.flat
 	t := f.h.tops[top]
@@ -215,8 +228,7 @@ func (b *builder) size(top int) (items, bands int) {
 			bands += int(fm.pieces())
 		}
 	}
-	more, moreBands := b.l.look.size(top)
-	return items + more, bands + moreBands
+	return items, bands
 }
 
 // top searches one top and numbers its shapes from `shapes` on; it returns the next number.
@@ -309,30 +321,57 @@ func (b Box) shift(x, y int64) Box { return Box{b.X1 + x, b.Y1 + y, b.X2 + x, b.
 func (b *builder) prepare(top int, win window) error {
 	b.stage(top, stageFlatten)
 	f := b.l.flat
-	nItem, nBand, err := f.flatten(b.ctx, top, win, b.items.Data, b.bands.Data, b.jobs)
+	nItem, nBand, err := f.flatten(b.ctx, top, f.first[top], win, b.items.Data, b.bands.Data, b.jobs)
 	if err != nil {
 		return err
 	}
 	w := flattener{f: f, win: win, items: b.items.Data, bands: b.bands.Data, nItem: nItem, nBand: nBand}
 	b.polygons = slices.Clip(f.polygons)
 	b.polygons = w.oddFigures(&b.l.odd[top], placement{0, -win.originX, -win.originY}, 0, b.polygons)
-	b.polygons = b.l.look.emit(top, f.box[f.h.tops[top]].join(b.l.odd[top].box), &w, b.polygons)
 	b.stage(top, stageSort)
+	b.sorted = sortItems(b.items.Data[:w.nItem], b.scratch.Data[:w.nItem], b.jobs)
 	sets := union(b.l.nodeOf.Data)
+	b.seekers = nil
 	if b.joined {
 		sets = nil
+	} else if err := b.lookers(top, &w); err != nil {
+		return err
 	}
-	sorted := sortItems(b.items.Data[:w.nItem], b.scratch.Data[:w.nItem], b.jobs)
+	sorted := b.sorted
+	b.filled = len(sorted)
 	b.sorted = dropCopiesBy(b.jobs, sorted, sets, uint32(f.total), b.l.keptTags())
-	b.done.items += int64(w.nItem)
+	b.done.items += int64(len(sorted) + len(b.seekers))
 	b.done.copies += int64(len(sorted) - len(b.sorted))
 	return nil
 }
 
+// lookers flattens and sorts what looks for shapes of a window, in the array that the sorted items have left: seekers stay there, what can
+// be none joins the items. w has flattened the figures.
+func (b *builder) lookers(top int, w *flattener) error {
+	b.stage(top, stageFlatten)
+	f := b.l.flat
+	_, idle := b.arrays()
+	v := flattener{f: f, win: w.win, items: idle, bands: w.bands, nBand: w.nBand}
+	var err error
+	if b.polygons, err = b.l.look.emit(b.ctx, top, f.box[f.h.tops[top]].join(b.l.odd[top].box), &v, b.polygons, b.jobs); err != nil {
+		return err
+	}
+	b.stage(top, stageSort)
+	seekers, others := splitSeekers(idle[:v.nItem], b.others.Data, b.spacing())
+	others = sortItems(others, idle[len(seekers):v.nItem], b.jobs)
+	b.sorted = mergeItems(b.sorted, others)
+	sortInPlace(seekers, byUpper(), b.jobs)
+	b.seekers = seekers
+	return nil
+}
+
+// spacing is the largest distance below which figures are near, in work units.
+func (b *builder) spacing() int64 { return b.l.rules.Reach() * b.l.flat.forms.scale }
+
 // search sweeps the window at hand.
 func (b *builder) search(sets union, win window) error {
 	scale := b.l.flat.forms.scale
-	s := &sweep{items: b.sorted, bands: b.bands.Data, polygons: b.polygons, spacing: b.l.rules.Reach() * scale,
+	s := &sweep{items: b.sorted, seekers: b.seekers, hitRoom: hitRoom(b.l.hits, len(b.seekers)), bands: b.bands.Data, polygons: b.polygons, spacing: b.spacing(),
 		anyMask: b.l.rules.AnyMask * scale, figures: uint32(b.l.flat.total), tags: b.l.keptTags(), room: &b.room, progress: b.opt.counted(int64(len(b.sorted)), "figures")}
 	sinks, err := s.run(b.ctx, sets, b.jobs, &b.limit)
 	if err == errTooManyPairs {
@@ -342,13 +381,8 @@ func (b *builder) search(sets union, win window) error {
 	if err != nil {
 		return err
 	}
-	more := 0
+	b.l.hits = joinHits(b.l.hits, sinks)
 	for i := range sinks {
-		more += len(sinks[i].hits)
-	}
-	b.l.hits = slices.Grow(b.l.hits, more)
-	for i := range sinks {
-		b.l.hits = append(b.l.hits, sinks[i].hits...)
 		b.done.add(&sinks[i].done)
 		b.near = append(b.near, sinks[i].near.blocks...)
 	}

@@ -12,8 +12,9 @@ import (
 // This file and its neighbours (memory_*.go) let shapes remember: which mask covers more of the area of each shape in an earlier
 // result. Memory goes by place, never by names or order, so it outlives any change of the hierarchy.
 //
-// Most of a layout is as it was, rectangle by rectangle. So the rectangles of both are sorted and compared in one pass (memory_match.go),
-// and only where they differ are touching neighbours looked for and areas measured (memory_cover.go).
+// A layout that is drawn as it was, figure by figure, needs no comparison of places (memory_twin.go). Else most of it is as it was,
+// rectangle by rectangle: the rectangles of both are sorted and compared in one pass (memory_match.go), and only where they differ are
+// touching neighbours looked for and areas measured (memory_cover.go).
 
 // Baseline is an earlier result.
 type Baseline struct {
@@ -24,7 +25,7 @@ type Baseline struct {
 }
 
 // Remember makes the run keep shapes on the masks that they have in an earlier result. The library must have been indexed with the
-// deck's Interest; name is that of its file, for messages.
+// deck's BaselineInterest, or its Interest; name is that of its file, for messages.
 //
 // Tops go together that have the same name, or that are the only ones of their streams. It is an *OrderError if none do, or if the
 // database units differ.
@@ -208,6 +209,10 @@ func (b *builder) recall(top int, begin, end uint32, windows []window) error {
 	}
 	c := newComparison(b, m.e, m.e.tops[top], begin, end)
 	defer c.free()
+	if len(windows) == 1 && c.unchanged(top) {
+		c.settle(m)
+		return nil
+	}
 	for _, win := range windows {
 		if len(windows) > 1 {
 			win.box = win.core
@@ -259,26 +264,33 @@ func (c *comparison) free() {
 	c.bands.Free()
 }
 
-// room gives an array for the items of both masks, and one to sort those of one mask with: what the builder's two arrays have left
-// beside its sorted items, or an array of its own.
-func (c *comparison) room() (items, scratch []item) {
+// room gives an array for the items of both masks: the one that the builder's sorted items have left, or an array of its own.
+func (c *comparison) room() []item {
 	onA, _ := c.e.size(int(A), c.top)
 	onB, _ := c.e.size(int(B), c.top)
-	busy, idle := c.b.arrays()
-	kept := len(c.b.sorted)
-	if onA+onB <= len(idle) && max(onA, onB) <= len(busy)-kept {
-		return idle[:onA+onB], busy[kept:]
+	if _, idle := c.b.arrays(); onA+onB <= len(idle) {
+		return idle[:onA+onB]
 	}
 	if c.own == nil {
-		c.own = arena.New[item](onA + onB + max(onA, onB))
+		c.own = arena.New[item](onA + onB)
 	}
-	return c.own.Data[:onA+onB], c.own.Data[onA+onB:]
+	return c.own.Data
+}
+
+// sort sorts items of the baseline: by radix where the copies that the builder has dropped left room for it.
+func (c *comparison) sort(items []item) {
+	busy, _ := c.b.arrays()
+	if room := busy[len(c.b.sorted):max(c.b.filled, len(c.b.sorted))]; len(items) <= len(room) {
+		copy(items, sortItems(items, room[:len(items)], c.b.jobs))
+		return
+	}
+	sortInPlace(items, byLower(), c.b.jobs)
 }
 
 // flatten fills on with the items of a window of the baseline.
 func (c *comparison) flatten(win window) error {
 	c.polys = append([]*geom.Polygon(nil), c.e.polygons...)
-	items, scratch := c.room()
+	items := c.room()
 	nBand := uint64(0)
 	for m, f := range c.e.masks {
 		c.on[m] = nil
@@ -289,7 +301,7 @@ func (c *comparison) flatten(win window) error {
 		w := flattener{f: f, win: win, items: items, bands: c.bands.Data}
 		if nBand == 0 {
 			var err error
-			if w.nItem, w.nBand, err = f.flatten(c.b.ctx, c.top, win, w.items, w.bands, c.b.jobs); err != nil {
+			if w.nItem, w.nBand, err = f.flatten(c.b.ctx, c.top, f.first[c.top], win, w.items, w.bands, c.b.jobs); err != nil {
 				return err
 			}
 		} else {
@@ -298,9 +310,9 @@ func (c *comparison) flatten(win window) error {
 		}
 		c.polys = w.oddFigures(&c.e.odd[m][c.top], placement{0, -win.originX, -win.originY}, 0, c.polys)
 		nBand = w.nBand
-		sorted := dropCopies(sortItems(items[:w.nItem], scratch[:w.nItem], c.b.jobs), nil, bandBit, nil)
-		c.on[m] = items[:copy(items, sorted)]
-		items = items[len(sorted):]
+		c.sort(items[:w.nItem])
+		c.on[m] = dropCopies(items[:w.nItem], nil, bandBit, nil)
+		items = items[len(c.on[m]):]
 	}
 	for m := range c.owner {
 		c.owner[m].Free()

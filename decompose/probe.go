@@ -1,6 +1,7 @@
 package decompose
 
 import (
+	"context"
 	"fmt"
 	"math"
 
@@ -8,7 +9,7 @@ import (
 )
 
 // This file lets places look for shapes: a box of the anchor file, a label, a figure of a marker layer. They go through the sweep with
-// the figures of the layer, as items whose IDs come behind those of the figures, and so cost no more than figures do.
+// the figures of the layer, with IDs behind those of the figures, and cost less than figures do (see seek.go).
 
 // Probe is a place that looks for shapes of a deck layer: it hits what it touches.
 type Probe struct {
@@ -165,7 +166,7 @@ func (k *lookout) size(top int) (items, bands int) {
 }
 
 // emit appends the items of all that looks for shapes of a top whose figures lie in a box; polygons are appended to those of the layer.
-func (k *lookout) emit(top int, within Box, w *flattener, polygons []*geom.Polygon) []*geom.Polygon {
+func (k *lookout) emit(ctx context.Context, top int, within Box, w *flattener, polygons []*geom.Polygon, jobs int) ([]*geom.Polygon, error) {
 	at := placement{0, -w.win.originX, -w.win.originY}
 	if k.byTop != nil {
 		for _, i := range k.byTop[top] {
@@ -183,7 +184,7 @@ func (k *lookout) emit(top int, within Box, w *flattener, polygons []*geom.Polyg
 		}
 	}
 	if k.markers == nil || k.markers.all[k.markers.h.tops[top]] == 0 {
-		return polygons
+		return polygons, nil
 	}
 	m := k.markers
 	base := uint32(len(polygons))
@@ -193,10 +194,19 @@ func (k *lookout) emit(top int, within Box, w *flattener, polygons []*geom.Polyg
 	// The markers' numbers of polygons, and their ordinals, come behind those of the layer.
 	m.polygonBase = base
 	behind := k.figures + uint32(len(k.probes))
-	f.walk(m.h.tops[top], at, m.first[top]+uint64(behind))
+	first := m.first[top] + uint64(behind)
+	if m.bands[m.h.tops[top]] == 0 {
+		n, _, err := m.flatten(ctx, top, first, w.win, w.items[w.nItem:], nil, jobs)
+		if err != nil {
+			return nil, err
+		}
+		f.nItem += n
+	} else {
+		f.walk(m.h.tops[top], at, first)
+	}
 	polygons = f.oddFigures(&k.odd[top], at, behind, polygons)
 	w.nItem, w.nBand = f.nItem, f.nBand
-	return polygons
+	return polygons, nil
 }
 
 // oddFigures emits figures under a magnification or an odd angle, their ordinals raised by behind; their polygons are appended to a list

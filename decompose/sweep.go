@@ -2,6 +2,7 @@ package decompose
 
 import (
 	"context"
+	"math"
 	"math/bits"
 	"slices"
 	"sync/atomic"
@@ -18,13 +19,16 @@ import (
 // is within the spacing in y and, but for the outermost buckets, in x: the work grows with the pairs found and not with the size of
 // figures or of their bounding boxes. The sorted items are cut in stretches that depend on the items alone; each stretch starts with
 // what is active there (see plan).
+//
+// What only looks for figures that it touches does not become active (see seek.go).
 
 // pairSink takes what a sweep finds.
 type pairSink struct {
 	sets    union // touching figures are joined here
 	near    pairs // near figures
-	hits    []hit // probes that touch a figure
+	hits    []hit // probes that touch a figure; as far as the seekers of the stretch go, in the room that the sweep has for them
 	touched []hit // pairs of touching figures, where they are wanted
+	seekers int   // with room for one hit each
 	limit   *atomic.Int64
 	done    searched
 }
@@ -35,6 +39,8 @@ type hit struct{ probe, figure uint32 }
 // sweep is one window of one top, ready to be searched.
 type sweep struct {
 	items       []item // sorted by (Y1, X1)
+	seekers     []item // sorted by (Y2, X1): see seek.go
+	hitRoom     []hit  // as long as seekers
 	bands       []band
 	polygons    []*geom.Polygon
 	spacing     int64  // work units
@@ -64,6 +70,7 @@ func (s *sweep) run(ctx context.Context, sets union, jobs int, limit *atomic.Int
 		w := searcher{s: s, sink: &sink}
 		w.few()
 		sink.near.flush(limit)
+		w.seekFew()
 		return []pairSink{sink}, ctx.Err()
 	}
 	s.low, s.high = int64(s.items[0].X1), int64(s.items[0].X2)
@@ -110,8 +117,9 @@ func (s *sweep) run(ctx context.Context, sets union, jobs int, limit *atomic.Int
 
 // stretch is a part of the sorted items, with those before it that are active where it begins.
 type stretch struct {
-	from, to int
-	active   []uint32
+	from, to         int
+	active           []uint32
+	seekFrom, seekTo int // seekers whose upper edge is reached here
 }
 
 // plan cuts the items in stretches and gives them to fn, in order, until that is false. What is active where a stretch begins costs
@@ -122,6 +130,7 @@ func (s *sweep) plan(fn func(stretch) bool) {
 	var reaching []uint32
 	for st.from < len(s.items) {
 		st.to = min(st.from+max(stretchItems, len(st.active)/2), len(s.items))
+		st.seekTo = s.seekersBefore(&st)
 		if !fn(st) || st.to == len(s.items) {
 			return
 		}
@@ -137,7 +146,7 @@ func (s *sweep) plan(fn func(stretch) bool) {
 				reaching = append(reaching, uint32(i))
 			}
 		}
-		st = stretch{from: st.to, active: slices.Clone(reaching)}
+		st = stretch{from: st.to, active: slices.Clone(reaching), seekFrom: st.seekTo}
 	}
 }
 
@@ -150,7 +159,10 @@ type searcher struct {
 	free   uint32   // room that has become free, as a list; 0: none
 	level  [levels]level
 	used   uint64 // bit k: level k has been filled in this stretch
-	shift0 int    // log2 of the width of the buckets of level 0
+	seeks  bool   // the item at hand is a seeker: it is compared as one
+	mixed  []hit  // see orderHits
+	places [seekersAtOnce + 1]uint32
+	shift0 int // log2 of the width of the buckets of level 0
 	slots  int64
 }
 
@@ -202,11 +214,19 @@ func (w *searcher) stretch(ctx context.Context, sink *pairSink, st *stretch) err
 		w.room = arena.New[active](most)
 	}
 	w.active, w.free = w.room.Data[:1], 0
+	sink.hits, sink.seekers = s.hitRoom[st.seekFrom:st.seekFrom:st.seekTo], st.seekTo-st.seekFrom
 	sink.done.carried += int64(len(st.active))
 	for _, i := range st.active {
 		w.insert(&s.items[i])
 	}
+	next := st.seekFrom
 	for i := st.from; i < st.to; i++ {
+		if next < st.seekTo && s.seekers[next].Y2 < s.items[i].Y1 {
+			var err error
+			if next, err = w.seekBelow(ctx, next, st.seekTo, int64(s.items[i].Y1)); err != nil {
+				return err
+			}
+		}
 		if i&1023 == 0 {
 			if err := ctx.Err(); err != nil {
 				return err
@@ -220,7 +240,8 @@ func (w *searcher) stretch(ctx context.Context, sink *pairSink, st *stretch) err
 		}
 	}
 	sink.near.flush(sink.limit)
-	return nil
+	_, err := w.seekBelow(ctx, next, st.seekTo, math.MaxInt64)
+	return err
 }
 
 // fewItems is up to how many items are compared each with each, without buckets.
@@ -294,23 +315,24 @@ func (w *searcher) query(q *item) bool {
 			}
 			continue
 		}
-		from, to := uint32(first&mask), uint32(last&mask)
-		switch {
-		case last-first >= mask:
-			if w.slotRange(l, 0, uint32(mask), q) {
-				return true
-			}
-		case from <= to:
-			if w.slotRange(l, from, to, q) {
-				return true
-			}
-		default:
-			if w.slotRange(l, from, uint32(mask), q) || w.slotRange(l, 0, to, q) {
-				return true
-			}
+		if w.many(l, first, last, q) {
+			return true
 		}
 	}
 	return false
+}
+
+// many compares an item with those of many buckets of a level.
+func (w *searcher) many(l *level, first, last int64, q *item) bool {
+	mask := w.slots - 1
+	from, to := uint32(first&mask), uint32(last&mask)
+	switch {
+	case last-first >= mask:
+		return w.slotRange(l, 0, uint32(mask), q)
+	case from <= to:
+		return w.slotRange(l, from, to, q)
+	}
+	return w.slotRange(l, from, uint32(mask), q) || w.slotRange(l, 0, to, q)
 }
 
 func (w *searcher) slotRange(l *level, from, to uint32, q *item) bool {
@@ -325,6 +347,10 @@ func (w *searcher) slotRange(l *level, from, to uint32, q *item) bool {
 
 // slot compares an item with those of one slot, and drops from it what the sweep has left behind.
 func (w *searcher) slot(l *level, slot uint32, q *item) bool {
+	if w.seeks {
+		w.seekSlot(l.heads[slot], q)
+		return false
+	}
 	spacing := w.s.spacing
 	line := int64(q.Y1)
 	for link := &l.heads[slot]; *link != 0; {

@@ -17,8 +17,13 @@ import (
 //
 // Faults of the stream are of type *SyntaxError; errors of r come as they are.
 func Index(r io.Reader, size int64, want Interest, progress func(bytes int64)) (*Library, error) {
+	return index(r, size, want, progress, true)
+}
+
+// index is Index; without sums the stream cannot be copied by what it gives.
+func index(r io.Reader, size int64, want Interest, progress func(bytes int64), sums bool) (*Library, error) {
 	x := newIndexer(r, size, want)
-	x.s.progress = progress
+	x.s.progress, x.s.sums = progress, sums
 	if err := x.library(); err != nil {
 		return nil, err
 	}
@@ -50,7 +55,6 @@ type indexer struct {
 func newIndexer(r io.Reader, size int64, want Interest) *indexer {
 	x := &indexer{s: NewScanner(r), size: size, figures: newClasses(want.Figures), labels: newClasses(want.Labels),
 		limit: maxFigures, ids: map[string]int32{}, lastRef: -1, texts: map[string]string{}}
-	x.s.sums = true
 	x.lib = &Library{Boxes: map[LayerType]int{}}
 	if size > 0 {
 		// No element is shorter than 32 bytes.

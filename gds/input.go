@@ -28,12 +28,13 @@ type Input struct {
 	packed bool
 	given  int64 // size of the file as given, -1 where it is not known
 
-	source *pump // of the file as given
-	unpack *pump // of the unpacked stream; the same as source where nothing is packed
+	source *pump     // of the file as given; nil: it is read straight away
+	unpack *pump     // of the unpacked stream; the same as source where nothing is packed
+	stream io.Reader // unpacked, for the first pass
 	spool  *os.File
 	stale  string // name of the spool file where it must be removed by Close
 
-	hash   hash.Hash
+	hash   hash.Hash // nil: none is taken
 	sum    [sha256.Size]byte
 	length int64 // of the file as given, once it is read
 }
@@ -43,7 +44,17 @@ type Input struct {
 //
 // Errors of Open, Index and Changed begin with the name of the input.
 func Open(path string, spool bool, stdin io.Reader) (*Input, error) {
-	in := &Input{name: path, given: -1, hash: sha256.New()}
+	return open(&Input{name: path, given: -1, hash: sha256.New()}, spool, stdin)
+}
+
+// OpenUnsummed opens an input that is only indexed: neither a SHA-256 of it nor checksums of its structures are taken, and it is not
+// spooled.
+func OpenUnsummed(path string) (*Input, error) {
+	return open(&Input{name: path, given: -1}, false, nil)
+}
+
+func open(in *Input, spool bool, stdin io.Reader) (*Input, error) {
+	path := in.name
 	var src io.Reader = stdin
 	if path == "-" {
 		in.name = "standard input"
@@ -87,10 +98,13 @@ func (in *Input) start(src io.Reader, spool bool) error {
 	in.packed = isGzip(head[:n])
 	in.plain = in.given >= 0 && !in.packed
 
-	sides := []side{func(data []byte) error {
-		in.hash.Write(data)
-		return nil
-	}}
+	var sides []side
+	if in.hash != nil {
+		sides = []side{func(data []byte) error {
+			in.hash.Write(data)
+			return nil
+		}}
+	}
 	var keep []side
 	if spool && !in.plain {
 		if err := in.openSpool(); err != nil {
@@ -98,13 +112,17 @@ func (in *Input) start(src io.Reader, spool bool) error {
 		}
 		keep = []side{in.keep}
 	}
-	if !in.packed {
+	switch {
+	case in.packed:
+		in.source = newPump(src, sides...)
+		in.unpack = newPump(&gunzip{r: bufio.NewReaderSize(in.source, 1<<16)}, keep...)
+		in.stream = in.unpack
+	case sides == nil && keep == nil:
+		in.stream = src // nothing is done beside, so reading ahead would only copy
+	default:
 		in.source = newPump(src, append(sides, keep...)...)
-		in.unpack = in.source
-		return nil
+		in.unpack, in.stream = in.source, in.source
 	}
-	in.source = newPump(src, sides...)
-	in.unpack = newPump(&gunzip{r: bufio.NewReaderSize(in.source, 1<<16)}, keep...)
 	return nil
 }
 
@@ -160,7 +178,7 @@ func (in *Input) Index(want Interest, progress func(bytes int64)) (*Library, err
 			progress(bytes)
 		}
 	}
-	lib, err := Index(in.unpack, size, want, tell)
+	lib, err := index(in.stream, size, want, tell, in.hash != nil)
 	if err == nil {
 		err = in.finish()
 	}
@@ -172,14 +190,18 @@ func (in *Input) Index(want Interest, progress func(bytes int64)) (*Library, err
 
 // finish waits for what ran beside pass 1.
 func (in *Input) finish() error {
-	if err := in.source.wait(); err != nil {
-		return err
+	if in.source != nil {
+		if err := in.source.wait(); err != nil {
+			return err
+		}
+		if err := in.unpack.wait(); err != nil {
+			return err
+		}
+		in.length = in.source.read.Load()
 	}
-	if err := in.unpack.wait(); err != nil {
-		return err
+	if in.hash != nil {
+		in.hash.Sum(in.sum[:0])
 	}
-	in.hash.Sum(in.sum[:0])
-	in.length = in.source.read.Load()
 	return in.changed()
 }
 

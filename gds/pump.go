@@ -10,7 +10,7 @@ import (
 // others (the hash, the spool file) that work beside it. A small pool of blocks goes round; the slowest holds up the rest.
 
 const (
-	blockSize = 1 << 20
+	blockSize = 1 << 18 // all of them stay in the cache
 	poolSize  = 8
 )
 

@@ -177,6 +177,9 @@ func (s *Scanner) fill() bool {
 
 // cut gives the CRC-32C of the bytes from the last cut to the next record.
 func (s *Scanner) cut() uint32 {
+	if !s.sums {
+		return 0
+	}
 	sum := crc32.Update(s.sum, castagnoli, s.buf[s.from:s.pos])
 	s.sum, s.from = 0, s.pos
 	return sum
