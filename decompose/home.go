@@ -21,7 +21,7 @@ import (
 
 // deal turns the free groups of a layout, and chooses among the solutions of broken ones.
 func (l *layout) deal(ctx context.Context, a *assignment, s *solver, jobs int) error {
-	d := &dealer{l: l, a: a}
+	d := &dealer{l: l, a: a, jobs: jobs}
 	shared := d.hashFigures()
 	if shared {
 		d.findPlaces()
@@ -138,6 +138,7 @@ func (d *dealer) findDeltas() {
 type dealer struct {
 	l     *layout
 	a     *assignment
+	jobs  int
 	room  *arena.Slab // of the turn at hand
 	delta []float64   // by group, as the masks are now
 
@@ -258,27 +259,65 @@ func (d *dealer) findPlaces() {
 
 // eachShared calls fn for every placement of a shared structure, with its own figures, whose ordinals begin at first.
 func (d *dealer) eachShared(fn func(first uint32, figures []uint32)) {
+	d.eachSharedBy(1, func(_ int, first uint32, figures []uint32) { fn(first, figures) })
+}
+
+// eachSharedBy is eachShared with several workers; fn is told which one calls.
+func (d *dealer) eachSharedBy(workers int, fn func(worker int, first uint32, figures []uint32)) {
 	list := d.l.flat.list
-	for _, p := range d.places {
-		own := list[p.structure]
-		d.visited += int64(len(own))
-		fn(p.first, own)
+	visited := make([]int64, workers)
+	each(workers, func(w int) {
+		n := int64(0)
+		for _, p := range d.places[len(d.places)*w/workers : len(d.places)*(w+1)/workers] {
+			own := list[p.structure]
+			n += int64(len(own))
+			fn(w, p.first, own)
+		}
+		visited[w] = n
+	})
+	for _, n := range visited {
+		d.visited += n
 	}
+}
+
+// mostShared is up to how many numbers of one kind each worker has for itself, so that memory does not grow with the workers where there is
+// much.
+const mostShared = 1 << 20
+
+// workersFor gives how many workers go through all placements at once if each needs so many numbers of its own.
+func (d *dealer) workersFor(numbers int) int {
+	if numbers > mostShared || len(d.places) < 1<<12 {
+		return 1
+	}
+	return d.jobs
 }
 
 // hashGroups adds up, group by group, what is in it; sums do not depend on the order.
 func (d *dealer) hashGroups() {
-	d.hashes, d.size = arena.Cut[[2]uint64](d.room, d.a.groups), arena.Cut[uint32](d.room, d.a.groups)
+	workers := d.workersFor(3 * d.a.groups)
+	hashes, size := make([][][2]uint64, workers), make([][]uint32, workers)
+	for w := range workers {
+		hashes[w], size[w] = arena.Cut[[2]uint64](d.room, d.a.groups), arena.Cut[uint32](d.room, d.a.groups)
+	}
 	node, group, mask := d.l.nodeOf.Data, d.a.group, d.a.mask.Data
-	d.eachShared(func(first uint32, figures []uint32) {
+	d.eachSharedBy(workers, func(w int, first uint32, figures []uint32) {
+		hashes, size := hashes[w], size[w]
 		for k, n := range node[first : first+uint32(len(figures))] {
 			g, m := group[n], mask[n]&1
 			sign := &d.signs[figures[k]]
-			d.size[g]++
-			d.hashes[g][0] += sign[m]
-			d.hashes[g][1] += sign[m^1]
+			size[g]++
+			hashes[g][0] += sign[m]
+			hashes[g][1] += sign[m^1]
 		}
 	})
+	d.hashes, d.size = hashes[0], size[0]
+	for w := 1; w < workers; w++ {
+		for g := range d.size {
+			d.size[g] += size[w][g]
+			d.hashes[g][0] += hashes[w][g][0]
+			d.hashes[g][1] += hashes[w][g][1]
+		}
+	}
 }
 
 // makeClasses puts groups with the same hashes in one class.
@@ -326,8 +365,12 @@ func (d *dealer) fillClasses() {
 	for i := range d.classes {
 		begin[i+1] = begin[i] + d.size[d.classes[i].example]
 	}
-	found := arena.CutDirty[uint64](d.room, int(begin[len(d.classes)]))
-	end := slices.Clone(begin)
+	all := int(begin[len(d.classes)])
+	workers := d.workersFor(all)
+	found, end := make([][]uint64, workers), make([][]uint32, workers)
+	for w := range workers {
+		found[w], end[w] = arena.CutDirty[uint64](d.room, all), slices.Clone(begin)
+	}
 	example := newBitset(d.l.nodes) // nodes in the examples of classes
 	group, mask := d.a.group, d.a.mask.Data
 	for n, g := range group {
@@ -336,7 +379,8 @@ func (d *dealer) fillClasses() {
 		}
 	}
 	node := d.l.nodeOf.Data
-	d.eachShared(func(first uint32, figures []uint32) {
+	d.eachSharedBy(workers, func(w int, first uint32, figures []uint32) {
+		found, end := found[w], end[w]
 		for k, n := range node[first : first+uint32(len(figures))] {
 			if !example.has(n) {
 				continue
@@ -355,12 +399,14 @@ func (d *dealer) fillClasses() {
 	var drawn []uint32
 	for i := range d.classes {
 		drawn = drawn[:0]
-		for _, f := range found[begin[i]:end[i]] {
-			t := &times[f>>1]
-			if *t == ([2]int32{}) {
-				drawn = append(drawn, uint32(f>>1))
+		for w := range workers {
+			for _, f := range found[w][begin[i]:end[w][i]] {
+				t := &times[f>>1]
+				if *t == ([2]int32{}) {
+					drawn = append(drawn, uint32(f>>1))
+				}
+				t[f&1]++
 			}
-			t[f&1]++
 		}
 		slices.Sort(drawn)
 		members := make([]member, len(drawn))

@@ -46,9 +46,10 @@ type builder struct {
 	ctx      context.Context
 	jobs     int
 	l        *layout
-	limit    atomic.Int64 // near pairs of figures that may still be kept
-	items    *arena.Array[item]
-	scratch  *arena.Array[item]
+	limit    atomic.Int64       // near pairs of figures that may still be kept
+	both     *arena.Array[item] // of a top: half of it each is
+	items    []item
+	scratch  []item
 	others   *arena.Array[item] // what looks for shapes and is no seeker
 	bands    *arena.Array[band]
 	room     pairRoom
@@ -118,7 +119,8 @@ func newLayout(ctx context.Context, h *hierarchy, sel *selection, rules *LayerRu
 		mostLooking, looking = max(mostLooking, more), looking+more
 	}
 	// What looks for shapes mostly finds room in one of the arrays, and touches one figure: room that is not touched takes no memory.
-	b.items, b.scratch, b.others, b.bands = arena.New[item](most), arena.New[item](most), arena.New[item](mostLooking), arena.New[band](mostBands)
+	b.both, b.others, b.bands = arena.New[item](2*most), arena.New[item](mostLooking), arena.New[band](mostBands)
+	b.items, b.scratch = b.both.Data[:most:most], b.both.Data[most:]
 	l.hits = arena.Make[hit](0, looking)
 	shapes := uint32(0)
 	for rank, top := range h.byName {
@@ -135,8 +137,7 @@ func newLayout(ctx context.Context, h *hierarchy, sel *selection, rules *LayerRu
 	}
 	l.first[len(h.tops)] = shapes
 	l.shapes, l.nodes = int(shapes), int(shapes)
-	arena.Hand(&l.room, b.items)
-	arena.Hand(&l.room, b.scratch)
+	arena.Hand(&l.room, b.both)
 	b.others.Free()
 	b.bands.Free()
 	if l.given != nil {
@@ -145,7 +146,7 @@ func newLayout(ctx context.Context, h *hierarchy, sel *selection, rules *LayerRu
 	b.done.tell(opt)
 	opt.stage(stagePairs)
 	l.near = gather(&l.room, b.near, l.nodeOf.Data, l.nodes, l.given)
-	b.room.hand(&l.room)
+	b.room.free()
 	if err := l.judgeFacing(ctx, b.kept, opt.jobs()); err != nil {
 		return nil, err
 	}
@@ -169,7 +170,7 @@ func (b *builder) stage(top int, name string) {
 
 // arrays gives the builder's two arrays of items: the one that holds the sorted items of the window at hand, and the other.
 func (b *builder) arrays() (busy, idle []item) {
-	busy, idle = b.items.Data, b.scratch.Data
+	busy, idle = b.items, b.scratch
 	if len(b.sorted) > 0 && len(idle) > 0 && &b.sorted[0] == &idle[0] {
 		return idle, busy
 	}
@@ -177,8 +178,7 @@ func (b *builder) arrays() (busy, idle []item) {
 }
 
 func (b *builder) free() {
-	b.items.Free()
-	b.scratch.Free()
+	b.both.Free()
 	b.others.Free()
 	b.bands.Free()
 	b.room.free()
@@ -321,15 +321,15 @@ func (b Box) shift(x, y int64) Box { return Box{b.X1 + x, b.Y1 + y, b.X2 + x, b.
 func (b *builder) prepare(top int, win window) error {
 	b.stage(top, stageFlatten)
 	f := b.l.flat
-	nItem, nBand, err := f.flatten(b.ctx, top, f.first[top], win, b.items.Data, b.bands.Data, b.jobs)
+	nItem, nBand, err := f.flatten(b.ctx, top, f.first[top], win, b.items, b.bands.Data, b.jobs)
 	if err != nil {
 		return err
 	}
-	w := flattener{f: f, win: win, items: b.items.Data, bands: b.bands.Data, nItem: nItem, nBand: nBand}
+	w := flattener{f: f, win: win, items: b.items, bands: b.bands.Data, nItem: nItem, nBand: nBand}
 	b.polygons = slices.Clip(f.polygons)
 	b.polygons = w.oddFigures(&b.l.odd[top], placement{0, -win.originX, -win.originY}, 0, b.polygons)
 	b.stage(top, stageSort)
-	b.sorted = sortItems(b.items.Data[:w.nItem], b.scratch.Data[:w.nItem], b.jobs)
+	b.sorted = sortItems(b.items[:w.nItem], b.scratch[:w.nItem], b.jobs)
 	sets := union(b.l.nodeOf.Data)
 	b.seekers = nil
 	if b.joined {

@@ -67,14 +67,6 @@ func (r *pairRoom) free() {
 	r.all, r.spare = nil, nil
 }
 
-// hand gives the memory of all blocks to a slab.
-func (r *pairRoom) hand(room *arena.Slab) {
-	for _, a := range r.all {
-		arena.Hand(room, a)
-	}
-	r.all, r.spare = nil, nil
-}
-
 // flush closes the open block.
 func (p *pairs) flush(limit *atomic.Int64) {
 	if len(p.open) > 0 {

@@ -11,9 +11,7 @@ import (
 type Slab struct {
 	mu     sync.Mutex
 	from   *Slab // takes its blocks there; nil: from the system
-	blocks [][]byte
-	at     int       // block that is dealt out of
-	used   int       // bytes of it
+	blocks []block
 	mapped []mapping // of blocks: what the system gave
 }
 
@@ -34,7 +32,7 @@ func Hand[T any](s *Slab, a *Array[T]) {
 	}
 	if a.memory.usable != nil {
 		s.mu.Lock()
-		s.blocks, s.mapped = append(s.blocks, a.memory.usable), append(s.mapped, a.memory)
+		s.blocks, s.mapped = append(s.blocks, block{memory: a.memory.usable}), append(s.mapped, a.memory)
 		s.mu.Unlock()
 	}
 	a.Data, a.memory = nil, mapping{}
@@ -54,30 +52,51 @@ func CutDirty[T any](s *Slab, n int) []T {
 	return unsafe.Slice((*T)(unsafe.Pointer(unsafe.SliceData(memory))), n)
 }
 
-// cut gives the next bytes, at an address that every type may have.
+// cut gives the next bytes of the first block that has so many left, at an address that every type may have.
 func (s *Slab) cut(size int) []byte {
 	const align = 64
 	size = (size + align - 1) &^ (align - 1)
 	s.mu.Lock()
 	defer s.mu.Unlock()
-	for ; s.at < len(s.blocks); s.at, s.used = s.at+1, 0 {
-		if block := s.blocks[s.at]; len(block)-s.used >= size {
-			s.used += size
-			return block[s.used-size : s.used : s.used]
+	for i := range s.blocks {
+		if b := &s.blocks[i]; len(b.memory)-b.used >= size {
+			return b.cut(size)
 		}
 	}
-	s.blocks = append(s.blocks, s.block(size))
-	s.used = size
-	return s.blocks[s.at][:size:size]
+	if size > usualBlock {
+		s.leave()
+	}
+	s.blocks = append(s.blocks, block{memory: s.more(size)})
+	return s.blocks[len(s.blocks)-1].cut(size)
 }
 
-// block gives a block of at least a size.
-func (s *Slab) block(size int) []byte {
+// block is memory of which the first bytes are dealt out.
+type block struct {
+	memory []byte
+	used   int
+}
+
+func (b *block) cut(size int) []byte {
+	b.used += size
+	return b.memory[b.used-size : b.used : b.used]
+}
+
+// leave gives back the pages that are not dealt out, as what comes does not fit there. They come back when they are touched.
+func (s *Slab) leave() {
+	for i := range s.blocks {
+		if b := &s.blocks[i]; s.from == nil && len(b.memory)-b.used > usualBlock {
+			forget(b.memory[b.used:])
+		}
+	}
+}
+
+// more gives memory for a further block, of at least a size.
+func (s *Slab) more(size int) []byte {
 	usual := firstBlock
 	if n := len(s.blocks); n > 0 {
-		usual = min(max(usual, 2*len(s.blocks[n-1])), usualBlock)
+		usual = min(max(usual, 2*len(s.blocks[n-1].memory)), usualBlock)
 	}
-	size = (size + usual - 1) &^ (usual - 1)
+	size = (max(size, usual) + firstBlock - 1) &^ (firstBlock - 1)
 	if s.from != nil {
 		return s.from.cut(size)
 	}
@@ -93,12 +112,16 @@ func (s *Slab) block(size int) []byte {
 }
 
 // Reset gives up all slices, and with them the slabs within this one. The memory stays for what comes.
-func (s *Slab) Reset() { s.at, s.used = 0, 0 }
+func (s *Slab) Reset() {
+	for i := range s.blocks {
+		s.blocks[i].used = 0
+	}
+}
 
 // Free gives up all slices and the memory, of slabs within this one too.
 func (s *Slab) Free() {
 	for _, m := range s.mapped {
 		give(m)
 	}
-	s.blocks, s.mapped, s.at, s.used = nil, nil, 0, 0
+	s.blocks, s.mapped = nil, nil
 }
