@@ -3,7 +3,6 @@ package decompose
 import (
 	"context"
 	"encoding/binary"
-	"fmt"
 	"hash/maphash"
 	"slices"
 	"sync"
@@ -43,8 +42,8 @@ type brokenGroup struct {
 	solution exact.Solution // of weighed
 	masks    []uint8        // by atom, as solved last; the group may have been turned over since
 	homing   bool           // solved again, nearest to the usual masks
-	home     *exact.Problem // of that
-	homeUnit int64          // by which the aims that count are weighed then
+	home     [][2]int64     // what masks cost then, where ties or pieces make other nodes of the problem than those of the group
+	worst    int64          // more than any assignment costs in the aims that count; 0: not worked out
 	near     exact.Solution
 	least    *[]int // least set of cuts that resolves the group, once it was looked for
 
@@ -147,25 +146,6 @@ func (s *solver) exactly(p *exact.Problem, budget exact.Budget) (sol exact.Solut
 	return sol
 }
 
-// bytesPerOddPair is what a near pair of a broken group takes while the group is solved and explained, as measured where all is near to
-// all: with its edges in the problem and its copies, and with half of such pairs in the report.
-const bytesPerOddPair = 500
-
-// checkMemory refuses broken groups that will not fit into the memory that the run may use.
-func (s *solver) checkMemory() error {
-	pairs := int64(0)
-	for i := range s.groups {
-		for _, u := range s.groups[i].nodes {
-			pairs += int64(len(s.l.near.of(u)))
-		}
-	}
-	if need := bytesAlways + s.opt.held + pairs*bytesPerOddPair; s.opt.Memory > 0 && need > s.opt.Memory {
-		return &LimitError{Msg: fmt.Sprintf("layer %s: %d near pairs in odd components will need about %s of memory, more than the %s that this run may use",
-			s.l.rules.Name, pairs, sizeText(need), sizeText(s.opt.Memory)), Remedy: "check the spacing, or allow more with --memory"}
-	}
-	return nil
-}
-
 // of gives the index of the broken group of a node; false where its group is not broken.
 func (s *solver) of(node uint32) (int, bool) {
 	if s.broken == nil {
@@ -200,7 +180,7 @@ func (s *solver) solve(ctx context.Context, jobs int) error {
 	if len(s.groups) == 0 {
 		return nil
 	}
-	if err := s.checkMemory(); err != nil {
+	if err := s.checkPairs(); err != nil {
 		return err
 	}
 	if err := s.arrange(ctx, jobs); err != nil {
@@ -244,7 +224,7 @@ func (s *solver) solve(ctx context.Context, jobs int) error {
 		}
 		s.a.free[b.group] = b.turnable()
 	}
-	return nil
+	return s.checkLeft()
 }
 
 // The counted work of a layer: what may be spent on the groups of one layer at first, what any group may take of it, and what it may
@@ -631,9 +611,15 @@ func hashProblem(seed maphash.Seed, p *exact.Problem) uint64 {
 		binary.LittleEndian.PutUint64(buf[8:], uint64(c[1]))
 		h.Write(buf[:16])
 	}
+	for _, c := range p.Lesser {
+		binary.LittleEndian.PutUint64(buf[0:], uint64(c[0]))
+		binary.LittleEndian.PutUint64(buf[8:], uint64(c[1]))
+		h.Write(buf[:16])
+	}
 	return h.Sum64()
 }
 
 func equalProblems(p, q *exact.Problem) bool {
-	return p.Nodes == q.Nodes && slices.Equal(p.Edges, q.Edges) && slices.Equal(p.Fixed, q.Fixed) && slices.Equal(p.Cost, q.Cost)
+	return p.Nodes == q.Nodes && slices.Equal(p.Edges, q.Edges) && slices.Equal(p.Fixed, q.Fixed) && slices.Equal(p.Cost, q.Cost) &&
+		p.Unit == q.Unit && slices.Equal(p.Lesser, q.Lesser)
 }

@@ -15,18 +15,20 @@ import (
 const (
 	bytesPerItem   = int64(unsafe.Sizeof(item{})) // in each of the two arrays between which items are sorted
 	bytesPerFigure = 4                            // node of each flat figure
+	bytesPerArea   = 8                            // of each node
 	bytesPerBand   = int64(unsafe.Sizeof(band{}))
 	bytesPerProbe  = 24 // what a marker touches
 	// What is found: near pairs, areas, pairs by shape. Where cells are placed often, much of what they share lies on itself and is found
 	// once.
-	foundPerDrawn  = 36 // by flat figure of a structure that is placed once
-	foundPerPlaced = 14 // by flat figure of others
-	keptPerDrawn   = 26 // the same, once the layer is done and others follow
-	keptPerPlaced  = 10
-	bytesPerForm   = int64(unsafe.Sizeof(form{})) + 5 // by outline
-	bytesPerRect   = int64(unsafe.Sizeof(geom.Rect{}))
-	bytesPerCell   = 1200     // by structure: its name, its tables, its ways
-	bytesAlways    = 14 << 20 // program, buffers and stacks
+	foundPerDrawn   = 36 // by flat figure of a structure that is placed once
+	foundPerPlaced  = 14 // by flat figure of others
+	judgedPerFigure = 16 // more, where pairs are judged by what faces what
+	keptPerDrawn    = 26 // the same, once the layer is done and others follow
+	keptPerPlaced   = 10
+	bytesPerForm    = int64(unsafe.Sizeof(form{})) + 5 // by outline
+	bytesPerRect    = int64(unsafe.Sizeof(geom.Rect{}))
+	bytesPerCell    = 1200     // by structure: its name, its tables, its ways
+	bytesAlways     = 14 << 20 // program, buffers and stacks
 )
 
 // indexBytes is what the index of a stream takes.
@@ -43,13 +45,19 @@ func (r *Run) Estimate() int64 { return r.opt.most }
 
 // checkMemory refuses a layer that will not fit into the memory that the run may use.
 func (l *layout) checkMemory(opt *Options, before int64) error {
-	need := before + l.estimate()
-	opt.most = max(opt.most, need)
-	if opt.Memory > 0 && need > opt.Memory {
-		return &LimitError{Msg: fmt.Sprintf("layer %s: %d flat figures will need about %s of memory, more than the %s that this run may use",
-			l.rules.Name, l.flat.total, sizeText(need), sizeText(opt.Memory)), Remedy: "allow more with --memory, or " + byBlocks}
+	return opt.allow(before+l.estimate(), func() string {
+		return fmt.Sprintf("layer %s: %d flat figures", l.rules.Name, l.flat.total)
+	})
+}
+
+// allow refuses to use so many bytes for something if that is more than the run may use.
+func (o *Options) allow(need int64, something func() string) error {
+	o.most = max(o.most, need)
+	if o.Memory == 0 || need <= o.Memory {
+		return nil
 	}
-	return nil
+	return &LimitError{Msg: fmt.Sprintf("%s will need about %s of memory, more than the %s that this run may use", something(), sizeText(need), sizeText(o.Memory)),
+		Remedy: "allow more with --memory, or " + byBlocks}
 }
 
 // estimate is what a layer will need at most, in bytes, above the index: while its largest top is searched.
@@ -62,16 +70,23 @@ func (l *layout) estimate() int64 {
 		probes += int64(more)
 		most, mostBands, mostSeekers = max(most, items), max(mostBands, bands+int64(moreBands)), max(mostSeekers, int64(more))
 	}
-	forms := int64(len(f.forms.rects))*bytesPerRect + int64(len(f.forms.of))*bytesPerForm
 	// Seekers take the array that the sorted items leave.
 	items := (most + max(most, mostSeekers)) * bytesPerItem
-	return forms + int64(f.total)*bytesPerFigure + items + mostBands*bytesPerBand + probes*bytesPerProbe + l.found(foundPerDrawn, foundPerPlaced)
+	found := l.found(foundPerDrawn, foundPerPlaced)
+	if l.judgedRules() != nil {
+		found += int64(f.total) * judgedPerFigure
+	}
+	return l.formBytes() + int64(f.total)*bytesPerFigure + items + mostBands*bytesPerBand + probes*bytesPerProbe + found
 }
 
 // kept is what a layer holds once it is done, in bytes.
 func (l *layout) kept() int64 {
-	forms := int64(len(l.flat.forms.rects))*bytesPerRect + int64(len(l.flat.forms.of))*bytesPerForm
-	return forms + int64(l.flat.total)*bytesPerFigure + l.found(keptPerDrawn, keptPerPlaced)
+	return l.formBytes() + int64(l.flat.total)*bytesPerFigure + l.found(keptPerDrawn, keptPerPlaced)
+}
+
+// formBytes is what the forms of drawn figures take.
+func (l *layout) formBytes() int64 {
+	return int64(len(l.flat.forms.rects))*bytesPerRect + int64(len(l.flat.forms.of))*bytesPerForm
 }
 
 // found weighs the flat figures by whether their structure is placed once or more often.

@@ -143,15 +143,16 @@ type dealer struct {
 	delta []float64   // by group, as the masks are now
 
 	shared  []bool      // by structure: placed more than once and with figures of its own
-	hash    []uint64    // by figure of the library: what it is; only of shared structures
-	signs   [][2]uint64 // by figure of the library: the same on A, and on B
+	base    []uint32    // by shared structure: number of its first own figure; only figures of shared structures are numbered
+	hash    []uint64    // by number of a figure: what it is
+	signs   [][2]uint64 // by number of a figure: the same on A, and on B
 	places  []place     // placements of shared structures, in the order of their ordinals
 	visited int64       // flat figures, each as often as it was gone through
 	hashes  [][2]uint64 // by group: its shared figures with their masks as they are now, and turned over
 	size    []uint32    // by group: shared flat figures
 	classOf []int32     // by group; -1: no shared figures
 	classes []class
-	homes   []int8    // by figure: +1 A, -1 B
+	homes   []int8    // by number of a figure: +1 A, -1 B
 	now     []float64 // by class: area on A less that on B, before the descent
 }
 
@@ -207,15 +208,23 @@ func (d *dealer) hashFigures() bool {
 	if !any {
 		return false
 	}
-	d.hash, d.signs = make([]uint64, len(f.lib.Figures)), make([][2]uint64, len(f.lib.Figures))
+	d.base = make([]uint32, len(f.lib.Structures))
+	n := uint32(0)
+	for _, s := range f.h.bottom {
+		if d.shared[s] {
+			d.base[s] = n
+			n += f.own[s]
+		}
+	}
+	d.hash, d.signs = make([]uint64, n), make([][2]uint64, n)
 	for _, s := range f.h.bottom {
 		if !d.shared[s] {
 			continue
 		}
 		name := mixString(f.h.name(s))
-		f.ownFigures(s, func(_, i uint32) {
+		f.ownFigures(s, func(k, i uint32) {
 			h := hashFigure(f.lib, i, name)
-			d.hash[i], d.signs[i] = h, [2]uint64{mix(h, 0), mix(h, 1)}
+			d.hash[d.base[s]+k], d.signs[d.base[s]+k] = h, [2]uint64{mix(h, 0), mix(h, 1)}
 		})
 	}
 	return true
@@ -257,21 +266,21 @@ func (d *dealer) findPlaces() {
 	}
 }
 
-// eachShared calls fn for every placement of a shared structure, with its own figures, whose ordinals begin at first.
-func (d *dealer) eachShared(fn func(first uint32, figures []uint32)) {
-	d.eachSharedBy(1, func(_ int, first uint32, figures []uint32) { fn(first, figures) })
+// eachShared calls fn for every placement of a shared structure: with the nodes of its own figures, and the number of the first of these.
+func (d *dealer) eachShared(fn func(nodes []uint32, base uint32)) {
+	d.eachSharedBy(1, func(_ int, nodes []uint32, base uint32) { fn(nodes, base) })
 }
 
 // eachSharedBy is eachShared with several workers; fn is told which one calls.
-func (d *dealer) eachSharedBy(workers int, fn func(worker int, first uint32, figures []uint32)) {
-	list := d.l.flat.list
+func (d *dealer) eachSharedBy(workers int, fn func(worker int, nodes []uint32, base uint32)) {
+	node, own := d.l.nodeOf.Data, d.l.flat.own
 	visited := make([]int64, workers)
 	each(workers, func(w int) {
 		n := int64(0)
 		for _, p := range d.places[len(d.places)*w/workers : len(d.places)*(w+1)/workers] {
-			own := list[p.structure]
-			n += int64(len(own))
-			fn(w, p.first, own)
+			nodes := node[p.first:][:own[p.structure]]
+			n += int64(len(nodes))
+			fn(w, nodes, d.base[p.structure])
 		}
 		visited[w] = n
 	})
@@ -299,12 +308,12 @@ func (d *dealer) hashGroups() {
 	for w := range workers {
 		hashes[w], size[w] = arena.Cut[[2]uint64](d.room, d.a.groups), arena.Cut[uint32](d.room, d.a.groups)
 	}
-	node, group, mask := d.l.nodeOf.Data, d.a.group, d.a.mask.Data
-	d.eachSharedBy(workers, func(w int, first uint32, figures []uint32) {
-		hashes, size := hashes[w], size[w]
-		for k, n := range node[first : first+uint32(len(figures))] {
+	group, mask := d.a.group, d.a.mask.Data
+	d.eachSharedBy(workers, func(w int, nodes []uint32, base uint32) {
+		hashes, size, signs := hashes[w], size[w], d.signs[base:][:len(nodes)]
+		for k, n := range nodes {
 			g, m := group[n], mask[n]&1
-			sign := &d.signs[figures[k]]
+			sign := &signs[k]
 			size[g]++
 			hashes[g][0] += sign[m]
 			hashes[g][1] += sign[m^1]
@@ -360,16 +369,17 @@ func (d *dealer) canonical(g int) float64 {
 
 // fillClasses finds the drawn figures in one group of each class.
 func (d *dealer) fillClasses() {
-	// First each flat figure of an example: its drawn figure, and in the low bit its mask in the canonical way.
+	// First each flat figure of an example: its drawn figure, and in the low bit its mask in the canonical way. Of figures that are placed
+	// more than once there are fewer than 2^31.
 	begin := make([]uint32, len(d.classes)+1)
 	for i := range d.classes {
 		begin[i+1] = begin[i] + d.size[d.classes[i].example]
 	}
 	all := int(begin[len(d.classes)])
 	workers := d.workersFor(all)
-	found, end := make([][]uint64, workers), make([][]uint32, workers)
+	found, end := make([][]uint32, workers), make([][]uint32, workers)
 	for w := range workers {
-		found[w], end[w] = arena.CutDirty[uint64](d.room, all), slices.Clone(begin)
+		found[w], end[w] = arena.CutDirty[uint32](d.room, all), slices.Clone(begin)
 	}
 	example := newBitset(d.l.nodes) // nodes in the examples of classes
 	group, mask := d.a.group, d.a.mask.Data
@@ -378,19 +388,18 @@ func (d *dealer) fillClasses() {
 			example.add(uint32(n))
 		}
 	}
-	node := d.l.nodeOf.Data
-	d.eachSharedBy(workers, func(w int, first uint32, figures []uint32) {
+	d.eachSharedBy(workers, func(w int, nodes []uint32, base uint32) {
 		found, end := found[w], end[w]
-		for k, n := range node[first : first+uint32(len(figures))] {
+		for k, n := range nodes {
 			if !example.has(n) {
 				continue
 			}
 			g := group[n]
-			c, m := d.classOf[g], uint64(mask[n])
+			c, m := d.classOf[g], uint32(mask[n])
 			if d.canonical(int(g)) < 0 {
 				m ^= 1
 			}
-			found[end[c]] = uint64(figures[k])<<1 | m
+			found[end[c]] = (base+uint32(k))<<1 | m
 			end[c]++
 		}
 	})
@@ -403,7 +412,7 @@ func (d *dealer) fillClasses() {
 			for _, f := range found[w][begin[i]:end[w][i]] {
 				t := &times[f>>1]
 				if *t == ([2]int32{}) {
-					drawn = append(drawn, uint32(f>>1))
+					drawn = append(drawn, f>>1)
 				}
 				t[f&1]++
 			}

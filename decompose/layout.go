@@ -30,6 +30,8 @@ type layout struct {
 	near    *neighbours
 	box     []Box               // by node, once boxes was called
 	room    arena.Slab          // memory that is given back when the layer has its result
+	settled int64               // bytes in use once near pairs are known, the room included
+	spare   int64               // of the room, what was left then
 	odd     []oddFigures        // by top
 	tags    *arena.Array[uint8] // by ordinal: what arrived on a mask; nil where nothing did
 	given   *givenStitches      // nil: none
@@ -147,6 +149,8 @@ func newLayout(ctx context.Context, h *hierarchy, sel *selection, rules *LayerRu
 	opt.stage(stagePairs)
 	l.near = gather(&l.room, b.near, l.nodeOf.Data, l.nodes, l.given)
 	b.room.free()
+	l.settled = before + l.formBytes() + int64(f.total)*bytesPerFigure + int64(l.nodes)*bytesPerArea + int64(l.room.Size())
+	l.spare = int64(l.room.Left())
 	if err := l.judgeFacing(ctx, b.kept, opt.jobs()); err != nil {
 		return nil, err
 	}

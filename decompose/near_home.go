@@ -5,14 +5,13 @@ import (
 	"math"
 	"slices"
 
-	"maskpair/decompose/exact"
 	"maskpair/gds/arena"
 )
 
 // This file chooses among the equally good solutions of broken groups. A group with an odd cycle has many, and which one it takes
 // should not cost variants: so it is solved again with a cheapest aim behind all others, that its figures be on their home masks.
 
-// usualMasks gives for each figure of a shared structure the mask that it has where the structure comes out as it does most often:
+// usualMasks gives, by number of a figure of a shared structure, the mask that it has where the structure comes out as it does most often:
 // +1 for A, -1 for B, 0 where the figure is not shared.
 func (d *dealer) usualMasks() []int8 {
 	l := d.l
@@ -35,7 +34,7 @@ func (d *dealer) usualMasks() []int8 {
 		}
 		tables[p.structure].intern(words)
 	}
-	usual := make([]int8, len(f.lib.Figures))
+	usual := make([]int8, len(d.hash))
 	for _, s := range f.h.bottom {
 		t := &tables[s]
 		if t.ways() == 0 {
@@ -47,14 +46,16 @@ func (d *dealer) usualMasks() []int8 {
 				continue
 			}
 			sign := uint64(0)
-			f.ownFigures(s, func(k, figure uint32) { sign += mix(d.hash[figure], uint64(t.way(i)[k/32]>>(k%32)&1)) })
+			for k := range f.own[s] {
+				sign += mix(d.hash[d.base[s]+k], uint64(t.way(i)[k/32]>>(k%32)&1))
+			}
 			if best < 0 || t.uses[i] > t.uses[best] || sign < bestSign {
 				best, bestSign = i, sign
 			}
 		}
-		f.ownFigures(s, func(k, figure uint32) {
-			usual[figure] = 1 - 2*int8(t.way(best)[k/32]>>(k%32)&1)
-		})
+		for k := range f.own[s] {
+			usual[d.base[s]+k] = 1 - 2*int8(t.way(best)[k/32]>>(k%32)&1)
+		}
 	}
 	return usual
 }
@@ -81,14 +82,14 @@ func newHoming(s *solver, d *dealer) *homing {
 func (h *homing) solve(ctx context.Context, usual []int8, bias float64, jobs int) error {
 	s := h.s
 	clear(h.off)
-	node, number := s.l.nodeOf.Data, s.number
-	h.d.eachShared(func(first uint32, figures []uint32) {
-		for i, n := range node[first : first+uint32(len(figures))] {
+	number := s.number
+	h.d.eachShared(func(nodes []uint32, base uint32) {
+		for i, n := range nodes {
 			k := number[n]
 			if k == 0 {
 				continue
 			}
-			switch usual[figures[i]] {
+			switch usual[base+uint32(i)] {
 			case 1:
 				h.off[k-1][1]++
 			case -1:
@@ -165,40 +166,42 @@ func (h *homing) lean(b *brokenGroup, off [][2]int64, bias float64) {
 	}
 }
 
-// comeHome adds the cheapest aim to the problem of a group; off tells what each mask costs each node.
-// The problem lies in room.
+// comeHome adds the cheapest aim to the problem of a group; off tells what each mask costs each node. It stays in use until the next
+// round; what is needed besides lies in room.
 func (b *brokenGroup) comeHome(room *arena.Slab, off [][2]int64) {
 	sum := int64(1)
 	for _, o := range off {
 		sum += o[0] + o[1]
 	}
-	worst := int64(1)
-	for _, e := range b.weighed.Edges {
-		worst += e.Weight
-	}
-	for _, c := range b.weighed.Cost {
-		worst += c[0] + c[1]
+	if b.worst == 0 {
+		b.worst = 1
+		for i := range b.weighed.Edges {
+			b.worst += b.weighed.Edges[i].Weight
+		}
+		for _, c := range b.weighed.Cost {
+			b.worst += c[0] + c[1]
+		}
 	}
 	// What is not proved is not solved with more aims either.
-	b.homing = worst < 1<<61/sum && b.solution.Proved
+	b.homing = b.worst < 1<<61/sum && b.solution.Proved
 	if !b.homing {
 		return
 	}
-	b.homeUnit = sum
-	p := b.home
-	if p == nil {
-		p = &exact.Problem{Nodes: b.weighed.Nodes, Edges: arena.CutDirty[exact.Edge](room, len(b.weighed.Edges)),
-			Fixed: b.weighed.Fixed, Cost: arena.CutDirty[[2]int64](room, b.weighed.Nodes)}
-		b.home = p
+	p := *b.weighed
+	p.Unit, p.Lesser = sum, off
+	if b.rep != nil || p.Nodes != len(off) {
+		if b.home == nil {
+			b.home = arena.CutDirty[[2]int64](room, p.Nodes)
+		}
+		clear(b.home)
+		p.Lesser = b.home
+		b.spreadCosts(off)
 	}
-	for i, e := range b.weighed.Edges {
-		e.Weight *= sum
-		p.Edges[i] = e
-	}
-	clear(p.Cost)
-	for k, c := range b.weighed.Cost {
-		p.Cost[k] = [2]int64{c[0] * sum, c[1] * sum}
-	}
+	b.problem = &p
+}
+
+// spreadCosts gives what the masks of nodes cost to what gets a mask in the problem.
+func (b *brokenGroup) spreadCosts(off [][2]int64) {
 	for k, o := range off {
 		n := int64(b.atomsOf(k))
 		for i := range n {
@@ -207,9 +210,8 @@ func (b *brokenGroup) comeHome(room *arena.Slab, off [][2]int64) {
 			if b.rep != nil {
 				to, flip = b.rep[atom], b.flip[atom]
 			}
-			p.Cost[to][flip] += o[0] / n
-			p.Cost[to][flip^1] += o[1] / n
+			b.home[to][flip] += o[0] / n
+			b.home[to][flip^1] += o[1] / n
 		}
 	}
-	b.problem = p
 }

@@ -102,7 +102,7 @@ func (t *settler) settle(p *Problem, masks []uint8) (rest []int32, cost int64) {
 		}
 		if e.U == e.V {
 			if !e.Same {
-				loops += e.Weight
+				loops += e.Weight * p.unit()
 			}
 			continue
 		}
@@ -118,7 +118,7 @@ func (t *settler) settle(p *Problem, masks []uint8) (rest []int32, cost int64) {
 		r, _ := uf.find(u)
 		odd[r] = true
 	}
-	plain := p.Fixed == nil && p.Cost == nil
+	plain := p.Fixed == nil && !p.costs()
 	if !plain {
 		t.side, t.least = fitZeroed(t.room, t.side, n), fitZeroed(t.room, t.least, n)
 	}
@@ -133,10 +133,7 @@ func (t *settler) settle(p *Problem, masks []uint8) (rest []int32, cost int64) {
 			continue
 		}
 		balanced = true
-		c := [2]int64{}
-		if p.Cost != nil {
-			c = p.Cost[i]
-		}
+		c := p.cost(int32(i))
 		if k := p.fixed(int32(i)); k >= 0 {
 			least[r] += c[k]
 			c[1-k] = unlimited
@@ -152,8 +149,8 @@ func (t *settler) settle(p *Problem, masks []uint8) (rest []int32, cost int64) {
 		for i := range p.Edges {
 			if e := &p.Edges[i]; e.Weight > 0 && e.U != e.V {
 				r, _ := uf.find(e.U)
-				if edge[r] == 0 || e.Weight < edge[r] {
-					edge[r] = e.Weight
+				if w := e.Weight * p.unit(); edge[r] == 0 || w < edge[r] {
+					edge[r] = w
 				}
 			}
 		}
@@ -192,11 +189,11 @@ func (t *settler) settle(p *Problem, masks []uint8) (rest []int32, cost int64) {
 // orient turns each component among the nodes of rest (ascending) whose flip costs the same, as no node of it is held or prefers a mask, so that its least node is on
 // mask A. It follows settle.
 func (t *settler) orient(p *Problem, rest []int32, masks []uint8) {
-	plain := p.Fixed == nil && p.Cost == nil
+	plain := p.Fixed == nil && !p.costs()
 	t.bound = fitZeroed(t.room, t.bound, p.Nodes)
 	if !plain {
 		for _, i := range rest {
-			if p.fixed(i) >= 0 || p.Cost != nil && p.Cost[i][0] != p.Cost[i][1] {
+			if c := p.cost(i); p.fixed(i) >= 0 || c[0] != c[1] {
 				r, _ := t.uf.find(i)
 				t.bound[r] = true
 			}

@@ -2,6 +2,7 @@ package exact
 
 import (
 	"cmp"
+	"math"
 	"math/bits"
 	"slices"
 
@@ -58,11 +59,11 @@ type rowEntry struct {
 // reducedNode is what is known of a node.
 type reducedNode struct {
 	h          int64
-	start, end int32 // its own row
-	next       int32 // node with the next row of the chain, or -1
-	last       int32 // node with the last row of its chain
-	size       int32 // half-edges in its rows
-	fresh      int32 // changes since it was cleaned
+	start, end int32  // its own row
+	next       int32  // node with the next row of the chain, or -1
+	last       int32  // node with the last row of its chain
+	size       int32  // half-edges in its rows
+	fresh      uint16 // changes since it was cleaned, up to as many as fit
 	state      uint8
 }
 
@@ -92,20 +93,18 @@ func (r *reducer) load(p *Problem, rest []int32) {
 	for i, v := range rest {
 		nd := &r.node[i]
 		k := p.fixed(v)
-		if p.Cost != nil {
-			c := p.Cost[v]
-			if k >= 0 {
-				r.base += c[k]
-			} else {
-				r.base += c[0]
-				nd.h = c[1] - c[0]
-			}
+		if c := p.cost(v); k >= 0 {
+			r.base += c[k]
+		} else {
+			r.base += c[0]
+			nd.h = c[1] - c[0]
 		}
 		if k >= 0 {
 			nd.state = gone
 			r.trail = append(r.trail, undo{int32(i), -1, uint8(k)})
 		}
 	}
+	unit := p.unit()
 	parallel := uint8(twofold)
 	if inOrder(p.Edges) {
 		parallel = 0
@@ -116,10 +115,10 @@ func (r *reducer) load(p *Problem, rest []int32) {
 		if u < 0 || u == v || e.Weight <= 0 {
 			continue // loops are in what settle returns
 		}
-		s := e.Weight
+		s := e.Weight * unit
 		if e.Same {
+			r.base += s
 			s = -s
-			r.base += e.Weight
 		}
 		a, b := p.fixed(e.U), p.fixed(e.V)
 		switch {
@@ -150,7 +149,7 @@ func (r *reducer) load(p *Problem, rest []int32) {
 		if u < 0 || u == v || e.Weight <= 0 || p.fixed(e.U) >= 0 || p.fixed(e.V) >= 0 {
 			continue
 		}
-		s := e.Weight
+		s := e.Weight * unit
 		if e.Same {
 			s = -s
 		}
@@ -240,8 +239,10 @@ const long = 64
 // touch puts a node in the queue.
 func (r *reducer) touch(v int32) {
 	nd := &r.node[v]
-	nd.fresh++
-	if nd.state&(queued|gone) != 0 || nd.size > long && nd.fresh < nd.size/4 {
+	if nd.fresh < math.MaxUint16 {
+		nd.fresh++
+	}
+	if nd.state&(queued|gone) != 0 || nd.size > long && int32(nd.fresh) < min(nd.size/4, math.MaxUint16) {
 		return
 	}
 	nd.state |= queued

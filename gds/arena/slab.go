@@ -111,6 +111,23 @@ func (s *Slab) more(size int) []byte {
 	return m.usable
 }
 
+// Size is the number of bytes of a slab, Left that of those that are not dealt out.
+func (s *Slab) Size() int {
+	n := 0
+	for i := range s.blocks {
+		n += len(s.blocks[i].memory)
+	}
+	return n
+}
+
+func (s *Slab) Left() int {
+	n := 0
+	for i := range s.blocks {
+		n += len(s.blocks[i].memory) - s.blocks[i].used
+	}
+	return n
+}
+
 // Reset gives up all slices, and with them the slabs within this one. The memory stays for what comes.
 func (s *Slab) Reset() {
 	for i := range s.blocks {
