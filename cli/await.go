@@ -2,8 +2,11 @@ package cli
 
 import (
 	"context"
+	"errors"
 	"fmt"
 	"time"
+
+	"maskpair/decompose"
 )
 
 // This file keeps the promise that an interrupt ends the program within a second, even while a read from a pipe hangs, and
@@ -29,7 +32,11 @@ func await(ctx context.Context, work func() error) error {
 				done <- &panicError{fmt.Sprint(p)}
 			}
 		}()
-		done <- work()
+		err := work()
+		if fault := (*decompose.Fault)(nil); errors.As(err, &fault) {
+			err = &panicError{fault.Msg}
+		}
+		done <- err
 	}()
 	select {
 	case err := <-done:

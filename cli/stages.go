@@ -148,6 +148,11 @@ func beside[T any](work func() (T, error)) func() (T, error) {
 	}
 	done := make(chan outcome, 1)
 	go func() {
+		defer func() {
+			if p := recover(); p != nil {
+				done <- outcome{err: &panicError{fmt.Sprint(p)}}
+			}
+		}()
 		v, err := work()
 		done <- outcome{v, err}
 	}()

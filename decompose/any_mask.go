@@ -34,12 +34,12 @@ func (l *layout) anyMaskPairs(ctx context.Context, mask []uint8, jobs int) ([]Pa
 	g.SetLimit(max(jobs, 1))
 	const block = 1 << 10
 	for from := 0; from < len(pairs); from += block {
-		g.Go(func() error {
+		g.Go(safely(func() error {
 			for i := from; i < min(from+block, len(pairs)) && ctx.Err() == nil; i++ {
 				out[i] = l.anyMaskPair(pairs[i], parts, boxes, mask)
 			}
 			return nil
-		})
+		}))
 	}
 	if err := g.Wait(); err != nil {
 		return nil, err

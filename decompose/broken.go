@@ -160,14 +160,14 @@ func (s *solver) each(ctx context.Context, jobs int, work func(b *brokenGroup)) 
 	g.SetLimit(max(jobs, 1))
 	done := s.opt.counted(int64(len(s.groups)), "odd components")
 	for i := range s.groups {
-		g.Go(func() error {
+		g.Go(safely(func() error {
 			if err := ctx.Err(); err != nil {
 				return err
 			}
 			work(&s.groups[i])
 			done(1)
 			return nil
-		})
+		}))
 	}
 	if err := g.Wait(); err != nil {
 		return err

@@ -40,7 +40,7 @@ func indexBytes(lib *gds.Library) int64 {
 		int64(len(lib.Placements))*int64(unsafe.Sizeof(gds.Placement{})) + int64(len(lib.Structures))*bytesPerCell
 }
 
-// Estimate is the memory in bytes that the layers done so far were expected to need, process and index included.
+// Estimate is the most memory in bytes that the layers done so far were expected to need, process and index included.
 func (r *Run) Estimate() int64 { return r.opt.most }
 
 // checkMemory refuses a layer that will not fit into the memory that the run may use.

@@ -57,12 +57,12 @@ func (l *layout) judgeFacing(ctx context.Context, kept []topRects, jobs int) err
 		if within.Err() != nil {
 			break
 		}
-		g.Go(func() error {
+		g.Go(safely(func() error {
 			c := pool.Get().(*outlineCache)
 			defer pool.Put(c)
 			far[k] = c.judge(uint32(k*judgedNodes), uint32(min((k+1)*judgedNodes, l.nodes)))
 			return within.Err()
-		})
+		}))
 	}
 	if err := g.Wait(); err != nil {
 		return err

@@ -289,11 +289,11 @@ func (f *flat) flatten(ctx context.Context, top int, first uint64, win window, i
 	g, within := errgroup.WithContext(ctx)
 	g.SetLimit(jobs)
 	c := cutter{f: f, most: f.items[s]/64 + 1, emit: func(t task) {
-		g.Go(func() error {
+		g.Go(safely(func() error {
 			w := flattener{f: f, win: win, items: items, bands: bands, nItem: t.item, nBand: t.band}
 			w.task(&t)
 			return within.Err()
-		})
+		}))
 	}}
 	c.cut(s, at, first, 0, 0)
 	if err := g.Wait(); err != nil {

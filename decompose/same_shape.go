@@ -48,7 +48,7 @@ func (l *layout) findSameShape(ctx context.Context, kept []topRects, jobs int) e
 	}
 	found := make([][]selfPlace, len(blocks))
 	for k, b := range blocks {
-		g.Go(func() error {
+		g.Go(safely(func() error {
 			c := outlineCache{}
 			t := &kept[b.top]
 			var s facing.Shape
@@ -63,7 +63,7 @@ func (l *layout) findSameShape(ctx context.Context, kept []topRects, jobs int) e
 				}
 			}
 			return nil
-		})
+		}))
 	}
 	if err := g.Wait(); err != nil {
 		return err

@@ -94,7 +94,7 @@ func (s *sweep) run(ctx context.Context, sets union, jobs int, limit *atomic.Int
 	s.plan(func(st stretch) bool {
 		sink := &pairSink{sets: sets, limit: limit, near: pairs{room: s.room}}
 		sinks = append(sinks, sink)
-		g.Go(func() error {
+		g.Go(safely(func() error {
 			w := <-idle
 			defer func() { idle <- w }()
 			err := w.stretch(within, sink, &st)
@@ -102,7 +102,7 @@ func (s *sweep) run(ctx context.Context, sets union, jobs int, limit *atomic.Int
 				s.progress(int64(st.to - st.from))
 			}
 			return err
-		})
+		}))
 		return within.Err() == nil
 	})
 	if err := g.Wait(); err != nil {

@@ -1,12 +1,30 @@
 package decompose
 
 import (
+	"fmt"
 	"sync/atomic"
 
 	"golang.org/x/sync/errgroup"
 )
 
-// This file runs work on several workers, where that needs no context and cannot fail.
+// This file runs work on several workers. A panic of one comes back to whoever waits for it, as it would without workers.
+
+// Fault is a panic in a worker: a fault of the program itself.
+type Fault struct{ Msg string }
+
+func (e *Fault) Error() string { return e.Msg }
+
+// safely gives work whose panics are errors.
+func safely(work func() error) func() error {
+	return func() (err error) {
+		defer func() {
+			if p := recover(); p != nil {
+				err = &Fault{fmt.Sprint(p)}
+			}
+		}()
+		return work()
+	}
+}
 
 // each runs work for 0 to n-1 at once and waits for all.
 func each(n int, work func(int)) {
@@ -16,10 +34,11 @@ func each(n int, work func(int)) {
 	}
 	var g errgroup.Group
 	for w := range n {
-		g.Go(func() error { work(w); return nil })
+		g.Go(safely(func() error { work(w); return nil }))
 	}
-	// The work returns no error.
-	_ = g.Wait()
+	if err := g.Wait(); err != nil {
+		panic(err) // the work returns no error, so one of the workers did
+	}
 }
 
 // inTurn runs work for 0 to n-1 on some workers, each taking the next when it is done; work is told which worker it is.

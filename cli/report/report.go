@@ -31,7 +31,7 @@ type Run struct {
 	Seconds float64
 	Stages  []Stage // in order
 	Peak    int64   // most memory in use at a time, bytes; 0: not known
-	// Estimate is how much memory the run was expected to use, in bytes, before it flattened anything: what --memory is held against.
+	// Estimate is the most memory in bytes that the run was expected to use, each time before it was used: what --memory is held against.
 	Estimate int64
 }
 
