@@ -17,12 +17,12 @@ type behind struct {
 	err error // of the writer; what comes later is dropped
 }
 
-// newBehind starts writing to w.
-func newBehind(w io.Writer) *behind {
-	const buffers = 3
-	b := &behind{full: make(chan []byte, buffers), free: make(chan []byte, buffers), done: make(chan struct{})}
-	for range buffers - 1 { // the caller has one more
-		b.free <- nil
+// newBehind starts writing to w. The caller has one buffer more than those that it gives here, empty.
+func newBehind(w io.Writer, buffers ...[]byte) *behind {
+	n := len(buffers) + 1
+	b := &behind{full: make(chan []byte, n), free: make(chan []byte, n), done: make(chan struct{})}
+	for _, buf := range buffers {
+		b.free <- buf
 	}
 	go b.write(w)
 	return b
@@ -54,11 +54,7 @@ func (b *behind) put(buf []byte) ([]byte, error) {
 		return buf[:0], err
 	}
 	b.full <- buf
-	empty := <-b.free
-	if empty == nil {
-		empty = make([]byte, 0, cap(buf))
-	}
-	return empty, nil
+	return <-b.free, nil
 }
 
 // close waits until all is written. It is called once.

@@ -5,6 +5,8 @@ import (
 	"fmt"
 	"hash/crc32"
 	"io"
+
+	"maskpair/gds/arena"
 )
 
 // This file is pass 2: it copies a stream and changes what a plan says. The stream is read through one window of about a
@@ -23,8 +25,12 @@ func CopyStream(dst io.Writer, src io.ReaderAt, lib *Library, want Interest, pla
 
 // newCopier makes a copier with a window of at most the given size.
 func newCopier(dst io.Writer, src io.ReaderAt, lib *Library, want Interest, plan Plan, progress func(bytes int64), window int) *copier {
-	return &copier{dst: newBehind(dst), src: src, lib: lib, plan: plan, table: newClasses(want.Figures), progress: progress,
-		window: make([]byte, max(16, min(int64(window), lib.Bytes))), out: make([]byte, 0, min(bufferSize, lib.Bytes)+1<<16)}
+	in, out := int(max(16, min(int64(window), lib.Bytes))), int(min(bufferSize, lib.Bytes)+1<<16)
+	c := &copier{src: src, lib: lib, plan: plan, table: newClasses(want.Figures), progress: progress, room: arena.New[byte](in + 3*out)}
+	c.window = c.room.Data[:in:in]
+	buffer := func(i int) []byte { return c.room.Data[in+i*out : in+i*out : in+(i+1)*out] }
+	c.out, c.dst = buffer(0), newBehind(dst, buffer(1), buffer(2))
+	return c
 }
 
 // copier is the state of pass 2.
@@ -36,6 +42,7 @@ type copier struct {
 	table    *classes
 	progress func(bytes int64)
 
+	room   *arena.Array[byte] // of window and buffers
 	window []byte
 	base   int64 // offset of window[0] in src
 	filled int   // window[:filled] is read
@@ -61,6 +68,7 @@ func (c *copier) run() error {
 	if late := c.dst.close(); err == nil {
 		err = late
 	}
+	c.room.Free()
 	return err
 }
 

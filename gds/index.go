@@ -24,12 +24,20 @@ func Index(r io.Reader, size int64, want Interest, progress func(bytes int64)) (
 func index(r io.Reader, size int64, want Interest, progress func(bytes int64), sums bool) (*Library, error) {
 	x := newIndexer(r, size, want)
 	x.s.progress, x.s.sums = progress, sums
+	if size >= manyBytes {
+		room := arena.New[byte](2 * bufferSize) // on one large page
+		defer room.Free()
+		x.s.buf = room.Data[:bufferSize]
+	}
 	if err := x.library(); err != nil {
 		return nil, err
 	}
 	x.resolve()
 	return x.lib, nil
 }
+
+// manyBytes is the size of a stream from which its buffers have memory from the system: to touch it costs less.
+const manyBytes = 1 << 18
 
 // maxFigures keeps the numbers of figures, and one past the last of them, in a uint32.
 const maxFigures = math.MaxUint32 - 1
