@@ -10,6 +10,7 @@ import (
 
 // This file says beforehand how much memory a run will use. All that is large is counted before it is built: the index is there, and
 // the flat figures of each layer follow from the hierarchy. What is not known is how many figures are near; a typical number is taken.
+// What odd components need is said later (see odd_memory.go).
 
 // Bytes that a layer takes, as measured on generated and open layouts; go run ./testdata/bench prints what came of them.
 const (
