@@ -7,8 +7,6 @@ import (
 	"slices"
 	"sync"
 
-	"golang.org/x/sync/errgroup"
-
 	"maskpair/decompose/exact"
 	"maskpair/gds/arena"
 )
@@ -69,7 +67,7 @@ type solver struct {
 	number []uint32 // by node: its number among those of all groups, from 1; 0: its group is not broken
 	boxes  []Box    // of the nodes of all groups, by node
 	mu     sync.Mutex
-	idle   []*arena.Slab // memory for the work on one group, not in use now
+	idle   []*exact.Workspace // with memory for the work on one group; not in use now
 	opt    *Options
 	apart  map[uint32][]uint32 // by node of a broken group: what is within the largest spacing and yet not near
 }
@@ -120,30 +118,35 @@ func (s *solver) indexOf(b *brokenGroup) int {
 
 // within calls fn with memory that is given up when fn returns.
 func (s *solver) within(fn func(room *arena.Slab)) {
-	room := s.takeRoom()
-	fn(room)
-	room.Reset()
-	s.mu.Lock()
-	s.idle = append(s.idle, room)
-	s.mu.Unlock()
+	w := s.workspace()
+	fn(w.Room)
+	s.putBack(w)
 }
 
-func (s *solver) takeRoom() *arena.Slab {
+// exactly solves a problem.
+func (s *solver) exactly(p *exact.Problem, budget exact.Budget) exact.Solution {
+	w := s.workspace()
+	defer s.putBack(w)
+	return w.Solve(p, budget)
+}
+
+func (s *solver) workspace() *exact.Workspace {
 	s.mu.Lock()
 	defer s.mu.Unlock()
 	n := len(s.idle)
 	if n == 0 {
-		return s.l.room.Within()
+		return &exact.Workspace{Room: s.l.room.Within()}
 	}
-	room := s.idle[n-1]
+	w := s.idle[n-1]
 	s.idle = s.idle[:n-1]
-	return room
+	return w
 }
 
-// exactly solves a problem.
-func (s *solver) exactly(p *exact.Problem, budget exact.Budget) (sol exact.Solution) {
-	s.within(func(room *arena.Slab) { sol = exact.Workspace{Room: room}.Solve(p, budget) })
-	return sol
+func (s *solver) putBack(w *exact.Workspace) {
+	w.Room.Reset()
+	s.mu.Lock()
+	defer s.mu.Unlock()
+	s.idle = append(s.idle, w)
 }
 
 // of gives the index of the broken group of a node; false where its group is not broken.
@@ -156,22 +159,13 @@ func (s *solver) of(node uint32) (int, bool) {
 
 // each calls work for every broken group, some at a time.
 func (s *solver) each(ctx context.Context, jobs int, work func(b *brokenGroup)) error {
-	var g errgroup.Group
-	g.SetLimit(max(jobs, 1))
 	done := s.opt.counted(int64(len(s.groups)), "odd components")
-	for i := range s.groups {
-		g.Go(safely(func() error {
-			if err := ctx.Err(); err != nil {
-				return err
-			}
+	inTurn(max(jobs, 1), len(s.groups), func(_, i int) {
+		if ctx.Err() == nil {
 			work(&s.groups[i])
 			done(1)
-			return nil
-		}))
-	}
-	if err := g.Wait(); err != nil {
-		return err
-	}
+		}
+	})
 	return ctx.Err()
 }
 

@@ -8,16 +8,17 @@ import "maskpair/gds/arena"
 //
 // Ties: a component in which no node is held or prefers a mask has its least node on mask A. Beyond that, which of several assignments of one cost comes out depends
 // on the problem and the budget alone.
-func Solve(p *Problem, b Budget) Solution { return Workspace{}.Solve(p, b) }
+func Solve(p *Problem, b Budget) Solution { return new(Workspace).Solve(p, b) }
 
-// Workspace is where problems are solved. The zero value solves on the heap; with a room, of which it disposes alone, it solves in memory that is touched already, as the first
-// touch costs more than many a stage. It is not for several goroutines at once.
+// Workspace is where problems are solved, one after another. The zero value solves on the heap; with a room, of which it disposes alone, it solves in memory that is touched
+// already, as the first touch costs more than many a stage.
 type Workspace struct {
-	Room *arena.Slab
+	Room   *arena.Slab
+	solver solver // for what it has grown
 }
 
 // Solve is as the function Solve; the solution does not depend on what was solved before.
-func (w Workspace) Solve(p *Problem, b Budget) Solution {
+func (w *Workspace) Solve(p *Problem, b Budget) Solution {
 	if w.Room != nil {
 		w.Room.Reset()
 	}
@@ -30,7 +31,8 @@ func (w Workspace) Solve(p *Problem, b Budget) Solution {
 		r.load(p, rest)
 		r.run()
 		g, nodes := r.kernel()
-		s := solver{room: w.Room, budget: b}
+		s := &w.solver
+		s.room, s.budget, s.work, s.width = w.Room, b, 0, 0
 		x, bound := s.kernel(g)
 		sol.LowerBound += r.base + bound
 		sol.Work, sol.Width = s.work, s.width
