@@ -3,6 +3,8 @@ package decompose
 import (
 	"cmp"
 	"context"
+	"math"
+	"math/bits"
 	"slices"
 
 	"maskpair/gds/arena"
@@ -124,17 +126,30 @@ func arranged(nodes []uint32, boxes []Box, p placement, scale int64) arrangement
 // sort lists the nodes by their boxes.
 func (a *arrangement) sort(room *arena.Slab, nodes []uint32, boxes []Box) {
 	a.list = arena.CutDirty[placedNode](room, len(nodes))
+	x, y := int64(0), int64(0)
 	for k, u := range nodes {
 		box := a.back.applyBox(boxes[u])
 		a.list[k] = placedNode{box.X1, box.Y1, u}
+		x, y = max(x, box.X1), max(y, box.Y1)
 	}
-	slices.SortFunc(a.list, func(p, q placedNode) int {
-		switch {
-		case p.x != q.x:
-			return cmp.Compare(p.x, q.x)
-		case p.y != q.y:
-			return cmp.Compare(p.y, q.y)
+	if len(a.list) >= fewDigits && max(x, y) <= math.MaxUint32 { // no corner is below the origin
+		byX, byY := func(p *placedNode) uint32 { return uint32(p.x) }, func(p *placedNode) uint32 { return uint32(p.y) }
+		list, other := sortBy(a.list, arena.CutDirty[placedNode](room, len(nodes)), byY, bits.Len64(uint64(y)), 1)
+		a.list, _ = sortBy(list, other, byX, bits.Len64(uint64(x)), 1)
+	} else {
+		slices.SortFunc(a.list, func(p, q placedNode) int { return cmp.Or(cmp.Compare(p.x, q.x), cmp.Compare(p.y, q.y)) })
+	}
+	// Those with one corner, by the rest.
+	for from := 0; from < len(a.list); {
+		to := from + 1
+		for to < len(a.list) && a.list[to].x == a.list[from].x && a.list[to].y == a.list[from].y {
+			to++
 		}
-		return cmp.Or(compareBoxes(a.back.applyBox(boxes[p.node]), a.back.applyBox(boxes[q.node])), cmp.Compare(p.node, q.node))
-	})
+		if to > from+1 {
+			slices.SortFunc(a.list[from:to], func(p, q placedNode) int {
+				return cmp.Or(compareBoxes(a.back.applyBox(boxes[p.node]), a.back.applyBox(boxes[q.node])), cmp.Compare(p.node, q.node))
+			})
+		}
+		from = to
+	}
 }

@@ -24,13 +24,18 @@ func (s *solver) explain(ctx context.Context, rules *Rules, res *LayerResult, jo
 	e := &explainer{solver: s, groups: map[uint64]int64{}, rules: rules, more: map[uint32]*geom.Parts{},
 		facing: newFacingNames(s.l)}
 	inTurn(jobs, 2, func(_, i int) { [...]func(){e.gather, e.sign}[i]() })
-	found := make([]LayerResult, len(s.groups))
+	found := make([]groupResult, len(s.groups))
 	err := s.each(ctx, jobs, func(b *brokenGroup) {
 		s.within(func(room *arena.Slab) { e.group(room, b, &found[s.indexOf(b)]) })
 	})
 	if err != nil {
 		return err
 	}
+	unresolved := 0
+	for i := range found {
+		unresolved += len(found[i].unresolved)
+	}
+	res.Unresolved = slices.Grow(res.Unresolved, unresolved)
 	for i := range found {
 		res.add(&found[i])
 	}
@@ -166,66 +171,67 @@ func (e *explainer) number(signature uint64) int64 {
 	return n
 }
 
-// group explains one broken group, component by component; res takes what the layer has from it alone. What
-// it needs on the way lies in room.
-func (e *explainer) group(room *arena.Slab, b *brokenGroup, res *LayerResult) {
+// groupResult is what the result of a layer has from one broken group.
+type groupResult struct {
+	unresolved     []Unresolved
+	waived         []WaivedPair
+	stuck          int64 // components that are unresolved
+	jointClash     bool  // no component is, but together they are
+	bound          int64 // no assignment leaves fewer pairs
+	stitchesBound  int64
+	proved         bool // as few pairs are left
+	provedAllAims  bool
+	pairs, allowed int64 // that are left, not waived and waived
+}
+
+// group explains one broken group, component by component. What it needs on the way lies in room.
+func (e *explainer) group(room *arena.Slab, b *brokenGroup, res *groupResult) {
 	a := e.a
 	masks := arena.CutDirty[uint8](room, len(b.nodes))
 	for k, u := range b.nodes {
 		masks[k] = a.mask.Data[u]
 	}
-	bound := b.units.pairsOf(b.solution.LowerBound)
-	res.LowerBound = bound
-	stuck := 0
+	res.bound, res.stitchesBound, res.provedAllAims = b.units.pairsOf(b.solution.LowerBound), b.leastStitches, b.solution.Proved
 	parts := b.components(room, a)
 	for _, nodes := range parts {
 		part := e.part(room, b, nodes, masks)
 		if part.stuck {
-			stuck++
-			res.UnresolvedComponents++
+			res.stuck++
 		}
 		if part.stuck || len(part.left)+len(part.accepted) > 0 {
 			u := e.entry(room, b, part, a.component[b.nodes[nodes[0]]])
 			for _, x := range part.accepted {
-				res.Waived = append(res.Waived, e.waived(b, part, x, u.Top))
+				res.waived = append(res.waived, e.waived(b, part, x, u.Top))
 			}
-			res.UnresolvedPairs += int64(len(u.Pairs))
-			res.WaivedPairs += int64(len(part.accepted))
+			res.pairs += int64(len(u.Pairs))
+			res.allowed += int64(len(part.accepted))
 			if part.stuck || len(u.Pairs) > 0 {
-				res.Unresolved = append(res.Unresolved, u)
+				res.unresolved = append(res.unresolved, u)
 			}
 		}
 	}
-	if stuck == 0 {
-		res.JointClashes = 1
-	}
-	res.AimsProved = b.solution.Proved
-	res.StitchesBound = b.leastStitches
-	left := int64(0)
-	for i := range res.Unresolved {
-		left += int64(len(res.Unresolved[i].Pairs))
-	}
-	res.ProvedOptimal = left == bound
-	for i := range res.Unresolved {
-		res.Unresolved[i].Proved = res.ProvedOptimal
+	res.jointClash = res.stuck == 0
+	res.proved = res.pairs == res.bound
+	for i := range res.unresolved {
+		res.unresolved[i].Proved = res.proved
 		if len(parts) == 1 {
-			res.Unresolved[i].LowerBound = bound
+			res.unresolved[i].LowerBound = res.bound
 		}
 	}
 }
 
 // add takes in what explaining found of one group.
-func (l *LayerResult) add(of *LayerResult) {
-	l.LowerBound += of.LowerBound
-	l.StitchesBound += of.StitchesBound
-	l.UnresolvedComponents += of.UnresolvedComponents
-	l.UnresolvedPairs += of.UnresolvedPairs
-	l.WaivedPairs += of.WaivedPairs
-	l.JointClashes += of.JointClashes
-	l.Waived = append(l.Waived, of.Waived...)
-	l.Unresolved = append(l.Unresolved, of.Unresolved...)
-	l.ProvedOptimal = l.ProvedOptimal && of.ProvedOptimal
-	l.AimsProved = l.AimsProved && of.AimsProved
+func (l *LayerResult) add(of *groupResult) {
+	l.LowerBound += of.bound
+	l.StitchesBound += of.stitchesBound
+	l.UnresolvedComponents += of.stuck
+	l.UnresolvedPairs += of.pairs
+	l.WaivedPairs += of.allowed
+	l.JointClashes += int64(boolInt(of.jointClash))
+	l.Waived = append(l.Waived, of.waived...)
+	l.Unresolved = append(l.Unresolved, of.unresolved...)
+	l.ProvedOptimal = l.ProvedOptimal && of.proved
+	l.AimsProved = l.AimsProved && of.provedAllAims
 }
 
 // components gives the nodes of each component of a group, by place in the group, components in ascending order.

@@ -37,7 +37,7 @@ func sortItems(items, scratch []item, jobs int) []item {
 }
 
 // sortBy sorts by one key of so many bits, digit by digit. It returns the sorted slice, then the other.
-func sortBy(from, to []item, key func(*item) uint32, keyBits, jobs int) (sorted, other []item) {
+func sortBy[T any](from, to []T, key func(*T) uint32, keyBits, jobs int) (sorted, other []T) {
 	for shift := 0; shift < keyBits; shift += digitBits {
 		scatter(from, to, key, shift, jobs)
 		from, to = to, from
@@ -46,10 +46,10 @@ func sortBy(from, to []item, key func(*item) uint32, keyBits, jobs int) (sorted,
 }
 
 // scatter does one digit: each worker counts and then moves its own stretch.
-func scatter(from, to []item, key func(*item) uint32, shift, jobs int) {
+func scatter[T any](from, to []T, key func(*T) uint32, shift, jobs int) {
 	const digits = 1 << digitBits
 	counts := make([][digits]uint32, jobs)
-	stretch := func(w int) []item { return from[len(from)*w/jobs : len(from)*(w+1)/jobs] }
+	stretch := func(w int) []T { return from[len(from)*w/jobs : len(from)*(w+1)/jobs] }
 	each(jobs, func(w int) {
 		c := &counts[w]
 		part := stretch(w)
