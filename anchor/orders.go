@@ -88,7 +88,7 @@ func (c *collector) take() {
 	st := &c.s.layer
 	f := c.s.file()
 	markers := c.markers()
-	if len(st.masks) > 0 { // markers may be as many as figures, and nearly all they touch becomes an anchor
+	if c.v.HitCount() > 0 { // markers may be as many as figures, and nearly all they touch becomes an anchor
 		room := arena.Make[decompose.Anchor](0, len(c.o.Anchors)+min(c.v.HitCount(), c.v.Nodes()))
 		c.o.Anchors = append(room, c.o.Anchors...)
 	}

@@ -6,6 +6,7 @@ import (
 	"strconv"
 
 	"maskpair/decompose"
+	"maskpair/gds/arena"
 )
 
 // This file reads plain anchor files fast. A script that pins a circuit shape by shape writes a hundred thousand tables, all alike: a
@@ -59,7 +60,7 @@ const (
 func readPlain(name string, text []byte, rules *decompose.Rules) (*File, bool) {
 	r := &plainReader{text: text, line: 1, file: &File{Name: name}, rules: rules}
 	if n := bytes.Count(text, []byte("[[anchor]]")); n > 0 {
-		r.file.Anchors = make([]Entry, 0, n)
+		r.file.Anchors = arena.Make[Entry](0, n)
 	}
 	for r.at < len(r.text) {
 		if !r.statement() {

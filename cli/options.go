@@ -1,6 +1,7 @@
 package cli
 
 import (
+	"bytes"
 	"io"
 	"os"
 	"strings"
@@ -9,6 +10,7 @@ import (
 
 	"maskpair/anchor"
 	"maskpair/decompose"
+	"maskpair/gds/arena"
 )
 
 // This file turns the options of decompose into checked values. Files that the user writes (deck, anchors) are read here;
@@ -152,14 +154,18 @@ func readText(option, path string) ([]byte, error) {
 		return nil, usagef("--%s %s: %v; give a file that can be read", option, path, reason(err))
 	}
 	defer f.Close()
-	text, err := io.ReadAll(io.LimitReader(f, longestText+1))
-	if err != nil {
+	var room int64 // for the whole text, where its length is known: a list of anchors may have megabytes
+	if info, err := f.Stat(); err == nil && info.Mode().IsRegular() {
+		room = min(info.Size(), longestText) + bytes.MinRead
+	}
+	text := bytes.NewBuffer(arena.Make[byte](0, int(room)))
+	if _, err := text.ReadFrom(io.LimitReader(f, longestText+1)); err != nil {
 		return nil, usagef("--%s %s: %v; give a file that can be read", option, path, reason(err))
 	}
-	if len(text) > longestText {
+	if text.Len() > longestText {
 		return nil, usagef("--%s %s: larger than %d MiB; is it the right file?", option, path, longestText>>20)
 	}
-	return text, nil
+	return text.Bytes(), nil
 }
 
 // String words the choice as the option does.
