@@ -9,6 +9,7 @@ import (
 
 	"maskpair/decompose/geom"
 	"maskpair/gds"
+	"maskpair/gds/arena"
 )
 
 // This file flattens one selection of figures: it gives every placed figure its ordinal and turns it into items. Ordinals count
@@ -63,7 +64,7 @@ func newFlat(h *hierarchy, sel *selection, g grid) (*flat, error) {
 	n := len(h.lib.Structures)
 	f := &flat{h: h, lib: h.lib, sel: sel, forms: newForms(h.lib, sel, g),
 		own: make([]uint32, n), all: make([]uint64, n), items: make([]uint64, n), bands: make([]uint64, n), box: make([]Box, n)}
-	f.polygonOf = make([]uint32, len(h.lib.Outlines))
+	f.polygonOf = arena.Make[uint32](len(h.lib.Outlines), len(h.lib.Outlines))
 	for i := range f.forms.of {
 		if p := f.forms.of[i].polygon; p != nil {
 			f.polygons = append(f.polygons, p)

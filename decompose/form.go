@@ -63,7 +63,7 @@ const halfUnit = 2
 
 // newForms works out the forms of the selected figures.
 func newForms(lib *gds.Library, sel *selection, g grid) *forms {
-	f := &forms{grid: g, of: make([]form, len(lib.Outlines)), rounded: make([]bool, len(lib.Outlines))}
+	f := &forms{grid: g, of: arena.Make[form](len(lib.Outlines), len(lib.Outlines)), rounded: arena.Make[bool](len(lib.Outlines), len(lib.Outlines))}
 	var points []geom.Point
 	guess := 0 // a rectangle for every two corners, which nearly all outlines keep to
 	for i := range lib.Figures {

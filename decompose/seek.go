@@ -67,7 +67,7 @@ const seekersAtOnce = 1 << 10
 // seekLevel lets some seekers ask in one level. In the hits, their places stand for their IDs.
 func (w *searcher) seekLevel(k int, seekers []item) {
 	s, l := w.s, &w.level[k]
-	shift, mask := w.shift0+k, w.slots-1
+	shift, mask := w.shift0+k, l.mask
 	begin := 0 // of what the seeker before has hit
 	for i := range seekers {
 		q := seekers[i]

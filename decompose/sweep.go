@@ -57,6 +57,7 @@ const (
 	stretchItems = 1 << 16 // at least
 	levels       = 33
 	mostBuckets  = 1 << 20
+	leastSlots   = 64
 )
 
 // run searches all stretches with some workers. The sinks come in the order of the stretches.
@@ -162,8 +163,8 @@ type searcher struct {
 	seeks  bool   // the item at hand is a seeker: it is compared as one
 	mixed  []hit  // see orderHits
 	places [seekersAtOnce + 1]uint32
-	shift0 int // log2 of the width of the buckets of level 0
-	slots  int64
+	shift0 int   // log2 of the width of the buckets of level 0
+	slots  int64 // of level 0
 }
 
 // active is an active item in the list of its bucket. It is a copy: few items are active at a time, and what is looked at again and
@@ -176,6 +177,7 @@ type active struct {
 // level holds the active items of one class of widths. Buckets far apart share a slot; coordinates tell their items apart.
 type level struct {
 	heads []uint32 // first item of the slot, in active; 0: none
+	mask  int64    // takes a bucket to its slot
 	taken occupancy
 }
 
@@ -194,9 +196,7 @@ func newSearcher(s *sweep) *searcher {
 	}
 	want := min(span, int64(2*min(len(s.items), mostBuckets)+64), mostBuckets)
 	w.slots = int64(1) << bits.Len64(uint64(want-1))
-	if w.slots < 64 {
-		w.slots = 64
-	}
+	w.slots = max(w.slots, leastSlots)
 	return w
 }
 
@@ -274,11 +274,13 @@ func (w *searcher) insert(it *item) {
 	if w.used&(1<<k) == 0 {
 		w.used |= 1 << k
 		if l.heads == nil {
-			l.heads = make([]uint32, w.slots)
-			l.taken.resize(int(w.slots))
+			slots := max(w.slots>>k, leastSlots) // buckets twice as wide are half as many
+			l.heads = make([]uint32, slots)
+			l.mask = slots - 1
+			l.taken.resize(int(slots))
 		}
 	}
-	slot := uint32((int64(it.X1)-w.s.low)>>(w.shift0+k)) & uint32(w.slots-1)
+	slot := uint32((int64(it.X1)-w.s.low)>>(w.shift0+k)) & uint32(l.mask)
 	if l.heads[slot] == 0 {
 		l.taken.set(slot)
 	}
@@ -305,11 +307,10 @@ func (w *searcher) query(q *item) bool {
 		// An item of this level reaches at most one bucket's width to the right of its left edge.
 		first := max(int64(q.X1)-s.spacing-int64(1)<<shift-s.low, 0) >> shift
 		last := (min(int64(q.X2)+s.spacing, s.high) - s.low) >> shift
-		mask := w.slots - 1
 		if last-first < 6 {
 			w.sink.done.buckets += last - first + 1
 			for b := first; b <= last; b++ {
-				if slot := uint32(b & mask); l.heads[slot] != 0 && w.slot(l, slot, q) {
+				if slot := uint32(b & l.mask); l.heads[slot] != 0 && w.slot(l, slot, q) {
 					return true
 				}
 			}
@@ -324,7 +325,7 @@ func (w *searcher) query(q *item) bool {
 
 // many compares an item with those of many buckets of a level.
 func (w *searcher) many(l *level, first, last int64, q *item) bool {
-	mask := w.slots - 1
+	mask := l.mask
 	from, to := uint32(first&mask), uint32(last&mask)
 	switch {
 	case last-first >= mask:
