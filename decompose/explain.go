@@ -23,7 +23,7 @@ func (s *solver) explain(ctx context.Context, rules *Rules, res *LayerResult, jo
 	}
 	e := &explainer{solver: s, groups: map[uint64]int64{}, rules: rules, more: map[uint32]*geom.Parts{},
 		facing: newFacingNames(s.l)}
-	inTurn(jobs, 2, func(_, i int) { [...]func(){e.gather, e.sign}[i]() })
+	atOnce(jobs, e.gather, e.sign)
 	found := make([]groupResult, len(s.groups))
 	err := s.each(ctx, jobs, func(b *brokenGroup) {
 		s.within(func(room *arena.Slab) { e.group(room, b, &found[s.indexOf(b)]) })

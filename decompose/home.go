@@ -56,13 +56,7 @@ func (l *layout) deal(ctx context.Context, a *assignment, s *solver, jobs int) e
 
 // usualAndCost gives what the next round of solving strives for, and what the assignment costs as it is.
 func (d *dealer) usualAndCost(jobs int) (usual []int8, cost float64) {
-	inTurn(jobs, 2, func(_, i int) {
-		if i == 0 {
-			usual = d.usualMasks()
-		} else {
-			cost = d.cost()
-		}
-	})
+	atOnce(jobs, func() { usual = d.usualMasks() }, func() { cost = d.cost() })
 	return usual, cost
 }
 

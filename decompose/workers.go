@@ -50,3 +50,8 @@ func inTurn(workers, n int, work func(worker, i int)) {
 		}
 	})
 }
+
+// atOnce does different work side by side, as far as there are workers.
+func atOnce(workers int, work ...func()) {
+	inTurn(workers, len(work), func(_, i int) { work[i]() })
+}

@@ -4,6 +4,9 @@
 // more than the work. On pages of 2 MiB there are 512 times fewer of them. So the slices made here are ordinary Go memory,
 // collected as any other, about which the system is asked for large pages. Where it offers none nothing is lost. Room that
 // is never touched takes no memory.
+//
+// An Array is memory straight from the system, given back at once; a Slab deals its memory out to many slices that are given up
+// together, and again.
 package arena
 
 import "unsafe"
