@@ -5,8 +5,6 @@ import (
 	"context"
 	"slices"
 
-	"golang.org/x/sync/errgroup"
-
 	"maskpair/decompose/geom"
 )
 
@@ -30,20 +28,12 @@ func (l *layout) anyMaskPairs(ctx context.Context, mask []uint8, jobs int) ([]Pa
 	l.geometryOf(parts)
 	boxes := l.boxes()
 	out := make([]Pair, len(pairs))
-	var g errgroup.Group
-	g.SetLimit(max(jobs, 1))
 	const block = 1 << 10
-	for from := 0; from < len(pairs); from += block {
-		g.Go(safely(func() error {
-			for i := from; i < min(from+block, len(pairs)) && ctx.Err() == nil; i++ {
-				out[i] = l.anyMaskPair(pairs[i], parts, boxes, mask)
-			}
-			return nil
-		}))
-	}
-	if err := g.Wait(); err != nil {
-		return nil, err
-	}
+	inTurn(jobs, (len(pairs)+block-1)/block, func(_, k int) {
+		for i := k * block; i < min((k+1)*block, len(pairs)) && ctx.Err() == nil; i++ {
+			out[i] = l.anyMaskPair(pairs[i], parts, boxes, mask)
+		}
+	})
 	slices.SortFunc(out, func(a, b Pair) int {
 		return cmp.Or(cmp.Compare(a.Top, b.Top), compareBoxes(a.A, b.A), compareBoxes(a.B, b.B))
 	})

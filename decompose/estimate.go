@@ -17,15 +17,14 @@ const (
 	bytesPerItem   = int64(unsafe.Sizeof(item{})) // in each of the two arrays between which items are sorted
 	bytesPerFigure = 4                            // node of each flat figure
 	bytesPerArea   = 8                            // of each node
+	bytesPerMask   = 1
 	bytesPerBand   = int64(unsafe.Sizeof(band{}))
 	bytesPerProbe  = 24 // what a marker touches
 	// What is found: near pairs, areas, pairs by shape. Where cells are placed often, much of what they share lies on itself and is found
 	// once.
-	foundPerDrawn   = 36 // by flat figure of a structure that is placed once
-	foundPerPlaced  = 14 // by flat figure of others
-	judgedPerFigure = 16 // more, where pairs are judged by what faces what
-	keptPerDrawn    = 26 // the same, once the layer is done and others follow
-	keptPerPlaced   = 10
+	foundPerDrawn   = 36                               // by flat figure of a structure that is placed once
+	foundPerPlaced  = 14                               // by flat figure of others
+	judgedPerFigure = 16                               // more, where pairs are judged by what faces what
 	bytesPerForm    = int64(unsafe.Sizeof(form{})) + 5 // by outline
 	bytesPerRect    = int64(unsafe.Sizeof(geom.Rect{}))
 	bytesPerCell    = 1200     // by structure: its name, its tables, its ways
@@ -80,9 +79,10 @@ func (l *layout) estimate() int64 {
 	return l.formBytes() + int64(f.total)*bytesPerFigure + items + mostBands*bytesPerBand + probes*bytesPerProbe + found
 }
 
-// kept is what a layer holds once it is done, in bytes.
-func (l *layout) kept() int64 {
-	return l.formBytes() + int64(l.flat.total)*bytesPerFigure + l.found(keptPerDrawn, keptPerPlaced)
+// kept is what a layer and its result hold once it is done, in bytes.
+func (l *layout) kept(res *LayerResult) int64 {
+	return l.formBytes() + int64(l.flat.total)*bytesPerFigure + int64(l.nodes)*(bytesPerArea+bytesPerMask) +
+		res.UnresolvedPairs*int64(unsafe.Sizeof(Pair{}))
 }
 
 // formBytes is what the forms of drawn figures take.

@@ -83,7 +83,7 @@ func (h *homing) solve(ctx context.Context, usual []int8, bias float64, jobs int
 	s := h.s
 	clear(h.off)
 	number := s.number
-	h.d.eachShared(func(nodes []uint32, base uint32) {
+	h.d.eachShared(1, func(_ int, nodes []uint32, base uint32) {
 		for i, n := range nodes {
 			k := number[n]
 			if k == 0 {

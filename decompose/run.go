@@ -187,7 +187,7 @@ func (r *Run) layer(ctx context.Context, i int, orders Orderer) error {
 	if r.opt.Drawings > 0 {
 		res.Drawing = l.draw(a, o, &res, r.opt.Drawings)
 	}
-	r.opt.held += l.kept()
+	r.opt.held += l.kept(&res)
 	r.result.Layers = append(r.result.Layers, res)
 	return ctx.Err()
 }
