@@ -49,7 +49,7 @@ type builder struct {
 	jobs     int
 	l        *layout
 	limit    atomic.Int64       // near pairs of figures that may still be kept
-	both     *arena.Array[item] // of a top: half of it each is
+	both     *arena.Array[item] // room of items and scratch
 	items    []item
 	scratch  []item
 	others   *arena.Array[item] // what looks for shapes and is no seeker
@@ -511,7 +511,7 @@ func (b *builder) measureSlanted(top int) {
 	if len(b.slanted) == 0 {
 		return
 	}
-	b.l.geometryIn(top, b.slanted)
+	b.l.geometryIn([]int{top}, b.slanted)
 	for shape, parts := range b.slanted {
 		b.l.area[shape] = geom.UnionAreaPolygons(*parts)
 	}

@@ -186,16 +186,18 @@ func (l *layout) geometryOf(wanted map[uint32]*geom.Parts) {
 	if len(wanted) == 0 {
 		return
 	}
-	for top := range l.flat.h.tops {
-		l.geometryIn(top, wanted)
+	tops := make([]int, len(l.flat.h.tops))
+	for top := range tops {
+		tops[top] = top
 	}
+	l.geometryIn(tops, wanted)
 }
 
 // mostRecent is how many rectangles of a node a further one is compared with. Cells that abut draw the same figure again and again.
 const mostRecent = 8
 
-// geometryIn gathers the geometry of wanted nodes from one top.
-func (l *layout) geometryIn(top int, wanted map[uint32]*geom.Parts) {
+// geometryIn gathers the geometry of wanted nodes from some tops.
+func (l *layout) geometryIn(tops []int, wanted map[uint32]*geom.Parts) {
 	node := l.nodeOf.Data
 	nodes := newBitset(l.nodes + len(l.area))
 	for n := range wanted {
@@ -208,11 +210,13 @@ func (l *layout) geometryIn(top int, wanted map[uint32]*geom.Parts) {
 		k, _ := nodes.rank(node[ordinal])
 		return k
 	}
-	l.eachFigureOf(top, nodes, func(ordinal, figure uint32, at placement, odd *oddFigure) {
-		n := l.flat.rectangles(figure, odd)
-		count[rankOf(ordinal)] += int32(n)
-		total += n
-	})
+	for _, top := range tops {
+		l.eachFigureOf(top, nodes, func(ordinal, figure uint32, at placement, odd *oddFigure) {
+			n := l.flat.rectangles(figure, odd)
+			count[rankOf(ordinal)] += int32(n)
+			total += n
+		})
+	}
 	room := arena.CutDirty[geom.Rect](&l.room, total)
 	for n, p := range wanted {
 		k, _ := nodes.rank(n)
@@ -221,18 +225,20 @@ func (l *layout) geometryIn(top int, wanted map[uint32]*geom.Parts) {
 			p.Rects, room = room[:0:count[k]], room[count[k]:]
 		}
 	}
-	l.eachFigureOf(top, nodes, func(ordinal, figure uint32, at placement, odd *oddFigure) {
-		p := parts[rankOf(ordinal)]
-		before := len(p.Rects)
-		if odd != nil {
-			l.odd[top].forms.place(&odd.form, placement{}, p)
-		} else {
-			l.flat.parts(figure, at, p)
-		}
-		if len(p.Rects) == before+1 && slices.Contains(p.Rects[max(0, before-mostRecent):before], p.Rects[before]) {
-			p.Rects = p.Rects[:before] // drawn once more
-		}
-	})
+	for _, top := range tops {
+		l.eachFigureOf(top, nodes, func(ordinal, figure uint32, at placement, odd *oddFigure) {
+			p := parts[rankOf(ordinal)]
+			before := len(p.Rects)
+			if odd != nil {
+				l.odd[top].forms.place(&odd.form, placement{}, p)
+			} else {
+				l.flat.parts(figure, at, p)
+			}
+			if len(p.Rects) == before+1 && slices.Contains(p.Rects[max(0, before-mostRecent):before], p.Rects[before]) {
+				p.Rects = p.Rects[:before] // drawn once more
+			}
+		})
+	}
 }
 
 // rectangles is the number of rectangles that a figure is made of; none where it is a polygon.
